@@ -1,0 +1,9 @@
+export type {
+  Evaluation,
+  FeasibleOutcome,
+  LevelOutcome,
+  Plan,
+  Point,
+  Problem,
+  StopRequest,
+} from './problem.js';
