@@ -1,0 +1,55 @@
+export { type EvaluationDocument, evaluationFormat, evaluationSchema } from './evaluation.js';
+export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } from './faults.js';
+export {
+  type Alternative,
+  type AlternativeDetail,
+  alternativeDetailSchema,
+  alternativeFormat,
+  type Baseline,
+  type BindingLimit,
+  type FrontDocument,
+  frontFormat,
+  frontSchema,
+  type Infeasibility,
+  type Verification,
+} from './front.js';
+export type { ActuatorDocument, DisturbanceDocument, MeasurementDocument } from './instruments.js';
+export { type JobDocument, type JobInput, jobFormat, jobSchema, scanSeconds } from './job.js';
+export {
+  type LoopLimitName,
+  type LoopLimitsDocument,
+  type LowerLimit,
+  limitBound,
+  type UnitLimitName,
+  type UnitLimitsDocument,
+  type UpperLimit,
+} from './limits.js';
+export type {
+  ControllerDocument,
+  ControllerTerms,
+  DrivesDocument,
+  FeedforwardDocument,
+  LoopDocument,
+} from './loops.js';
+export type { LoopMetrics, Metrics, UnitMetrics, UpsetMetrics, UpsetScore } from './metrics.js';
+export type {
+  ResponseDocument,
+  ResponseModel,
+  ResponseSource,
+  SpreadDocument,
+} from './responses.js';
+export { secondsPer, type TimeUnit } from './scalars.js';
+export {
+  type Objectives,
+  type ScoredSettings,
+  scoredSettingsSchema,
+  type Trend,
+} from './scored.js';
+export type { Objective, SearchDocument, UpsetKind } from './search.js';
+export {
+  type InternalSettingsDocument,
+  type LoopSettingsDocument,
+  type SettingsDocument,
+  settingsSchema,
+} from './settings.js';
+export { mostOf, type OperatingPointDocument, type UnitDocument } from './unit.js';

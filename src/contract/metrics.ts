@@ -1,0 +1,89 @@
+import { z } from 'zod';
+import { keyed, tagSchema } from './scalars.js';
+
+/** A figure; null where it does not exist, was not reached, or the loops are unstable. */
+const figure = z.number().nullable();
+
+/** What one upset does to one loop. Engineering units and the job's time unit. */
+export const upsetMetricsSchema = keyed({
+  iae: figure,
+  itae: figure,
+  peakDeviation: figure,
+  /** Percent of the own setpoint step. */
+  overshoot: figure,
+  settlingTime: figure,
+  /** Output travel. */
+  travel: figure,
+  /** Largest output move in one scan. */
+  peakMove: figure,
+  /** Largest output move per time unit. */
+  peakRate: figure,
+});
+
+export const upsetKindSchema = z.enum(['setpoint', 'load', 'disturbance']);
+
+/** One upset: the loop that is stepped or loaded, or the disturbance, and what each loop does. */
+export const upsetScoreSchema = keyed({
+  kind: upsetKindSchema,
+  tag: tagSchema,
+  loops: z.record(tagSchema, upsetMetricsSchema),
+});
+
+/** What is known of one loop over all upsets and frequencies. */
+export const loopMetricsSchema = keyed({
+  peakSensitivity: figure,
+  peakComplementary: figure,
+  /** The smallest factor above 1 on the gain that makes the unit unstable. */
+  gainMargin: figure,
+  /** The largest factor below 1 that does. */
+  gainReduction: figure,
+  /** Degrees. */
+  phaseMargin: figure,
+  /** Time unit of the job. */
+  delayMargin: figure,
+  /** Standard deviation of the output from the noise of all measurements. */
+  outputNoise: figure,
+  /** The same from the loop's own measurement alone. */
+  outputNoiseOwn: figure,
+  /** The rest of the unit is stable with this loop in manual; null where not examined. */
+  stableInManual: z.boolean().nullable(),
+  /** Sum over the upsets, each by its weight. */
+  iae: figure,
+  /** Percent, of the own setpoint step. */
+  overshoot: figure,
+  /** Of the own setpoint step. */
+  settlingTime: figure,
+  /** The largest over load and disturbance upsets. */
+  peakDeviation: figure,
+  peakMove: figure,
+  peakRate: figure,
+  /** Output travel over all upsets. */
+  travel: figure,
+});
+
+/** What is known of the unit as a whole. */
+export const unitMetricsSchema = keyed({
+  stable: z.boolean(),
+  /** In `worst`: how many models of the set are unstable. */
+  unstableModels: z.number().int().min(0).exactOptional(),
+  peakSingularValueS: figure,
+  peakSingularValueT: figure,
+  /** Relative gains, a row a measurement and a column a manipulated variable, by `rgaLoops`. */
+  rga: z.array(z.array(figure)).nullable(),
+  rgaLoops: z.array(tagSchema),
+  niederlinski: figure,
+});
+
+/** Everything measured on one model, or the worst of it over a model set. */
+export const metricsSchema = keyed({
+  loops: z.record(tagSchema, loopMetricsSchema),
+  unit: unitMetricsSchema,
+  /** Left out in a front; each alternative's own document has them. */
+  upsets: z.array(upsetScoreSchema).exactOptional(),
+});
+
+export type UpsetMetrics = z.output<typeof upsetMetricsSchema>;
+export type UpsetScore = z.output<typeof upsetScoreSchema>;
+export type LoopMetrics = z.output<typeof loopMetricsSchema>;
+export type UnitMetrics = z.output<typeof unitMetricsSchema>;
+export type Metrics = z.output<typeof metricsSchema>;

@@ -1,0 +1,99 @@
+import { z } from 'zod';
+import type { FaultCode } from './faults.js';
+
+/** A reason to refuse a value that the schema itself names, carried through a zod issue. */
+export interface Refusal {
+  readonly code: FaultCode;
+  readonly problem: string;
+  readonly allowed: string;
+}
+
+/** Adds a refusal to the issues of the value being read. */
+export function refuse(
+  context: {
+    addIssue(issue: {
+      code: 'custom';
+      message: string;
+      params: { refusal: Refusal };
+      input?: unknown;
+    }): void;
+  },
+  refusal: Refusal,
+): void {
+  context.addIssue({ code: 'custom', message: refusal.problem, params: { refusal } });
+}
+
+/** An object that refuses keys it does not know and names those it does. */
+export function keyed<const Shape extends z.core.$ZodLooseShape>(shape: Shape) {
+  return z.strictObject(shape, {
+    error: (issue) =>
+      issue.code === 'unrecognized_keys' ? Object.keys(shape).join(', ') : undefined,
+  });
+}
+
+/**
+ * A list whose length is judged before its entries are, so that a list far too long costs one
+ * fault and not one for each entry.
+ */
+export function listOf<Item extends z.ZodType>(
+  item: Item,
+  most: number,
+  least = 0,
+): z.ZodType<z.output<Item>[], z.input<Item>[]> {
+  const allowed = least > 0 ? `${least} to ${most} entries` : `at most ${most} entries`;
+  const judged = z.preprocess((value, context) => {
+    if (Array.isArray(value) && (value.length > most || value.length < least)) {
+      const problem = `${value.length === 0 ? 'no' : value.length} entries in this list`;
+      refuse(context, { code: 'LIST_LENGTH', problem, allowed });
+      return z.NEVER;
+    }
+    return value;
+  }, z.array(item).min(least).max(most));
+  return judged as unknown as z.ZodType<z.output<Item>[], z.input<Item>[]>;
+}
+
+/** Any number of a size that sums and differences of it stay finite. */
+export const finite = z.number().min(-1e60).max(1e60);
+export const positive = z.number().gt(0).max(1e60);
+export const nonnegative = z.number().min(0).max(1e60);
+/** Small enough that 1 + spread and 1 / (1 + spread) are both meant: 0 <= s < 1. */
+export const fraction = z.number().min(0).lt(1);
+
+/** The longest tag of a measurement, actuator, disturbance or loop, in characters. */
+export const tagLength = 32;
+
+const tagAllowed = `1 to ${tagLength} printable characters, no blank at either end`;
+const unprintable = /[\p{C}\p{Zl}\p{Zp}]/u;
+
+function tagProblem(tag: string): string | undefined {
+  if (tag === '') return 'a tag is empty';
+  if (tag.length > 2 * tagLength || Array.from(tag).length > tagLength) return 'a tag is too long';
+  if (unprintable.test(tag)) return 'a tag holds a character that does not print';
+  if (tag.trim() !== tag) return 'a tag begins or ends with a blank';
+  if (tag in {}) return 'a tag is a name that programs keep for themselves';
+  return undefined;
+}
+
+export const tagSchema = z.string().superRefine((tag, context) => {
+  const problem = tagProblem(tag);
+  if (problem !== undefined) refuse(context, { code: 'TAG_INVALID', problem, allowed: tagAllowed });
+});
+
+/** A printable text of a bounded length: a name, or the words of an engineering unit. */
+export function text(least: number, most: number) {
+  return z.string().superRefine((value, context) => {
+    const length = value.length > 2 * most ? value.length : Array.from(value).length;
+    const allowed = `${least} to ${most} printable characters`;
+    if (length < least || length > most) {
+      refuse(context, { code: 'VALUE_TEXT', problem: `a text of ${length} characters`, allowed });
+    } else if (unprintable.test(value)) {
+      refuse(context, { code: 'VALUE_TEXT', problem: 'a character that does not print', allowed });
+    }
+  });
+}
+
+export const timeUnitSchema = z.enum(['s', 'min', 'h']);
+export type TimeUnit = z.output<typeof timeUnitSchema>;
+
+/** Seconds in one of each time unit. */
+export const secondsPer: { readonly [unit in TimeUnit]: number } = { s: 1, min: 60, h: 3600 };
