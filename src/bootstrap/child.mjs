@@ -1,0 +1,89 @@
+import { spawn } from 'node:child_process';
+import { constants } from 'node:os';
+
+/**
+ * A child process that never outlives its parent's will. It runs in a process group of its own, so
+ * that one signal reaches everything it started. The state is one of three: running; asked to stop
+ * (the first signal was passed on, repeats within a moment are the terminal's and npm's echoes of
+ * it); and killed, when it did not stop within the grace.
+ */
+
+const passedOn = /** @type {const} */ (['SIGINT', 'SIGTERM', 'SIGHUP', 'SIGQUIT']);
+const graceMs = 10_000;
+const isWindows = process.platform === 'win32';
+
+/**
+ * Runs a program to its end.
+ *
+ * @param {object} call
+ * @param {string} call.program
+ * @param {readonly string[]} call.parameters
+ * @param {string} call.folder  where it runs
+ * @param {NodeJS.ProcessEnv} [call.environment]  added to this process's own
+ * @param {boolean} [call.captured]  keep the output instead of showing it; it then has no input
+ * @returns {Promise<{ code: number, output: string }>} the exit code, 128 + n after signal n
+ */
+export function runChild({ program, parameters, folder, environment = {}, captured = false }) {
+  return new Promise((resolve, reject) => {
+    const child = spawn(program, parameters, {
+      cwd: folder,
+      env: { ...process.env, ...environment },
+      stdio: captured ? ['ignore', 'pipe', 'pipe'] : 'inherit',
+      detached: !isWindows,
+      shell: isWindows && !/[\\/]/.test(program),
+    });
+    /** @type {Buffer[]} */
+    const chunks = [];
+    child.stdout?.on('data', (chunk) => chunks.push(chunk));
+    child.stderr?.on('data', (chunk) => chunks.push(chunk));
+    const release = passSignals(child);
+    child.on('error', (error) => {
+      release();
+      reject(error);
+    });
+    child.on('close', (code, signal) => {
+      release();
+      const output = Buffer.concat(chunks).toString('utf8');
+      resolve({ code: code ?? 128 + (signal ? constants.signals[signal] : 0), output });
+    });
+  });
+}
+
+/**
+ * Passes this process's signals on to the child's whole group until released.
+ *
+ * @param {import('node:child_process').ChildProcess} child
+ * @returns {() => void} stops passing them on
+ */
+function passSignals(child) {
+  /** @type {Set<NodeJS.Signals>} */
+  const seen = new Set();
+  /** @type {NodeJS.Timeout | undefined} */
+  let grace;
+  /** @param {NodeJS.Signals} signal */
+  const pass = (signal) => {
+    if (seen.has(signal)) return;
+    seen.add(signal);
+    signalGroup(child, signal);
+    if (seen.size === 1) grace = setTimeout(() => signalGroup(child, 'SIGKILL'), graceMs);
+  };
+  for (const signal of passedOn) process.on(signal, pass);
+  return () => {
+    clearTimeout(grace);
+    for (const signal of passedOn) process.off(signal, pass);
+  };
+}
+
+/**
+ * @param {import('node:child_process').ChildProcess} child
+ * @param {NodeJS.Signals} signal
+ */
+function signalGroup(child, signal) {
+  if (child.pid === undefined) return;
+  try {
+    process.kill(isWindows ? child.pid : -child.pid, signal);
+  } catch (error) {
+    // The group ended between the signal's arrival and its passing on: nothing is left to stop.
+    if (/** @type {NodeJS.ErrnoException} */ (error).code !== 'ESRCH') throw error;
+  }
+}
