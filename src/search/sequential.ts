@@ -1,0 +1,297 @@
+import type { Search } from './account.js';
+import { type Goal, objective } from './goal.js';
+import {
+  differentiate,
+  type LinearModel,
+  levelledRows,
+  rowExcess,
+  rowsAt,
+} from './linear-model.js';
+import type { Point } from './problem.js';
+import { type QuadraticSolution, solveQuadratic } from './quadratic-program.js';
+import { dot, scaledIdentity, updateDamped } from './quasi-newton.js';
+
+/** Where a descent starts and how far its first step may reach. */
+export interface Descent {
+  readonly start: Point;
+  readonly radius: number;
+}
+
+const forwardSpan = 3e-4;
+const centralSpan = 1e-3;
+/** A predicted gain below this (of ln cost) is none. */
+const leastGain = 1e-6;
+const leastRadius = 1e-5;
+const highestPrice = 1e6;
+const trialsPerModel = 8;
+
+/**
+ * Descends from a defined point to a local solution of the goal: sequential quadratic programming
+ * with an l1 merit function in a box-shaped trust region.
+ *
+ * Each round differentiates once (a batch of `dimension` points), then tries steps one at a time:
+ *   1. the quadratic program of the linearised rows gives a step within box and radius; its
+ *      elastic rows mean there always is one; the price rises while that helps feasibility;
+ *   2. where the step left rows broken that the model thought met, the same derivatives with the
+ *      rows' true values give a corrected step;
+ *   3. the better of the two is taken if the merit fell by a share of what was predicted; the
+ *      radius grows after a good step that reached it, and the search goes on with the same
+ *      derivatives; it shrinks after a bad one.
+ * The Hessian of the Lagrangian is a damped quasi-Newton estimate. When nothing more is predicted
+ * or the radius vanishes, central differences are tried once before the end.
+ *
+ * Every levelled quantity is a row of its own: at the optimum several are active at once, and
+ * their maximum has no gradient there.
+ *
+ * @source R. Fletcher, Practical Methods of Optimization, 2nd ed., 1987, section 14.4 (Sl1QP with
+ *   second-order corrections); J. Nocedal, S. J. Wright, Numerical Optimization, 2nd ed., 2006,
+ *   algorithm 18.4 and section 18.5 (price updates)
+ */
+export function* descend(goal: Goal, { start, radius: firstRadius }: Descent): Search {
+  const iterate = new Iterate(goal, start, firstRadius);
+  let central = false;
+  for (;;) {
+    const span = central ? centralSpan : forwardSpan;
+    const model = yield* differentiate(goal, iterate.point, span, central);
+    iterate.adopt(model);
+    const gain = yield* iterate.improve();
+    if (gain < leastGain) {
+      if (central) return;
+      iterate.radius = Math.max(iterate.radius, 10 * leastRadius);
+    }
+    central = gain < leastGain;
+  }
+}
+
+type Request<T> = Generator<readonly Float64Array[], T, readonly Point[]>;
+
+interface Trial {
+  readonly step: Float64Array;
+  readonly multipliers: Float64Array;
+  readonly predicted: number;
+}
+
+/** The current point with all a descent has learnt. */
+class Iterate {
+  radius: number;
+  private price = 10;
+  private model: LinearModel | undefined;
+  private multipliers: Float64Array;
+  private readonly hessian: Float64Array;
+  private readonly dimension: number;
+  private updates = 0;
+
+  constructor(
+    private readonly goal: Goal,
+    public point: Point,
+    radius: number,
+  ) {
+    this.radius = radius;
+    this.dimension = point.x.length;
+    this.hessian = scaledIdentity(this.dimension, 1);
+    this.multipliers = new Float64Array(rowsAt(goal, point).length);
+  }
+
+  /** Takes new derivatives, and learns curvature from the difference to the last. */
+  adopt(model: LinearModel): void {
+    const last = this.model;
+    this.model = model;
+    if (last === undefined || last.point === model.point) return;
+    const step = model.point.x.map((value, k) => value - (last.point.x[k] as number));
+    const before = this.lagrangianGradient(last);
+    const change = this.lagrangianGradient(model).map((value, k) => value - (before[k] as number));
+    if (this.updates === 0) {
+      const curvature = dot(step, change);
+      const size = curvature > 0 ? curvature / dot(step, step) : 1;
+      this.hessian.set(scaledIdentity(this.dimension, Math.min(100, Math.max(0.1, size))));
+    }
+    this.updates += 1;
+    updateDamped(this.hessian, step, change);
+  }
+
+  /** Moves as far as the present derivatives carry; returns by how much the merit fell. */
+  *improve(): Request<number> {
+    const model = this.model as LinearModel;
+    const start = this.point;
+    let best = start;
+    for (let trial = 0; trial < trialsPerModel && this.radius >= leastRadius; trial += 1) {
+      const proposal = this.propose(model, model.values, this.radius);
+      if (proposal.predicted < leastGain) break;
+      const reached = yield* this.evaluateStep(model, proposal);
+      const gain = this.merit(start) - this.merit(reached);
+      const ratio = gain / proposal.predicted;
+      const length = largest(proposal.step);
+      const better = gain > 0 && this.merit(reached) < this.merit(best);
+      if (ratio > 0.01 && better) {
+        best = reached;
+        this.multipliers = proposal.multipliers;
+      }
+      if (ratio > 0.75 && better && length > 0.99 * this.radius && this.radius < 1) {
+        this.radius = Math.min(1, 2 * this.radius);
+        continue; // the same derivatives may carry further
+      }
+      if (best !== start) {
+        if (ratio < 0.25) this.radius = Math.max(0.5 * length, 2 * leastRadius);
+        break;
+      }
+      this.radius = (Number.isFinite(ratio) && ratio > -1 ? 0.4 : 0.2) * length;
+    }
+    this.point = best;
+    return this.merit(start) - this.merit(best);
+  }
+
+  /** The better of a step and its correction. */
+  private *evaluateStep(model: LinearModel, proposal: Trial): Request<Point> {
+    const [plain] = yield [this.moved(model, proposal.step)];
+    const first = plain as Point;
+    if (!first.evaluation.defined) return first;
+    if (rowExcess(this.goal, first) <= 1e-7) return first;
+    const values = rowsAt(this.goal, first);
+    const shifted = values.map((value, r) => value - this.along(model, r, proposal.step));
+    const correction = this.propose(model, shifted, this.radius);
+    const [corrected] = yield [this.moved(model, correction.step)];
+    const second = corrected as Point;
+    return this.merit(second) < this.merit(first) ? second : first;
+  }
+
+  private moved(model: LinearModel, step: Float64Array): Float64Array {
+    return model.point.x.map((value, k) => Math.min(1, Math.max(0, value + (step[k] as number))));
+  }
+
+  private merit(point: Point): number {
+    if (!point.evaluation.defined) return Number.POSITIVE_INFINITY;
+    return objective(this.goal, point) + this.price * rowExcess(this.goal, point);
+  }
+
+  private along(model: LinearModel, row: number, step: Float64Array): number {
+    let sum = 0;
+    for (let k = 0; k < this.dimension; k += 1) {
+      sum += (model.jacobian[row * this.dimension + k] as number) * (step[k] as number);
+    }
+    return sum;
+  }
+
+  private lagrangianGradient(model: LinearModel): Float64Array {
+    const result = Float64Array.from(model.gradient);
+    for (const [row, multiplier] of this.multipliers.entries()) {
+      if (multiplier < 1e-9) continue;
+      for (let k = 0; k < this.dimension; k += 1) {
+        result[k] =
+          (result[k] as number) + multiplier * (model.jacobian[row * this.dimension + k] as number);
+      }
+    }
+    return result;
+  }
+
+  /** The step of the quadratic program about the model, rows at the given values. */
+  private propose(model: LinearModel, values: Float64Array, radius: number): Trial {
+    const program = this.program(model, values, radius);
+    let solution = solveQuadratic({ ...program, price: this.price });
+    while (solution.excess > 1e-7 && this.price < highestPrice) {
+      const dearer = solveQuadratic({ ...program, price: 10 * this.price });
+      if (dearer.excess > 0.9 * solution.excess) break;
+      this.price *= 10;
+      solution = dearer;
+    }
+    const multipliers = new Float64Array(values.length);
+    for (const [index, row] of program.active.entries()) {
+      multipliers[row] = solution.multipliers[index] as number;
+    }
+    const step = solution.step.slice(0, this.dimension);
+    return { step, multipliers, predicted: this.predict(program, solution) };
+  }
+
+  private predict(program: Program, solution: QuadraticSolution): number {
+    const { size, gradient, hessian } = program;
+    let change = dot(gradient, solution.step);
+    for (let i = 0; i < size; i += 1) {
+      for (let k = 0; k < size; k += 1) {
+        change +=
+          0.5 *
+          (solution.step[i] as number) *
+          (hessian[i * size + k] as number) *
+          (solution.step[k] as number);
+      }
+    }
+    return this.price * (program.excess - solution.excess) - change;
+  }
+
+  /** Rows that no step within the box and radius can reach are left out. */
+  private program(model: LinearModel, values: Float64Array, radius: number): Program {
+    const { dimension, goal } = this;
+    const bound = goal.kind === 'peak' ? 1 : 0;
+    const size = dimension + bound;
+    const lower = new Float64Array(size);
+    const upper = new Float64Array(size);
+    for (let k = 0; k < dimension; k += 1) {
+      const x = model.point.x[k] as number;
+      lower[k] = Math.max(-x, -radius);
+      upper[k] = Math.min(1 - x, radius);
+    }
+    const gradient = new Float64Array(size);
+    gradient.set(model.gradient);
+    const hessian = new Float64Array(size * size);
+    for (let i = 0; i < dimension; i += 1) {
+      hessian.set(this.hessian.subarray(i * dimension, (i + 1) * dimension), i * size);
+    }
+    const first = levelledRows(goal, model.point);
+    const top = bound === 1 ? Math.log(model.point.peak) : 0;
+    const active: number[] = [];
+    const right: number[] = [];
+    let excess = 0;
+    for (let r = 0; r < values.length; r += 1) {
+      const free = bound === 1 && r < first;
+      const value = (values[r] as number) - (free ? top : 0);
+      let reach = value;
+      for (let k = 0; k < dimension; k += 1) {
+        const slope = model.jacobian[r * dimension + k] as number;
+        reach += slope * ((slope > 0 ? upper[k] : lower[k]) as number);
+      }
+      if (!free && reach <= 0) continue;
+      if (!free && value > 0) excess += value;
+      active.push(r);
+      right.push(-value);
+    }
+    const matrix = new Float64Array(active.length * size);
+    for (const [index, row] of active.entries()) {
+      matrix.set(model.jacobian.subarray(row * dimension, (row + 1) * dimension), index * size);
+      if (bound === 1 && row < first) matrix[index * size + dimension] = -1;
+    }
+    if (bound === 1) {
+      gradient[dimension] = 1;
+      lower[dimension] = -20;
+      upper[dimension] = 20;
+    }
+    return {
+      size,
+      hessian,
+      gradient,
+      matrix,
+      right: Float64Array.from(right),
+      rows: active.length,
+      lower,
+      upper,
+      active,
+      excess,
+    };
+  }
+}
+
+interface Program {
+  readonly size: number;
+  readonly hessian: Float64Array;
+  readonly gradient: Float64Array;
+  readonly matrix: Float64Array;
+  readonly right: Float64Array;
+  readonly rows: number;
+  readonly lower: Float64Array;
+  readonly upper: Float64Array;
+  /** The row of the model behind each row of the program. */
+  readonly active: readonly number[];
+  /** What the program's rows exceed 0 by before any step. */
+  readonly excess: number;
+}
+
+function largest(step: Float64Array): number {
+  return step.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
+}
