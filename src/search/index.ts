@@ -1,3 +1,12 @@
+export { findFeasible, lowestLevel } from './anchors.js';
+export {
+  dominates,
+  hypervolume,
+  nonDominated,
+  type Objectives,
+  selectEvenly,
+} from './front.js';
+export { solveLevel } from './level.js';
 export type {
   Evaluation,
   FeasibleOutcome,

@@ -24,6 +24,9 @@ const leastGain = 1e-6;
 const leastRadius = 1e-5;
 const highestPrice = 1e6;
 const trialsPerModel = 8;
+const excessIsNone = 1e-7;
+/** Of the feasibility a step could gain, what it must gain. */
+const fairShare = 0.3;
 
 /**
  * Descends from a defined point to a local solution of the goal: sequential quadratic programming
@@ -145,7 +148,7 @@ class Iterate {
     const [plain] = yield [this.moved(model, proposal.step)];
     const first = plain as Point;
     if (!first.evaluation.defined) return first;
-    if (rowExcess(this.goal, first) <= 1e-7) return first;
+    if (rowExcess(this.goal, first) <= excessIsNone) return first;
     const values = rowsAt(this.goal, first);
     const shifted = values.map((value, r) => value - this.along(model, r, proposal.step));
     const correction = this.propose(model, shifted, this.radius);
@@ -186,19 +189,35 @@ class Iterate {
   /** The step of the quadratic program about the model, rows at the given values. */
   private propose(model: LinearModel, values: Float64Array, radius: number): Trial {
     const program = this.program(model, values, radius);
-    let solution = solveQuadratic({ ...program, price: this.price });
-    while (solution.excess > 1e-7 && this.price < highestPrice) {
-      const dearer = solveQuadratic({ ...program, price: 10 * this.price });
-      if (dearer.excess > 0.9 * solution.excess) break;
-      this.price *= 10;
-      solution = dearer;
-    }
+    const solution = this.steer(program);
     const multipliers = new Float64Array(values.length);
     for (const [index, row] of program.active.entries()) {
       multipliers[row] = solution.multipliers[index] as number;
     }
     const step = solution.step.slice(0, this.dimension);
     return { step, multipliers, predicted: this.predict(program, solution) };
+  }
+
+  /**
+   * Solves the program, raising the price until the step keeps a fair share of the feasibility
+   * that could be had.
+   *
+   * @source R. H. Byrd, J. Nocedal, R. A. Waltz, Steering exact penalty methods for nonlinear
+   *   programming, Optimization Methods and Software 23 (2008), eq. 2.6
+   */
+  private steer(program: Program): QuadraticSolution {
+    let solution = solveQuadratic({ ...program, price: this.price });
+    if (solution.excess <= excessIsNone || this.price >= highestPrice) return solution;
+    const most = program.excess - solveQuadratic({ ...program, price: highestPrice }).excess;
+    while (
+      solution.excess > excessIsNone &&
+      program.excess - solution.excess < fairShare * most &&
+      this.price < highestPrice
+    ) {
+      this.price *= 10;
+      solution = solveQuadratic({ ...program, price: this.price });
+    }
+    return solution;
   }
 
   private predict(program: Program, solution: QuadraticSolution): number {
