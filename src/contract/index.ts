@@ -1,3 +1,4 @@
+export { documentSizeFault, mostDocumentBytes } from './document-text.js';
 export { type EvaluationDocument, evaluationFormat, evaluationSchema } from './evaluation.js';
 export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } from './faults.js';
 export {
@@ -32,6 +33,8 @@ export type {
   LoopDocument,
 } from './loops.js';
 export type { LoopMetrics, Metrics, UnitMetrics, UpsetMetrics, UpsetScore } from './metrics.js';
+export { type JobRead, type Refused, readJob } from './read-job.js';
+export { readSettings, type SettingsRead } from './read-settings.js';
 export type {
   ResponseDocument,
   ResponseModel,

@@ -15,12 +15,13 @@ export function refuse(
       code: 'custom';
       message: string;
       params: { refusal: Refusal };
-      input?: unknown;
+      path?: PropertyKey[];
     }): void;
   },
   refusal: Refusal,
+  path: PropertyKey[] = [],
 ): void {
-  context.addIssue({ code: 'custom', message: refusal.problem, params: { refusal } });
+  context.addIssue({ code: 'custom', message: refusal.problem, params: { refusal }, path });
 }
 
 /** An object that refuses keys it does not know and names those it does. */
@@ -52,12 +53,33 @@ export function listOf<Item extends z.ZodType>(
   return judged as unknown as z.ZodType<z.output<Item>[], z.input<Item>[]>;
 }
 
+const largest = 1e60;
 /** Any number of a size that sums and differences of it stay finite. */
-export const finite = z.number().min(-1e60).max(1e60);
-export const positive = z.number().gt(0).max(1e60);
-export const nonnegative = z.number().min(0).max(1e60);
+export const finite = z.number().min(-largest).max(largest);
+export const positive = z.number().gt(0).max(largest);
+export const nonnegative = z.number().min(0).max(largest);
 /** Small enough that 1 + spread and 1 / (1 + spread) are both meant: 0 <= s < 1. */
 export const fraction = z.number().min(0).lt(1);
+
+/** A list of numbers, refused at the first entry that is none: long lists are mostly right or wrong. */
+export function numbersOf(most: number, least: number): z.ZodType<number[], number[]> {
+  const judged = z.preprocess(
+    (value, context) => {
+      const list = Array.isArray(value) && value.length <= most ? value : [];
+      const wrong = list.findIndex((entry) => !finite.safeParse(entry).success);
+      if (wrong === -1) return value;
+      const refusal = {
+        code: 'VALUE_TYPE',
+        problem: 'not a number this list can hold',
+        allowed: `a number between ${-largest} and ${largest}`,
+      } as const;
+      refuse(context, refusal, [wrong]);
+      return z.NEVER;
+    },
+    listOf(finite, most, least),
+  );
+  return judged as unknown as z.ZodType<number[], number[]>;
+}
 
 /** The longest tag of a measurement, actuator, disturbance or loop, in characters. */
 export const tagLength = 32;

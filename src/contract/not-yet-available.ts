@@ -1,0 +1,91 @@
+import type { Draft } from './draft.js';
+import type { Findings, Path } from './findings.js';
+import { integratorsOf, isStableButForIntegrators } from './model-facts.js';
+import { closedScans } from './scan-checks.js';
+import { snappedScans } from './scans.js';
+
+/** A part of the format that this release cannot compute, and where a document asks for it. */
+interface Unavailable {
+  readonly part: string;
+  readonly places: (draft: Draft) => readonly Path[];
+}
+
+/** What the format has and this release does not compute yet; a part that is built leaves the list. */
+const unavailable: readonly Unavailable[] = [
+  { part: 'step-response models', places: stepResponses },
+  { part: 'responses from a measurement that integrates or is unstable', places: longChains },
+  { part: 'feedforward', places: feedforwards },
+  { part: 'dead band', places: (draft) => actuatorsWith(draft, 'deadband') },
+  { part: 'resolution', places: (draft) => actuatorsWith(draft, 'resolution') },
+  { part: 'closed loops with different scans', places: unequalScans },
+  { part: 'the objective effort', places: effortObjectives },
+  { part: 'a time budget', places: timeBudgets },
+  { part: 'integral-only controllers', places: integralOnly },
+];
+
+/** Reports every part of a document that this release cannot compute. */
+export function checkAvailable(draft: Draft, findings: Findings): void {
+  for (const { part, places } of unavailable) {
+    for (const path of places(draft)) {
+      const problem = `not yet available: ${part}`;
+      findings.fault('NOT_YET_AVAILABLE', path, problem, 'remove it or wait for a later release');
+    }
+  }
+}
+
+const allResponses = (draft: Draft) =>
+  [draft.responses, ...draft.points.map((point) => point.responses)].map((list) => list.entries);
+
+function stepResponses(draft: Draft): readonly Path[] {
+  return allResponses(draft)
+    .flat()
+    .filter(({ value }) => value.model.kind === 'step-response')
+    .map(({ path }) => [...path, 'model', 'kind']);
+}
+
+function longChains(draft: Draft): readonly Path[] {
+  return allResponses(draft).flatMap((entries) => {
+    const drifting = new Set<unknown>();
+    for (const { value } of entries) {
+      const { model, to } = value;
+      if (integratorsOf(model) > 0 || !isStableButForIntegrators(model)) drifting.add(to);
+    }
+    const chained = entries.filter(
+      ({ value }) => drifting.has(value.from) && draft.tags.measurements.has(String(value.from)),
+    );
+    return chained.map(({ path }) => [...path, 'from']);
+  });
+}
+
+function feedforwards(draft: Draft): readonly Path[] {
+  const loops = draft.loops.entries.filter(({ value }) => value.feedforward.length > 0);
+  return loops.map(({ path }) => [...path, 'feedforward']);
+}
+
+function actuatorsWith(draft: Draft, key: 'deadband' | 'resolution'): readonly Path[] {
+  const actuators = draft.actuators.entries.filter(({ value }) => (value[key] ?? 0) > 0);
+  return actuators.map(({ path }) => [...path, key]);
+}
+
+function unequalScans(draft: Draft): readonly Path[] {
+  if (draft.timeUnit === undefined) return [];
+  const closed = closedScans(draft, draft.timeUnit);
+  const snapped = snappedScans(closed.map(({ seconds }) => seconds));
+  const fastest = Math.min(...snapped.map((scan) => scan ?? Number.POSITIVE_INFINITY));
+  return closed
+    .filter((_, index) => (snapped[index] ?? fastest) > fastest)
+    .map(({ loop }) => [...loop.path, 'controller', 'scan']);
+}
+
+function effortObjectives(draft: Draft): readonly Path[] {
+  return draft.search?.objectives.includes('effort') ? [['search', 'objectives']] : [];
+}
+
+function timeBudgets(draft: Draft): readonly Path[] {
+  return draft.search?.timeBudget === undefined ? [] : [['search', 'timeBudget']];
+}
+
+function integralOnly(draft: Draft): readonly Path[] {
+  const loops = draft.loops.entries.filter(({ value }) => value.controller.terms === 'I');
+  return loops.map(({ path }) => [...path, 'controller', 'terms']);
+}
