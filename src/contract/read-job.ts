@@ -60,6 +60,7 @@ function judgeJob(written: unknown): JobRead | Refused {
   }
   const parsed = jobSchema.safeParse(written);
   if (!parsed.success) reportIssues(parsed.error.issues, written, findings);
+  if (findings.more > 0) return refused(findings);
   const draft = draftOf(written);
   for (const check of checks) check(draft, findings);
   if (!parsed.success || findings.faults.length > 0) return refused(findings);

@@ -1,5 +1,5 @@
 import { z } from 'zod';
-import { finite, fraction, keyed, listOf, nonnegative, positive, tagSchema } from './scalars.js';
+import { finite, fraction, keyed, nonnegative, numbersOf, positive, tagSchema } from './scalars.js';
 
 const deadTime = nonnegative.default(0);
 
@@ -41,8 +41,8 @@ export const highestOrder = 12;
 /** numerator / denominator, coefficients in descending powers of s */
 const transferFunction = keyed({
   kind: z.literal('transfer-function'),
-  numerator: listOf(finite, highestOrder + 1, 1),
-  denominator: listOf(finite, highestOrder + 1, 1),
+  numerator: numbersOf(highestOrder + 1, 1),
+  denominator: numbersOf(highestOrder + 1, 1),
   deadTime,
 });
 
@@ -50,7 +50,7 @@ const transferFunction = keyed({
 const stepResponse = keyed({
   kind: z.literal('step-response'),
   interval: positive,
-  values: listOf(finite, 10_000, 2),
+  values: numbersOf(10_000, 2),
   integrating: z.boolean().default(false),
   deadTime,
 });
