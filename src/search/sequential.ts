@@ -17,10 +17,16 @@ export interface Descent {
   readonly radius: number;
 }
 
-const forwardSpan = 3e-4;
-const centralSpan = 1e-3;
+/** How derivatives are taken; a descent that stalls goes on with the next, at a fresh radius. */
+const manners = [
+  { span: 3e-4, central: false, radius: 0 },
+  { span: 1e-3, central: true, radius: 0.01 },
+  { span: 5e-3, central: true, radius: 0.05 },
+] as const;
 /** A predicted gain below this (of ln cost) is none. */
 const leastGain = 1e-6;
+/** A round that gained less has stalled. */
+const stalledGain = 1e-5;
 const leastRadius = 1e-5;
 const highestPrice = 1e6;
 const trialsPerModel = 8;
@@ -40,8 +46,9 @@ const fairShare = 0.3;
  *   3. the better of the two is taken if the merit fell by a share of what was predicted; the
  *      radius grows after a good step that reached it, and the search goes on with the same
  *      derivatives; it shrinks after a bad one.
- * The Hessian of the Lagrangian is a damped quasi-Newton estimate. When nothing more is predicted
- * or the radius vanishes, central differences are tried once before the end.
+ * The Hessian of the Lagrangian is a damped quasi-Newton estimate. A round that gains next to
+ * nothing ends the descent only after it was tried again with wider, central differences and a
+ * fresh Hessian: figures read off a grid are not as smooth as they should be.
  *
  * Every levelled quantity is a row of its own: at the optimum several are active at once, and
  * their maximum has no gradient there.
@@ -50,19 +57,15 @@ const fairShare = 0.3;
  *   second-order corrections); J. Nocedal, S. J. Wright, Numerical Optimization, 2nd ed., 2006,
  *   algorithm 18.4 and section 18.5 (price updates)
  */
-export function* descend(goal: Goal, { start, radius: firstRadius }: Descent): Search {
-  const iterate = new Iterate(goal, start, firstRadius);
-  let central = false;
-  for (;;) {
-    const span = central ? centralSpan : forwardSpan;
-    const model = yield* differentiate(goal, iterate.point, span, central);
-    iterate.adopt(model);
-    const gain = yield* iterate.improve();
-    if (gain < leastGain) {
-      if (central) return;
-      iterate.radius = Math.max(iterate.radius, 10 * leastRadius);
+export function* descend(goal: Goal, { start, radius }: Descent): Search {
+  const iterate = new Iterate(goal, start, radius);
+  for (const manner of manners) {
+    iterate.refresh(manner.radius);
+    let gain = Number.POSITIVE_INFINITY;
+    while (gain >= stalledGain) {
+      iterate.adopt(yield* differentiate(goal, iterate.point, manner.span, manner.central));
+      gain = yield* iterate.improve();
     }
-    central = gain < leastGain;
   }
 }
 
@@ -93,6 +96,14 @@ class Iterate {
     this.dimension = point.x.length;
     this.hessian = scaledIdentity(this.dimension, 1);
     this.multipliers = new Float64Array(rowsAt(goal, point).length);
+  }
+
+  /** Forgets the curvature and widens the radius, so that a stalled descent may go on. */
+  refresh(radius: number): void {
+    this.radius = Math.max(this.radius, radius);
+    this.hessian.set(scaledIdentity(this.dimension, 1));
+    this.updates = 0;
+    this.model = undefined;
   }
 
   /** Takes new derivatives, and learns curvature from the difference to the last. */
