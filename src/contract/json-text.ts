@@ -220,7 +220,7 @@ class JsonReader {
 
   private found(at: number): string {
     wordShape.lastIndex = at;
-    return wordShape.exec(this.text)?.[0] ?? '';
+    return wordShape.exec(this.text)?.[0] ?? this.text.slice(at, at + 1);
   }
 
   private place(at = this.at): string {
