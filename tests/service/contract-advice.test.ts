@@ -1,0 +1,192 @@
+import { describe, expect, it } from 'vitest';
+import { readJob, scanSeconds } from '../../src/contract/index.js';
+import { acceptedJob, exampleWith, type Loose } from '../documents.js';
+
+function warningsOf(change: (job: Loose) => void): readonly string[] {
+  const read = readJob(JSON.stringify(exampleWith(change)));
+  if (!read.ok) throw new Error(JSON.stringify(read.faults));
+  return read.warnings.map((warning) => `${warning.path}: ${warning.problem}`);
+}
+
+const withoutPoints = (job: Loose) => {
+  job.unit.operatingPoints = [];
+};
+
+describe('An accepted job', () => {
+  it.each([
+    [
+      'a flow loop by its response',
+      'loops[1].present.gain',
+      (job: Loose) => (job.loops[1].present.gain *= -1),
+    ],
+    [
+      'a level loop by its named action',
+      'loops[2].action',
+      (job: Loose) => (job.loops[2].action = 'reverse'),
+    ],
+    [
+      'an outer loop by the response from its inner measurement',
+      'loops[0].present.gain',
+      (job: Loose) => (job.loops[0].present.gain *= -1),
+    ],
+    [
+      'a loop on a rational response',
+      'loops[3].present.gain',
+      (job: Loose) => (job.loops[3].present.gain *= -1),
+    ],
+    [
+      'an outer loop by its actuator, where the inner response is negative too',
+      'loops[0].present.gain',
+      (job: Loose) => {
+        withoutPoints(job);
+        job.unit.responses[1].from = 'FV-111';
+        job.unit.responses[0].model.gain *= -1;
+        job.loops[1].present.gain *= -1;
+      },
+    ],
+  ])('is warned of a gain that acts against its response: %s', (_, path, change) => {
+    const warnings = warningsOf(change);
+    expect(warnings).toHaveLength(1);
+    expect(warnings[0]).toContain(`${path}: `);
+    expect(warnings[0]).toMatch(/against its response/);
+  });
+
+  it('is not warned of a sign where two ways lead from output to measurement', () => {
+    const warnings = warningsOf((job) => {
+      withoutPoints(job);
+      const model = { kind: 'first-order', gain: -1, timeConstant: 1 };
+      job.unit.responses.push({ from: 'FV-111', to: 'TI-110', model });
+      job.unit.responses.push({ from: 'FI-111', to: 'PI-130', model });
+      job.unit.responses.push({ from: 'PV-130', to: 'FI-111', model });
+      job.loops[3].present.gain *= -1;
+    });
+    expect(warnings).toEqual([]);
+  });
+
+  it('has scans within one percent of each other made one, and is told', () => {
+    const document = exampleWith((job) => {
+      job.loops[0].controller.scan = 1.008;
+      job.loops[3].controller = { ...job.loops[3].controller, scan: 1.004 / 60, scanUnit: 'min' };
+    });
+    const job = acceptedJob(document);
+    expect(job.loops.map((loop) => scanSeconds(loop.controller))).toEqual([1, 1, 1, 1]);
+    const read = readJob(JSON.stringify(document));
+    expect(read.ok ? read.warnings.map(({ path }) => path) : []).toEqual([
+      'loops[0].controller.scan',
+      'loops[3].controller.scan',
+    ]);
+  });
+
+  it('is not warned of scans that are equal in different units', () => {
+    const warnings = warningsOf((job) => {
+      job.loops[0].controller = { ...job.loops[0].controller, scan: 0.05, scanUnit: 'min' };
+      for (const loop of job.loops.slice(1)) loop.controller.scan = 3;
+    });
+    expect(warnings).toEqual([]);
+  });
+
+  it('is warned of a derivative whose filter is shorter than a scan', () => {
+    expect(warningsOf((job) => (job.loops[0].present.filter = 0.5))).toEqual([
+      expect.stringMatching(/^loops\[0\]\.present\.filter: .*one scan/),
+    ]);
+  });
+
+  it('is warned of a load step that an outer loop cannot have', () => {
+    expect(warningsOf((job) => (job.loops[0].loadStep = 1))).toEqual([
+      expect.stringMatching(/^loops\[0\]\.loadStep: /),
+    ]);
+  });
+});
+
+describe('What a release can compute', () => {
+  it.each([
+    [
+      'series and parallel forms',
+      (job: Loose) => {
+        job.loops[0].controller.form = 'series';
+        job.loops[1].controller.form = 'parallel';
+      },
+    ],
+    [
+      'PD on a level',
+      (job: Loose) => {
+        job.loops[2].controller.terms = 'PD';
+        delete job.loops[2].present.integral;
+      },
+    ],
+    [
+      'P alone',
+      (job: Loose) => {
+        job.loops[1].controller.terms = 'P';
+        job.loops[1].present.integral = 0;
+      },
+    ],
+    ['a loop that has the tag of its measurement', (job: Loose) => (job.loops[2].tag = 'LI-120')],
+    [
+      'a loop in manual beside the one that took over its actuator',
+      (job: Loose) => {
+        job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual' });
+      },
+    ],
+    [
+      'a loop in manual without settings',
+      (job: Loose) => {
+        job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual' });
+        delete job.loops[4].present;
+      },
+    ],
+    [
+      'a whole cascade in manual',
+      (job: Loose) => {
+        job.loops[0].task = 'manual';
+        job.loops[1].task = 'manual';
+      },
+    ],
+    ['a coupling without effect', (job: Loose) => (job.unit.responses[5].model.rate = 0)],
+    [
+      'a disturbance that is felt at once',
+      (job: Loose) => {
+        withoutPoints(job);
+        job.unit.responses[5].model = {
+          kind: 'transfer-function',
+          numerator: [1],
+          denominator: [2],
+        };
+      },
+    ],
+    [
+      'as much lead as lag behind a dead time',
+      (job: Loose) => {
+        withoutPoints(job);
+        const model = {
+          kind: 'transfer-function',
+          numerator: [-1, -1],
+          denominator: [2, 1],
+          deadTime: 1,
+        };
+        job.unit.responses[4].model = model;
+      },
+    ],
+    [
+      'a runaway process that one loop holds',
+      (job: Loose) => {
+        withoutPoints(job);
+        job.unit.responses[4].model = {
+          kind: 'transfer-function',
+          numerator: [1],
+          denominator: [2, -1],
+        };
+      },
+    ],
+    ['a dead band of zero', (job: Loose) => (job.unit.actuators[0].deadband = 0)],
+    [
+      'scans of loops in manual that fit no grid',
+      (job: Loose) => {
+        job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual' });
+        job.loops[4].controller = { ...job.loops[4].controller, scan: 1.37 };
+      },
+    ],
+  ])('includes %s', (_, change) => {
+    acceptedJob(exampleWith(change));
+  });
+});
