@@ -21,7 +21,7 @@ export interface Listed<Value> {
   readonly complete: boolean;
 }
 
-export interface PointDraft {
+interface PointDraft {
   readonly path: Path;
   readonly name: unknown;
   readonly responses: Listed<ResponseDocument>;

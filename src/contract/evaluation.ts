@@ -5,7 +5,7 @@ import { hashSchema, scoredSettingsSchema, trendSchema } from './scored.js';
 export const evaluationFormat = 'heddle-evaluation/1';
 
 /** Something the reader of a result should know: where in the job document, and what. */
-export const noticeSchema = keyed({ path: z.string(), value: z.string(), problem: z.string() });
+const noticeSchema = keyed({ path: z.string(), value: z.string(), problem: z.string() });
 
 /** One tuning set, scored, with the responses it gives. */
 export const evaluationSchema = keyed({

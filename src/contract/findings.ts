@@ -5,7 +5,7 @@ import type { Fault, FaultCode, Warning } from './faults.js';
 export type Path = readonly PropertyKey[];
 
 /** How many faults one reading lists. */
-export const mostFaults = 200;
+const mostFaults = 200;
 
 /**
  * What a reading of one document has found so far. Values and entry names in the messages are

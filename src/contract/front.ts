@@ -11,10 +11,10 @@ const count = z.number().int().min(0);
 const alternativeIdSchema = z.string().regex(/^A\d{2,3}$/);
 
 /** A published rule's settings, or today's, with where the rule stands. */
-export const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });
+const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });
 
 /** How an alternative fared on models that the search never saw. */
-export const verificationSchema = keyed({
+const verificationSchema = keyed({
   models: count,
   failures: count,
   /** Lower bound, with 95 % confidence, of the share of models within every limit. */
@@ -24,7 +24,7 @@ export const verificationSchema = keyed({
 });
 
 /** One tuning set of the front. */
-export const alternativeSchema = keyed({
+const alternativeSchema = keyed({
   id: alternativeIdSchema,
   ...scoredShape,
   verified: verificationSchema,
@@ -33,14 +33,14 @@ export const alternativeSchema = keyed({
 });
 
 /** A limit that some alternatives lie on; `loop` is null for a limit of the unit. */
-export const bindingSchema = keyed({
+const bindingSchema = keyed({
   limit: z.string(),
   loop: tagSchema.nullable(),
   alternatives: count,
 });
 
 /** What stands in the way where the limits cannot be met together. */
-export const infeasibleSchema = keyed({
+const infeasibleSchema = keyed({
   nearest: z.array(scoredSettingsSchema),
   /** The smallest relaxation of each limit that would open the way by itself. */
   limits: z.array(

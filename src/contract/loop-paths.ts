@@ -11,7 +11,7 @@ export function loopsByTag(draft: Draft): LoopsByTag {
 }
 
 /** The loop and those inside it, outermost first; a ring ends where it would repeat. */
-export function cascadeFrom(loop: LoopAsWritten, loops: LoopsByTag): readonly LoopAsWritten[] {
+function cascadeFrom(loop: LoopAsWritten, loops: LoopsByTag): readonly LoopAsWritten[] {
   const cascade: LoopAsWritten[] = [];
   for (let at: LoopAsWritten | undefined = loop; at !== undefined && !cascade.includes(at); ) {
     cascade.push(at);

@@ -30,7 +30,7 @@ const termsSchema = z.preprocess((value, context) => {
 >;
 
 /** How one controller writes and runs its algorithm. */
-export const controllerSchema = keyed({
+const controllerSchema = keyed({
   form: z.enum(['ideal', 'series', 'parallel']).default('ideal'),
   terms: termsSchema,
   gainIn: z.enum(['percent', 'engineering', 'proportional-band']).default('percent'),
@@ -49,12 +49,12 @@ export const controllerSchema = keyed({
 });
 
 /** What a loop moves: an actuator by its tag, or another loop's setpoint. */
-export const drivesSchema = z.union([tagSchema, keyed({ loop: tagSchema })], {
+const drivesSchema = z.union([tagSchema, keyed({ loop: tagSchema })], {
   error: () => 'an actuator tag, or { "loop": loop tag }',
 });
 
 /** A known term added to the output, from a disturbance or from another loop's output. */
-export const feedforwardSchema = keyed({
+const feedforwardSchema = keyed({
   from: z.union([tagSchema, keyed({ outputOf: tagSchema })], {
     error: () => 'a disturbance tag, or { "outputOf": loop tag }',
   }),

@@ -5,7 +5,7 @@ import { keyed, tagSchema } from './scalars.js';
 const figure = z.number().nullable();
 
 /** What one upset does to one loop. Engineering units and the job's time unit. */
-export const upsetMetricsSchema = keyed({
+const upsetMetricsSchema = keyed({
   iae: figure,
   itae: figure,
   peakDeviation: figure,
@@ -23,14 +23,14 @@ export const upsetMetricsSchema = keyed({
 export const upsetKindSchema = z.enum(['setpoint', 'load', 'disturbance']);
 
 /** One upset: the loop that is stepped or loaded, or the disturbance, and what each loop does. */
-export const upsetScoreSchema = keyed({
+const upsetScoreSchema = keyed({
   kind: upsetKindSchema,
   tag: tagSchema,
   loops: z.record(tagSchema, upsetMetricsSchema),
 });
 
 /** What is known of one loop over all upsets and frequencies. */
-export const loopMetricsSchema = keyed({
+const loopMetricsSchema = keyed({
   peakSensitivity: figure,
   peakComplementary: figure,
   /** The smallest factor above 1 on the gain that makes the unit unstable. */
@@ -59,13 +59,17 @@ export const loopMetricsSchema = keyed({
   peakRate: figure,
   /** Output travel over all upsets. */
   travel: figure,
+  /** Largest deviation of another loop, in its tolerances, while this loop's setpoint is stepped. */
+  upsetToOthers: figure,
 });
 
 /** What is known of the unit as a whole. */
-export const unitMetricsSchema = keyed({
+const unitMetricsSchema = keyed({
   stable: z.boolean(),
   /** In `worst`: how many models of the set are unstable. */
   unstableModels: z.number().int().min(0).exactOptional(),
+  /** E over that of the reference; the worst is over the model set. */
+  speed: figure,
   peakSingularValueS: figure,
   peakSingularValueT: figure,
   /** Relative gains, a row a measurement and a column a manipulated variable, by `rgaLoops`. */

@@ -36,7 +36,7 @@ const integrating = keyed({
 });
 
 /** The highest power of s in a transfer function. */
-export const highestOrder = 12;
+const highestOrder = 12;
 
 /** numerator / denominator, coefficients in descending powers of s */
 const transferFunction = keyed({
@@ -55,7 +55,7 @@ const stepResponse = keyed({
   deadTime,
 });
 
-export const responseModelSchema = z.discriminatedUnion('kind', [
+const responseModelSchema = z.discriminatedUnion('kind', [
   firstOrder,
   secondOrder,
   integrating,
@@ -64,7 +64,7 @@ export const responseModelSchema = z.discriminatedUnion('kind', [
 ]);
 
 /** Fractions of the nominal value by which a response may differ. */
-export const spreadSchema = keyed({
+const spreadSchema = keyed({
   gain: fraction.exactOptional(),
   timeConstant: fraction.exactOptional(),
   deadTime: fraction.exactOptional(),
@@ -73,7 +73,7 @@ export const spreadSchema = keyed({
 });
 
 /** An actuator, disturbance or measurement by its tag, or the setpoint of a kept loop. */
-export const responseSourceSchema = z.union([tagSchema, keyed({ setpointOf: tagSchema })], {
+const responseSourceSchema = z.union([tagSchema, keyed({ setpointOf: tagSchema })], {
   error: () => 'a tag, or { "setpointOf": loop tag }',
 });
 

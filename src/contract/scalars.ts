@@ -82,7 +82,7 @@ export function numbersOf(most: number, least: number): z.ZodType<number[], numb
 }
 
 /** The longest tag of a measurement, actuator, disturbance or loop, in characters. */
-export const tagLength = 32;
+const tagLength = 32;
 
 const tagAllowed = `1 to ${tagLength} printable characters, no blank at either end`;
 const unprintable = /[\p{C}\p{Zl}\p{Zp}]/u;

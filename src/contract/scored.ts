@@ -4,7 +4,7 @@ import { keyed, tagSchema } from './scalars.js';
 import { internalSettingsSchema, settingsSchema } from './settings.js';
 
 /** The figures a front is drawn in, smaller is better; null for an unstable set. */
-export const objectivesSchema = keyed({
+const objectivesSchema = keyed({
   speed: z.number().nullable(),
   robustness: z.number().nullable(),
   effort: z.number().nullable().exactOptional(),

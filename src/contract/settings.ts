@@ -15,7 +15,7 @@ export const loopSettingsSchema = keyed({
 /** Settings of several loops, by loop tag. */
 export const settingsSchema = z.record(tagSchema, loopSettingsSchema);
 
-/** The same settings in the one internal form: ideal, engineering units, seconds. */
+/** The same settings in the one internal form: ideal, engineering units, the job's time unit. */
 export const internalSettingsSchema = keyed({
   kc: finite,
   /** Integral time; null without integral action. */

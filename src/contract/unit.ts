@@ -21,7 +21,7 @@ export const mostOf = {
 } as const;
 
 /** The same responses with the models of another regime. */
-export const operatingPointSchema = keyed({
+const operatingPointSchema = keyed({
   name: text(1, 64),
   responses: listOf(responseSchema, mostOf.responses),
 });
@@ -39,7 +39,7 @@ export const unitSchema = keyed({
   operatingPoints: listOf(operatingPointSchema, mostOf.operatingPoints).default([]),
 });
 
-export type UnitAsWritten = z.output<typeof unitSchema>;
+type UnitAsWritten = z.output<typeof unitSchema>;
 export type UnitDocument = Omit<UnitAsWritten, 'measurements'> & {
   measurements: MeasurementDocument[];
 };

@@ -32,12 +32,14 @@ const loop: LoopMetrics = {
   peakMove: 1.5,
   peakRate: 90,
   travel: 14,
+  upsetToOthers: 0.4,
 };
 
 const metrics: Metrics = {
   loops: { 'TC-110': loop },
   unit: {
     stable: true,
+    speed: 0.6,
     peakSingularValueS: 1.9,
     peakSingularValueT: 1.2,
     rga: [[1]],
