@@ -5,12 +5,15 @@ import { constants } from 'node:os';
  * A child process that never outlives its parent's will. It runs in a process group of its own, so
  * that one signal reaches everything it started. The state is one of three: running; asked to stop
  * (the first signal was passed on, repeats within a moment are the terminal's and npm's echoes of
- * it); and killed, when it did not stop within the grace.
+ * it); and killed, when it did not stop within the grace. Started by npm, it is also asked to stop when
+ * the shell between npm and this process is gone: npm tells that shell alone to terminate.
  */
 
 const passedOn = /** @type {const} */ (['SIGINT', 'SIGTERM', 'SIGHUP', 'SIGQUIT']);
 const graceMs = 10_000;
+const parentCheckMs = 250;
 const isWindows = process.platform === 'win32';
+const isUnderNpm = process.env['npm_lifecycle_event'] !== undefined;
 
 /**
  * Runs a program to its end.
@@ -68,8 +71,13 @@ function passSignals(child) {
     if (seen.size === 1) grace = setTimeout(() => signalGroup(child, 'SIGKILL'), graceMs);
   };
   for (const signal of passedOn) process.on(signal, pass);
+  const parent = process.ppid;
+  const watch = setInterval(() => {
+    if (isUnderNpm && process.ppid !== parent) pass('SIGTERM');
+  }, parentCheckMs);
   return () => {
     clearTimeout(grace);
+    clearInterval(watch);
     for (const signal of passedOn) process.off(signal, pass);
   };
 }

@@ -9,6 +9,12 @@ import { join } from 'node:path';
 /** Written by npm when an install is complete, so an install that was cut short has none. */
 export const installMark = join('node_modules', '.package-lock.json');
 
+/** Names the kind of machine that packages were installed for: some of them are compiled. */
+export const machineMark = join('node_modules', '.installed-for');
+
+/** The kind of machine this is. */
+export const machine = `${process.platform}-${process.arch}`;
+
 /** Written when a build is complete: the digest of what it was built from. */
 export const buildMark = join('dist', '.built-from');
 
@@ -30,7 +36,8 @@ export function isNodeRecent(version, range) {
 }
 
 /**
- * Whether packages must be installed: never done, cut short, or done for an older lock file.
+ * Whether packages must be installed: never done, cut short, done for an older lock file, or done
+ * for another kind of machine that shares the folder (a container, say).
  *
  * @param {string} root  folder of the checkout
  * @returns {boolean}
@@ -38,6 +45,8 @@ export function isNodeRecent(version, range) {
 export function needsInstall(root) {
   const mark = join(root, installMark);
   if (!existsSync(mark)) return true;
+  const installedFor = join(root, machineMark);
+  if (existsSync(installedFor) && readFileSync(installedFor, 'utf8') !== machine) return true;
   return statSync(mark).mtimeMs < statSync(join(root, 'package-lock.json')).mtimeMs;
 }
 

@@ -23,6 +23,8 @@ import {
   installMark,
   isNodeRecent,
   listFiles,
+  machine,
+  machineMark,
   needsBuild,
   needsInstall,
 } from './freshness.mjs';
@@ -123,7 +125,10 @@ async function install() {
   if (!needsInstall(root)) return;
   // Without its mark an install that is cut short from here on is seen as such next time.
   rmSync(join(root, installMark), { force: true });
-  await takeStep('installing packages', () => runNpm('ci', '--include=dev', '--no-progress'));
+  await takeStep('installing packages', () =>
+    runNpm('ci', '--include=dev', '--no-progress', '--loglevel=warn'),
+  );
+  writeFileSync(join(root, machineMark), machine);
 }
 
 async function build() {
