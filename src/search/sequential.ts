@@ -1,15 +1,11 @@
 import type { Search } from './account.js';
+import { distance } from './exploration.js';
 import { type Goal, objective } from './goal.js';
-import {
-  differentiate,
-  type LinearModel,
-  levelledRows,
-  rowExcess,
-  rowsAt,
-} from './linear-model.js';
+import { differentiate, type LinearModel, rowExcess, rowsAt } from './linear-model.js';
 import type { Point } from './problem.js';
 import { type QuadraticSolution, solveQuadratic } from './quadratic-program.js';
 import { dot, scaledIdentity, updateDamped } from './quasi-newton.js';
+import { programFor, type StepProgram } from './step-program.js';
 
 /** Where a descent starts and how far its first step may reach. */
 export interface Descent {
@@ -30,6 +26,11 @@ const stalledGain = 1e-5;
 const leastRadius = 1e-5;
 const highestPrice = 1e6;
 const trialsPerModel = 8;
+/** Null steps between two sets of derivatives, and how near a refused trial may be to serve. */
+const cutLimit = 2;
+const leastCutDistance = 1e-3;
+/** Beyond this distance a cut is forgotten. */
+const cutReach = 0.02;
 const excessIsNone = 1e-7;
 /** Of the feasibility a step could gain, what it must gain. */
 const fairShare = 0.3;
@@ -51,11 +52,15 @@ const fairShare = 0.3;
  * fresh Hessian: figures read off a grid are not as smooth as they should be.
  *
  * Every levelled quantity is a row of its own: at the optimum several are active at once, and
- * their maximum has no gradient there.
+ * their maximum has no gradient there. A single quantity may have such a kink too (a peak that jumps
+ * from one frequency to another): then steps along one branch are refused for the other's sake. So
+ * before a round counts as stalled, a refused trial is differentiated too, and its rows join those
+ * of the round as further cuts: the null step of a bundle method.
  *
  * @source R. Fletcher, Practical Methods of Optimization, 2nd ed., 1987, section 14.4 (Sl1QP with
  *   second-order corrections); J. Nocedal, S. J. Wright, Numerical Optimization, 2nd ed., 2006,
- *   algorithm 18.4 and section 18.5 (price updates)
+ *   algorithm 18.4 and section 18.5 (price updates); K. C. Kiwiel, Methods of Descent for
+ *   Nondifferentiable Optimization, LNM 1133, 1985, chapter 2 (null steps)
  */
 export function* descend(goal: Goal, { start, radius }: Descent): Search {
   const iterate = new Iterate(goal, start, radius);
@@ -65,6 +70,12 @@ export function* descend(goal: Goal, { start, radius }: Descent): Search {
     while (gain >= stalledGain) {
       iterate.adopt(yield* differentiate(goal, iterate.point, manner.span, manner.central));
       gain = yield* iterate.improve();
+      for (let cut = 0; cut < cutLimit && gain < stalledGain; cut += 1) {
+        const { refused } = iterate;
+        if (refused === undefined) break;
+        iterate.cut(yield* differentiate(goal, refused, manner.span, false));
+        gain += yield* iterate.improve();
+      }
     }
   }
 }
@@ -80,7 +91,10 @@ interface Trial {
 /** The current point with all a descent has learnt. */
 class Iterate {
   radius: number;
+  /** The nearest trial refused since the last derivatives that is not too near. */
+  refused: Point | undefined;
   private price = 10;
+  private cuts: LinearModel[] = [];
   private model: LinearModel | undefined;
   private multipliers: Float64Array;
   private readonly hessian: Float64Array;
@@ -106,10 +120,19 @@ class Iterate {
     this.model = undefined;
   }
 
+  /** Adds the derivatives at the refused trial to those in use, and reaches for it again. */
+  cut(model: LinearModel): void {
+    this.cuts.push(model);
+    this.radius = Math.max(this.radius, 2 * distance(model.point.x, this.point.x));
+    this.refused = undefined;
+  }
+
   /** Takes new derivatives, and learns curvature from the difference to the last. */
   adopt(model: LinearModel): void {
     const last = this.model;
     this.model = model;
+    this.refused = undefined;
+    this.cuts = this.cuts.filter((cut) => distance(cut.point.x, model.point.x) < cutReach);
     if (last === undefined || last.point === model.point) return;
     const step = model.point.x.map((value, k) => value - (last.point.x[k] as number));
     const before = this.lagrangianGradient(last);
@@ -148,6 +171,7 @@ class Iterate {
         if (ratio < 0.25) this.radius = Math.max(0.5 * length, 2 * leastRadius);
         break;
       }
+      if (reached.evaluation.defined && length >= leastCutDistance) this.refused = reached;
       this.radius = (Number.isFinite(ratio) && ratio > -1 ? 0.4 : 0.2) * length;
     }
     this.point = best;
@@ -199,11 +223,11 @@ class Iterate {
 
   /** The step of the quadratic program about the model, rows at the given values. */
   private propose(model: LinearModel, values: Float64Array, radius: number): Trial {
-    const program = this.program(model, values, radius);
+    const program = programFor(this.goal, model, values, this.cuts, this.hessian, radius);
     const solution = this.steer(program);
     const multipliers = new Float64Array(values.length);
     for (const [index, row] of program.active.entries()) {
-      multipliers[row] = solution.multipliers[index] as number;
+      if (row >= 0) multipliers[row] = solution.multipliers[index] as number;
     }
     const step = solution.step.slice(0, this.dimension);
     return { step, multipliers, predicted: this.predict(program, solution) };
@@ -216,7 +240,7 @@ class Iterate {
    * @source R. H. Byrd, J. Nocedal, R. A. Waltz, Steering exact penalty methods for nonlinear
    *   programming, Optimization Methods and Software 23 (2008), eq. 2.6
    */
-  private steer(program: Program): QuadraticSolution {
+  private steer(program: StepProgram): QuadraticSolution {
     let solution = solveQuadratic({ ...program, price: this.price });
     if (solution.excess <= excessIsNone || this.price >= highestPrice) return solution;
     const most = program.excess - solveQuadratic({ ...program, price: highestPrice }).excess;
@@ -231,7 +255,7 @@ class Iterate {
     return solution;
   }
 
-  private predict(program: Program, solution: QuadraticSolution): number {
+  private predict(program: StepProgram, solution: QuadraticSolution): number {
     const { size, gradient, hessian } = program;
     let change = dot(gradient, solution.step);
     for (let i = 0; i < size; i += 1) {
@@ -245,81 +269,6 @@ class Iterate {
     }
     return this.price * (program.excess - solution.excess) - change;
   }
-
-  /** Rows that no step within the box and radius can reach are left out. */
-  private program(model: LinearModel, values: Float64Array, radius: number): Program {
-    const { dimension, goal } = this;
-    const bound = goal.kind === 'peak' ? 1 : 0;
-    const size = dimension + bound;
-    const lower = new Float64Array(size);
-    const upper = new Float64Array(size);
-    for (let k = 0; k < dimension; k += 1) {
-      const x = model.point.x[k] as number;
-      lower[k] = Math.max(-x, -radius);
-      upper[k] = Math.min(1 - x, radius);
-    }
-    const gradient = new Float64Array(size);
-    gradient.set(model.gradient);
-    const hessian = new Float64Array(size * size);
-    for (let i = 0; i < dimension; i += 1) {
-      hessian.set(this.hessian.subarray(i * dimension, (i + 1) * dimension), i * size);
-    }
-    const first = levelledRows(goal, model.point);
-    const top = bound === 1 ? Math.log(model.point.peak) : 0;
-    const active: number[] = [];
-    const right: number[] = [];
-    let excess = 0;
-    for (let r = 0; r < values.length; r += 1) {
-      const free = bound === 1 && r < first;
-      const value = (values[r] as number) - (free ? top : 0);
-      let reach = value;
-      for (let k = 0; k < dimension; k += 1) {
-        const slope = model.jacobian[r * dimension + k] as number;
-        reach += slope * ((slope > 0 ? upper[k] : lower[k]) as number);
-      }
-      if (!free && reach <= 0) continue;
-      if (!free && value > 0) excess += value;
-      active.push(r);
-      right.push(-value);
-    }
-    const matrix = new Float64Array(active.length * size);
-    for (const [index, row] of active.entries()) {
-      matrix.set(model.jacobian.subarray(row * dimension, (row + 1) * dimension), index * size);
-      if (bound === 1 && row < first) matrix[index * size + dimension] = -1;
-    }
-    if (bound === 1) {
-      gradient[dimension] = 1;
-      lower[dimension] = -20;
-      upper[dimension] = 20;
-    }
-    return {
-      size,
-      hessian,
-      gradient,
-      matrix,
-      right: Float64Array.from(right),
-      rows: active.length,
-      lower,
-      upper,
-      active,
-      excess,
-    };
-  }
-}
-
-interface Program {
-  readonly size: number;
-  readonly hessian: Float64Array;
-  readonly gradient: Float64Array;
-  readonly matrix: Float64Array;
-  readonly right: Float64Array;
-  readonly rows: number;
-  readonly lower: Float64Array;
-  readonly upper: Float64Array;
-  /** The row of the model behind each row of the program. */
-  readonly active: readonly number[];
-  /** What the program's rows exceed 0 by before any step. */
-  readonly excess: number;
 }
 
 function largest(step: Float64Array): number {
