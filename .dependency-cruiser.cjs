@@ -54,8 +54,8 @@ const layers = Object.entries(mayImport).map(([folder, others]) => ({
   severity: 'error',
   from: { path: pathOf(folder) },
   to: {
-    path: '^(src|workers)/',
-    pathNot: [pathOf(folder), anyOf(folder === 'base' ? ['base'] : ['base', ...others])],
+    path: '^(src|workers|tests)/',
+    pathNot: [pathOf(folder), anyOf(['base', ...others])],
   },
 }));
 
