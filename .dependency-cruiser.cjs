@@ -25,12 +25,13 @@ const mayImport = {
   ],
   records: ['contract'],
   queue: ['contract'],
-  api: ['contract', 'study', 'records', 'queue'],
-  cli: ['contract', 'study', 'records', 'queue', 'demo'],
-  demo: ['contract', 'study', 'records', 'queue'],
+  compute: ['contract', 'study'],
+  api: ['contract', 'study', 'compute', 'records', 'queue'],
+  cli: ['contract', 'study', 'compute', 'records', 'queue', 'demo'],
+  demo: ['contract', 'study', 'compute', 'records', 'queue'],
   web: ['contract'],
   bootstrap: [],
-  workers: ['contract', 'study', 'records', 'queue'],
+  workers: ['contract', 'study', 'compute', 'records', 'queue'],
 };
 
 /** Folders that only calculate: no input, no output, no clock. */
