@@ -56,6 +56,8 @@ function timesOf(p: Polynomial): number[] | null {
   const times: number[] = [];
   for (const { re, im } of findRoots(p)) {
     const size = Math.hypot(re, im);
+    // A root beyond all numbers belongs to a time that is none.
+    if (!Number.isFinite(size)) continue;
     if (size === 0 || Math.abs(re) < repeatedDamping * size) return null;
     times.push(-Math.sign(re) / size);
   }
