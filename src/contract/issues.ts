@@ -26,7 +26,7 @@ function reportIssue(issue: Issue, path: Path, written: unknown, findings: Findi
     const refusal: Refusal | undefined = issue.params?.['refusal'];
     if (refusal === undefined) return;
     findings.fault(refusal.code, path, refusal.problem, refusal.allowed);
-  } else if (valueAt(written, path) === undefined && path.length > 0) {
+  } else if (valueAt(written, path) === undefined) {
     findings.fault('KEY_MISSING', path, 'a required key is missing', allowedBy(issue));
   } else if (issue.code === 'invalid_union') {
     reportUnion(issue, path, written, findings);

@@ -65,7 +65,7 @@ export class ResponseGraph {
       way.push(step);
       point = pointOfTag(step.value.to);
     }
-    return way.length === on.length ? way : undefined;
+    return way;
   }
 
   private reached(starts: readonly Point[], next: (point: Point) => Point[]): ReadonlySet<Point> {

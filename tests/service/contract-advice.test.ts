@@ -44,6 +44,18 @@ describe('An accepted job', () => {
         job.loops[1].present.gain *= -1;
       },
     ],
+    [
+      'a loop whose output passes another measurement, which falls as it rises',
+      'loops[3].present.gain',
+      (job: Loose) => {
+        withoutPoints(job);
+        const model = { kind: 'first-order', gain: -1, timeConstant: 1 };
+        job.unit.measurements.push({ tag: 'FI-131', unit: 't/h', low: 0, high: 9 });
+        job.unit.responses[4] = { from: 'PV-130', to: 'FI-131', model };
+        job.unit.responses.push({ from: 'FI-131', to: 'PI-130', model: { ...model, gain: 1 } });
+        job.loops[3].present.gain *= -1;
+      },
+    ],
   ])('is warned of a gain that acts against its response: %s', (_, path, change) => {
     const warnings = warningsOf(change);
     expect(warnings).toHaveLength(1);
@@ -176,6 +188,12 @@ describe('What a release can compute', () => {
           numerator: [1],
           denominator: [2, -1],
         };
+      },
+    ],
+    [
+      'a loop in manual whose output limits exclude where it stands',
+      (job: Loose) => {
+        job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual', outputLow: 60 });
       },
     ],
     ['a dead band of zero', (job: Loose) => (job.unit.actuators[0].deadband = 0)],

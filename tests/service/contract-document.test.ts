@@ -186,6 +186,25 @@ describe('A job document', () => {
     );
   });
 
+  it('is not blamed for what only a faulty entry keeps from being seen', () => {
+    const broken = (change: (job: Loose) => void) => faultsOf(exampleWith(change));
+    expect(
+      broken((job) => {
+        job.unit.responses[0].model.gain = 'x';
+      }),
+    ).toEqual(['VALUE_TYPE unit.responses[0].model.gain']);
+    expect(
+      broken((job) => {
+        job.loops[1].controller.scan = 0;
+      }),
+    ).toEqual(['VALUE_RANGE loops[1].controller.scan']);
+    expect(
+      broken((job) => {
+        job.unit.operatingPoints[0].responses[0].to = 1;
+      }),
+    ).toEqual(['VALUE_TYPE unit.operatingPoints[0].responses[0].to']);
+  });
+
   it('with 65 loops has one fault, not one for each', () => {
     const faults = faultsOf(
       exampleWith((job) => {
