@@ -1,5 +1,6 @@
 import type { Random } from '../base/index.js';
 import { decomposeSymmetric } from './symmetric-eigen.js';
+import { scaledIdentity } from './vector.js';
 
 /**
  * Covariance matrix adaptation on the unit box: ask for a population, tell its ranking.
@@ -59,8 +60,8 @@ export class Evolution {
     ); // eq. 58
     this.expectedLength = Math.sqrt(n) * (1 - 1 / (4 * n) + 1 / (21 * n * n));
     this.mean = Float64Array.from(mean);
-    this.covariance = identity(n);
-    this.vectors = identity(n);
+    this.covariance = scaledIdentity(n, 1);
+    this.vectors = scaledIdentity(n, 1);
     this.scales = new Float64Array(n).fill(1);
     this.path = new Float64Array(n);
     this.stepPath = new Float64Array(n);
@@ -185,7 +186,7 @@ export class Evolution {
 }
 
 /** Eq. 48. */
-export function defaultPopulation(dimension: number): number {
+function defaultPopulation(dimension: number): number {
   return 4 + Math.floor(3 * Math.log(dimension));
 }
 
@@ -193,10 +194,4 @@ export function defaultPopulation(dimension: number): number {
 export function mirror(value: number): number {
   const folded = Math.abs(value) % 2;
   return folded > 1 ? 2 - folded : folded;
-}
-
-function identity(size: number): Float64Array {
-  const matrix = new Float64Array(size * size);
-  for (let i = 0; i < size; i += 1) matrix[i * size + i] = 1;
-  return matrix;
 }

@@ -4,6 +4,7 @@ import { Evolution } from './evolution.js';
 import { compare, type Goal } from './goal.js';
 import type { Point } from './problem.js';
 import { sampleEvenly } from './space-filling.js';
+import { distance } from './vector.js';
 
 /** Where a descent may start: the best of each region met, in the order they were met. */
 export interface Exploration {
@@ -62,13 +63,4 @@ function* evolve({ goal, random, found }: Exploration, seed: Point, place: numbe
       since = 0;
     }
   }
-}
-
-/** Largest difference in any coordinate. */
-export function distance(a: Float64Array, b: Float64Array): number {
-  let most = 0;
-  for (let i = 0; i < a.length; i += 1) {
-    most = Math.max(most, Math.abs((a[i] as number) - (b[i] as number)));
-  }
-  return most;
 }

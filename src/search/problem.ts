@@ -7,6 +7,11 @@
  *               0 <= x <= 1
  *
  * A point may lie outside the domain, where nothing but its disorder means anything.
+ *
+ * A maximum handed in as one number has a kink wherever its place jumps, and a descent can only
+ * feel its way along that. Handed in as the maxima over fixed parts of its range, it is smooth where
+ * it matters: give each peak as several levelled quantities, each limit as several constraints,
+ * wherever that is cheap. Those far from their limit cost next to nothing.
  */
 
 /** What one point turned out to be. */
@@ -28,7 +33,7 @@ export interface Problem {
   readonly dimension: number;
   readonly levelledCount: number;
   readonly constraintCount: number;
-  /** One evaluation a point, in order. The answer for a point never depends on its batch. */
+  /** One evaluation a point, in order, in arrays of its own. The answer for a point never depends on its batch. */
   evaluate(points: readonly Float64Array[]): readonly Evaluation[];
 }
 

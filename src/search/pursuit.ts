@@ -1,11 +1,12 @@
 import { CodedError, type Random } from '../base/index.js';
 import { Account } from './account.js';
 import { mirror } from './evolution.js';
-import { distance, explore } from './exploration.js';
+import { explore } from './exploration.js';
 import { compare, type Goal, objective, violation } from './goal.js';
 import type { Plan, Point, Problem, StopRequest } from './problem.js';
 import { descend } from './sequential.js';
 import { descendSimplex } from './simplex.js';
+import { distance } from './vector.js';
 
 /** All a search needs beside its goal. */
 export interface Assignment {

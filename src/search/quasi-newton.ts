@@ -1,3 +1,5 @@
+import { dot } from './vector.js';
+
 /**
  * Updates an approximate Hessian from a step and the change of the Lagrangian's gradient along it,
  * damped so that it stays positive definite where the true one is not.
@@ -34,16 +36,4 @@ export function updateDamped(
         ((damped[i] as number) * (damped[k] as number)) / scale;
     }
   }
-}
-
-export function dot(a: Float64Array, b: Float64Array): number {
-  let sum = 0;
-  for (let i = 0; i < a.length; i += 1) sum += (a[i] as number) * (b[i] as number);
-  return sum;
-}
-
-export function scaledIdentity(size: number, scale: number): Float64Array {
-  const matrix = new Float64Array(size * size);
-  for (let i = 0; i < size; i += 1) matrix[i * size + i] = scale;
-  return matrix;
 }

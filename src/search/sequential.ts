@@ -1,11 +1,11 @@
 import type { Search } from './account.js';
-import { distance } from './exploration.js';
 import { type Goal, objective } from './goal.js';
 import { differentiate, type LinearModel, rowExcess, rowsAt } from './linear-model.js';
 import type { Point } from './problem.js';
 import { type QuadraticSolution, solveQuadratic } from './quadratic-program.js';
-import { dot, scaledIdentity, updateDamped } from './quasi-newton.js';
+import { updateDamped } from './quasi-newton.js';
 import { programFor, type StepProgram } from './step-program.js';
+import { distance, dot, largest, scaledIdentity } from './vector.js';
 
 /** Where a descent starts and how far its first step may reach. */
 export interface Descent {
@@ -269,8 +269,4 @@ class Iterate {
     }
     return this.price * (program.excess - solution.excess) - change;
   }
-}
-
-function largest(step: Float64Array): number {
-  return step.reduce((most, value) => Math.max(most, Math.abs(value)), 0);
 }

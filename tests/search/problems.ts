@@ -23,7 +23,7 @@ function v(x: readonly number[], i: number): number {
  * Hock & Schittkowski, Test Examples for Nonlinear Programming Codes, LNEMS 187, 1981, problem 71.
  * The equality is an inequality here: its multiplier says which side is active.
  */
-export const hs71: Published = {
+const hs71: Published = {
   name: 'HS71',
   low: [1, 1, 1, 1],
   high: [5, 5, 5, 5],
@@ -38,7 +38,7 @@ export const hs71: Published = {
 };
 
 /** Hock & Schittkowski 1981, problem 76: a convex quadratic program. */
-export const hs76: Published = {
+const hs76: Published = {
   name: 'HS76',
   low: [0, 0, 0, 0],
   high: [5, 5, 5, 5],
@@ -64,7 +64,7 @@ export const hs76: Published = {
 };
 
 /** Hock & Schittkowski 1981, problem 43 (Rosen-Suzuki): optimum -44 at (0, 1, 2, -1). */
-export const hs43: Published = {
+const hs43: Published = {
   name: 'HS43',
   low: [-3, -3, -3, -3],
   high: [3, 3, 3, 3],
@@ -108,7 +108,7 @@ export const rosenbrock: Published = {
  * T. P. Runarsson, X. Yao, Stochastic ranking for constrained evolutionary optimization, IEEE
  * Trans. Evolutionary Computation 4 (2000), appendix.
  */
-export const g04: Published = {
+const g04: Published = {
   name: 'G04',
   low: [78, 33, 27, 27, 27],
   high: [102, 45, 45, 45, 45],
@@ -151,7 +151,7 @@ export const g06: Published = {
   start: [20, 6],
 };
 
-export const g07: Published = {
+const g07: Published = {
   name: 'G07',
   low: Array.from({ length: 10 }, () => -10),
   high: Array.from({ length: 10 }, () => 10),
@@ -186,7 +186,7 @@ export const g07: Published = {
   start: Array.from({ length: 10 }, () => 0),
 };
 
-export const g09: Published = {
+const g09: Published = {
   name: 'G09',
   low: Array.from({ length: 7 }, () => -10),
   high: Array.from({ length: 7 }, () => 10),
@@ -219,7 +219,7 @@ export const g09: Published = {
 };
 
 /** Variables spanning decades, searched in logarithms as any such quantity should be. */
-export const g10: Published = {
+const g10: Published = {
   name: 'G10',
   low: [100, 1000, 1000, 10, 10, 10, 10, 10].map(Math.log),
   high: [10000, 10000, 10000, 1000, 1000, 1000, 1000, 1000].map(Math.log),
