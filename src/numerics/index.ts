@@ -1,0 +1,13 @@
+export { ComplexMatrix, largestSingularValue } from './complex-matrix.js';
+export { eliminate, identity, multiplyMatrices, solveLinear } from './matrix.js';
+export { discretizeHeld, exponentiate } from './matrix-exponential.js';
+export {
+  addPolynomials,
+  degree,
+  dividePolynomials,
+  evaluatePolynomial,
+  multiplyPolynomials,
+  type Polynomial,
+  trimPolynomial,
+} from './polynomial.js';
+export { type ComplexNumber, findRoots } from './roots.js';
