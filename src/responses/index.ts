@@ -1,0 +1,24 @@
+export { pathsOf, type Response } from './chains.js';
+export {
+  denominatorOf,
+  firstOrder,
+  inSeries,
+  integrating,
+  isIntegrator,
+  isUnstableFactor,
+  longRun,
+  type ProcessModel,
+  rational,
+  secondOrderLags,
+  secondOrderPeriod,
+  varyModel,
+} from './model.js';
+export {
+  type SampledChannel,
+  type SampledInput,
+  type SampledUnit,
+  type SharedBlock,
+  sampleUnit,
+  splitDeadTime,
+  type UnitPath,
+} from './sampling.js';
