@@ -1,0 +1,4 @@
+export { figureCount, type KernelSetup, kernelFigures, type SimulationKernel } from './kernel.js';
+export { type PlainRun, simulatePlainly, type Trajectory } from './plain.js';
+export { ScalarKernel } from './scalar-kernel.js';
+export { steppedLoop, type Upset } from './upset.js';

@@ -1,0 +1,210 @@
+import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
+import type { SampledChannel, SampledInput, SampledUnit, SharedBlock } from '../responses/index.js';
+import type { Upset } from './upset.js';
+
+/** What every loop did, sample by sample; arrays of length steps + 1, deviations from rest. */
+export interface Trajectory {
+  /** s between samples */
+  readonly step: number;
+  readonly pv: readonly Float64Array[];
+  readonly sp: readonly Float64Array[];
+  /** Output as delivered, after range and rate. */
+  readonly op: readonly Float64Array[];
+  /** True where the loop's output met a range or rate limit. */
+  readonly limited: readonly boolean[];
+}
+
+/** A run that is compared with others must be the same in these. */
+export interface PlainRun {
+  readonly unit: SampledUnit;
+  readonly network: LoopNetwork;
+  /** One a loop; ignored for a loop in manual. */
+  readonly controllers: readonly DiscreteController[];
+  /** Steps of the unit between scans. */
+  readonly stepsPerScan: number;
+  readonly upset: Upset;
+  readonly steps: number;
+}
+
+interface ControllerState {
+  filtered1: number;
+  filtered2: number;
+  derivativeInput: number;
+  derivative: number;
+  integral: number;
+  output: number;
+  /** +1 or -1 while the output is held down by its range or rate, else 0. */
+  saturation: number;
+}
+
+const rest = (): ControllerState => ({
+  filtered1: 0,
+  filtered2: 0,
+  derivativeInput: 0,
+  derivative: 0,
+  integral: 0,
+  output: 0,
+  saturation: 0,
+});
+
+/**
+ * The closed loop simulated as written down in the equations, one sample after the other.
+ *
+ * This is the path that judges: it shares no code with the search's kernel, holds every trajectory
+ * and is written to be read. Exact for held inputs at the unit's step.
+ */
+export function simulatePlainly(run: PlainRun): Trajectory {
+  const { unit, controllers, stepsPerScan, upset, steps } = run;
+  const { loops, order, outerOf } = run.network;
+  const automatic = loops.map((loop, i) => loop.automatic && !upset.opened.includes(i));
+  const fresh = (): Float64Array => new Float64Array(steps + 1);
+  const pv = loops.map(fresh);
+  const sp = loops.map(fresh);
+  const op = loops.map(fresh);
+  const limited = loops.map(() => false);
+  const states = loops.map(rest);
+  const held = Array.from({ length: unit.sourceCount }, fresh);
+  const process = startProcess(unit);
+
+  for (let k = 0; k <= steps; k += 1) {
+    if (k > 0) process.advance(held, k);
+    const values = process.read(held, k);
+    for (const i of order) {
+      const loop = loops[i] as Loop;
+      const outer = outerOf[i] as number;
+      const driven = outer >= 0 && (loops[outer] as Loop).automatic && automatic[outer];
+      let setpoint = upset.kind === 'setpoint' && upset.loop === i ? upset.size : 0;
+      if (driven) setpoint = (states[outer] as ControllerState).output;
+      const state = states[i] as ControllerState;
+      const measured = values[loop.measurement] as number;
+      if (automatic[i] && k % stepsPerScan === 0) {
+        const inner = 'loop' in loop.drives ? loop.drives.loop : -1;
+        const blocked =
+          inner >= 0
+            ? (states[inner] as ControllerState).saturation *
+              Math.sign((controllers[inner] as DiscreteController).kp)
+            : 0;
+        scan(
+          state,
+          controllers[i] as DiscreteController,
+          loop,
+          setpoint,
+          measured,
+          stepsPerScan * unit.step,
+          blocked,
+        );
+        if (state.saturation !== 0) limited[i] = true;
+      }
+      (pv[i] as Float64Array)[k] = measured;
+      (sp[i] as Float64Array)[k] = setpoint;
+      (op[i] as Float64Array)[k] = state.output;
+      if ('source' in loop.drives) (held[loop.drives.source] as Float64Array)[k] = state.output;
+      if (loop.setpointSource >= 0) (held[loop.setpointSource] as Float64Array)[k] = setpoint;
+    }
+    if (upset.kind !== 'setpoint') {
+      const source = held[upset.source] as Float64Array;
+      source[k] = (source[k] as number) + upset.size;
+    }
+  }
+  return { step: unit.step, pv, sp, op, limited };
+}
+
+/** One scan of the position algorithm; `blocked` is the direction in which the inner loop is stuck. */
+function scan(
+  s: ControllerState,
+  c: DiscreteController,
+  loop: Loop,
+  setpoint: number,
+  measured: number,
+  scanTime: number,
+  blocked: number,
+): void {
+  s.filtered1 = c.filterDecay * s.filtered1 + (1 - c.filterDecay) * measured;
+  s.filtered2 = c.filterDecay * s.filtered2 + (1 - c.filterDecay) * s.filtered1;
+  const filtered = c.filterOrder === 2 ? s.filtered2 : s.filtered1;
+  const proportional = c.kp * (c.setpointWeight * setpoint - filtered);
+  const input = c.derivativeSetpointWeight * setpoint - filtered;
+  s.derivative = c.derivativeDecay * s.derivative + c.kd * (input - s.derivativeInput);
+  s.derivativeInput = input;
+  const step = c.ki * (setpoint - filtered);
+  if (step * blocked <= 0) s.integral += step;
+
+  const wanted = proportional + s.integral + s.derivative;
+  const reach = loop.rateLimit * scanTime;
+  const low = Math.max(loop.outputLow, s.output - reach);
+  const high = Math.min(loop.outputHigh, s.output + reach);
+  const delivered = Math.min(Math.max(wanted, low), high);
+  s.saturation = wanted > high ? 1 : wanted < low ? -1 : 0;
+  // The integral follows what was delivered, so that it is ready the moment the limit lets go.
+  if (delivered !== wanted && c.ki !== 0) s.integral = delivered - proportional - s.derivative;
+  s.output = delivered;
+}
+
+/** The sampled process with its states; inputs are read from the whole history of held values. */
+function startProcess(unit: SampledUnit): {
+  advance(held: readonly Float64Array[], k: number): void;
+  read(held: readonly Float64Array[], k: number): Float64Array;
+} {
+  const channelStates = unit.channels.map((c) => new Float64Array(c.order));
+  const blockStates = unit.blocks.map((b) => new Float64Array(b.order));
+  const at = (held: readonly Float64Array[], source: number, k: number): number =>
+    k >= 0 ? ((held[source] as Float64Array)[k] as number) : 0;
+  const drive = (
+    x: Float64Array,
+    input: SampledInput,
+    held: readonly Float64Array[],
+    k: number,
+  ): void => {
+    const now = at(held, input.source, k - input.delay);
+    const before = at(held, input.source, k - input.delay - 1);
+    for (let i = 0; i < x.length; i += 1) {
+      x[i] =
+        (x[i] as number) + (input.now[i] as number) * now + (input.before[i] as number) * before;
+    }
+  };
+  const scratch = new Float64Array(
+    Math.max(0, ...unit.channels.map((c) => c.order), ...unit.blocks.map((b) => b.order)),
+  );
+  const turn = (x: Float64Array, transition: Float64Array): void => {
+    const n = x.length;
+    for (let i = 0; i < n; i += 1) {
+      let sum = 0;
+      for (let j = 0; j < n; j += 1) sum += (transition[i * n + j] as number) * (x[j] as number);
+      scratch[i] = sum;
+    }
+    for (let i = 0; i < n; i += 1) x[i] = scratch[i] as number;
+  };
+  const values = new Float64Array(unit.measurementCount);
+  return {
+    advance(held, k) {
+      for (let i = 0; i < unit.channels.length; i += 1) {
+        const channel = unit.channels[i] as SampledChannel;
+        const x = channelStates[i] as Float64Array;
+        turn(x, channel.transition);
+        drive(x, channel, held, k - 1);
+      }
+      for (let i = 0; i < unit.blocks.length; i += 1) {
+        const block = unit.blocks[i] as SharedBlock;
+        const x = blockStates[i] as Float64Array;
+        turn(x, block.transition);
+        for (const input of block.inputs) drive(x, input, held, k - 1);
+      }
+    },
+    read(held, k) {
+      values.fill(0);
+      for (let i = 0; i < unit.channels.length; i += 1) {
+        const channel = unit.channels[i] as SampledChannel;
+        const x = channelStates[i] as Float64Array;
+        let y = channel.feedthrough * at(held, channel.source, k - channel.directDelay);
+        for (let j = 0; j < x.length; j += 1) y += (channel.output[j] as number) * (x[j] as number);
+        values[channel.measurement] = (values[channel.measurement] as number) + y;
+      }
+      for (let i = 0; i < unit.blocks.length; i += 1) {
+        const block = unit.blocks[i] as SharedBlock;
+        values[block.measurement] =
+          (values[block.measurement] as number) + ((blockStates[i] as Float64Array)[0] as number);
+      }
+      return values;
+    },
+  };
+}

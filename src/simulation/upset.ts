@@ -1,0 +1,28 @@
+/** One simulated event, beginning at t = 0 from rest. */
+export type Upset =
+  | {
+      readonly kind: 'setpoint';
+      readonly loop: number;
+      /** PV units */
+      readonly size: number;
+      /** Loops in manual while it runs: the outer loops of an inner one. */
+      readonly opened: readonly number[];
+    }
+  | {
+      readonly kind: 'load';
+      readonly loop: number;
+      /** The source behind the loop's output. */
+      readonly source: number;
+      /** Output units, added behind the actuator's limits. */
+      readonly size: number;
+      readonly opened: readonly number[];
+    }
+  | {
+      readonly kind: 'disturbance';
+      readonly source: number;
+      readonly size: number;
+      readonly opened: readonly number[];
+    };
+
+/** The loop whose own setpoint is stepped, or -1. */
+export const steppedLoop = (upset: Upset): number => (upset.kind === 'setpoint' ? upset.loop : -1);
