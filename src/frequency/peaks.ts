@@ -1,0 +1,81 @@
+/**
+ * Largest value of a smooth function given on a grid.
+ *
+ * Without a probe by a parabola through the best grid value and its neighbours; with one, each local
+ * maximum that could be the largest is closed in on by golden section.
+ * @param values  value at grid index k
+ * @param angles  the grid, ascending
+ * @param probe  the function anywhere
+ */
+export function findPeak(
+  values: (k: number) => number,
+  angles: Float64Array,
+  probe?: (angle: number) => number,
+): number {
+  const count = angles.length;
+  let best = 0;
+  let at = 0;
+  for (let k = 0; k < count; k += 1) {
+    const value = values(k);
+    if (value > best) {
+      best = value;
+      at = k;
+    }
+  }
+  if (probe === undefined) return at > 0 && at < count - 1 ? crestOf(values, angles, at) : best;
+  let peak = best;
+  for (let k = 0; k < count; k += 1) {
+    const value = values(k);
+    const isCrest =
+      (k === 0 || values(k - 1) <= value) && (k === count - 1 || values(k + 1) <= value);
+    if (!isCrest || value < 0.8 * best) continue;
+    const from = Math.log(angles[Math.max(0, k - 1)] as number);
+    const to = Math.log(angles[Math.min(count - 1, k + 1)] as number);
+    peak = Math.max(
+      peak,
+      closeIn((x) => probe(Math.min(Math.PI, Math.exp(x))), from, to),
+    );
+  }
+  return peak;
+}
+
+/** Top of the parabola through three points, over the logarithm of the angle. */
+function crestOf(values: (k: number) => number, angles: Float64Array, k: number): number {
+  const x0 = Math.log((angles[k - 1] as number) / (angles[k] as number));
+  const x1 = Math.log((angles[k + 1] as number) / (angles[k] as number));
+  const y = values(k);
+  const y0 = values(k - 1) - y;
+  const y1 = values(k + 1) - y;
+  const scale = x0 * x1 * (x0 - x1);
+  const curve = (y0 * x1 - y1 * x0) / scale;
+  const slope = (y1 * x0 * x0 - y0 * x1 * x1) / scale;
+  if (!(curve < 0)) return y;
+  return y - (slope * slope) / (4 * curve);
+}
+
+const golden = (Math.sqrt(5) - 1) / 2;
+
+function closeIn(f: (x: number) => number, from: number, to: number): number {
+  let a = from;
+  let b = to;
+  let c = b - golden * (b - a);
+  let d = a + golden * (b - a);
+  let fc = f(c);
+  let fd = f(d);
+  for (let pass = 0; pass < 20; pass += 1) {
+    if (fc > fd) {
+      b = d;
+      d = c;
+      fd = fc;
+      c = b - golden * (b - a);
+      fc = f(c);
+    } else {
+      a = c;
+      c = d;
+      fc = fd;
+      d = a + golden * (b - a);
+      fd = f(d);
+    }
+  }
+  return Math.max(fc, fd);
+}
