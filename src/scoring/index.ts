@@ -1,0 +1,34 @@
+export {
+  type Baseline,
+  publishedBaselines,
+  type RuleContext,
+  type RuleLoop,
+} from './baselines/index.js';
+export { passingShare } from './confidence.js';
+export {
+  controllersOf,
+  gridDensity,
+  judgeModel,
+  type ModelScore,
+  type SampledModel,
+  sampleModel,
+} from './judge.js';
+export {
+  isLowerLimit,
+  type Limit,
+  type LoopQuantity,
+  limitExcess,
+  limitedValue,
+  needsSimulation,
+  tightenLimit,
+  type UnitQuantity,
+} from './limits.js';
+export { type LoopTimeFigures, summarizeLoop } from './loop-figures.js';
+export { referenceSpeed, type SpeedReference, speedOf } from './speed.js';
+export {
+  type LoopCase,
+  settlingBands,
+  type TuningCase,
+  type WeightedUpset,
+} from './tuning-case.js';
+export { readUpsetFigures, type UpsetFigures } from './upset-figures.js';

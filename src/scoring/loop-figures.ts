@@ -1,0 +1,77 @@
+import type { TuningCase } from './tuning-case.js';
+import type { UpsetFigures } from './upset-figures.js';
+
+/** What one loop does over all upsets of one model, engineering units and seconds. */
+export interface LoopTimeFigures {
+  /** Sum over the upsets, each by its weight. */
+  readonly iae: number;
+  /** Percent of the own setpoint step; null when it is not stepped. */
+  readonly overshoot: number | null;
+  /** Of the own setpoint step; Infinity when not reached in the horizon, null when it is not stepped. */
+  readonly settlingTime: number | null;
+  /** Largest over load and disturbance upsets; null without any. */
+  readonly peakDeviation: number | null;
+  readonly peakMove: number;
+  readonly peakRate: number;
+  /** Over all upsets. */
+  readonly travel: number;
+  /** Largest deviation of another loop, in its tolerances, while this loop's setpoint is stepped. */
+  readonly upsetToOthers: number | null;
+}
+
+/** @param figures  [upset][loop] */
+export function summarizeLoop(
+  tuning: TuningCase,
+  figures: readonly (readonly UpsetFigures[])[],
+  loop: number,
+): LoopTimeFigures {
+  let iae = 0;
+  let overshoot: number | null = null;
+  let settlingTime: number | null = null;
+  let peakDeviation: number | null = null;
+  let peakMove = 0;
+  let peakRate = 0;
+  let travel = 0;
+  let upsetToOthers: number | null = null;
+  tuning.upsets.forEach(({ upset, weight, counted }, u) => {
+    const own = figures[u]?.[loop] as UpsetFigures;
+    if (counted.includes(loop)) iae += weight * own.iae;
+    if (upset.opened.includes(loop)) return;
+    peakMove = Math.max(peakMove, own.peakMove);
+    peakRate = Math.max(peakRate, own.peakRate);
+    travel += own.travel;
+    if (upset.kind !== 'setpoint') {
+      peakDeviation = Math.max(peakDeviation ?? 0, own.peakDeviation);
+    } else if (upset.loop === loop) {
+      overshoot = own.overshoot;
+      settlingTime = own.settlingTime ?? Number.POSITIVE_INFINITY;
+      upsetToOthers = largestElsewhere(
+        tuning,
+        figures[u] as readonly UpsetFigures[],
+        loop,
+        upset.opened,
+      );
+    }
+  });
+  return { iae, overshoot, settlingTime, peakDeviation, peakMove, peakRate, travel, upsetToOthers };
+}
+
+/** The inner loops of a cascade are meant to move with their outer loop and do not count as upset. */
+function largestElsewhere(
+  tuning: TuningCase,
+  figures: readonly UpsetFigures[],
+  loop: number,
+  opened: readonly number[],
+): number {
+  const { loops, outerOf } = tuning.network;
+  let largest = 0;
+  figures.forEach((f, i) => {
+    if (i === loop || opened.includes(i) || !(loops[i] as { automatic: boolean }).automatic) return;
+    if ((outerOf[i] as number) >= 0) return;
+    largest = Math.max(
+      largest,
+      f.peakDeviation / (tuning.loops[i] as { tolerance: number }).tolerance,
+    );
+  });
+  return largest;
+}
