@@ -1,0 +1,55 @@
+import type { SearchDocument } from '../contract/index.js';
+import type { Plan } from '../search/index.js';
+
+/** How many points each kind of work may evaluate; fixed by the document alone. */
+export interface EffortPlan {
+  /** Independent searches for each end of the front. */
+  readonly attempts: number;
+  readonly anchor: Plan;
+  /** A level met for the first time: a little exploring, then descent. */
+  readonly sweep: Plan;
+  /** A level started from its neighbours' optima. */
+  readonly refine: Plan;
+  /** Solving an alternative again with models that broke a limit. */
+  readonly mend: Plan;
+  /** Levels of the first sweep and of the second, as shares of the alternatives asked for. */
+  readonly firstShare: number;
+  readonly gapShare: number;
+}
+
+const scales = { quick: 0.4, standard: 1, deep: 4 } as const;
+
+/** @param dimension  numbers that are searched */
+export function effortPlan(effort: SearchDocument['effort'], dimension: number): EffortPlan {
+  const scale = scales[effort];
+  const gradients = dimension + 2;
+  const count = (evaluations: number): number =>
+    Math.max(gradients, Math.round(scale * evaluations));
+  // The simplex loses its way beyond a handful of dimensions; descent has long converged by then.
+  const polish = dimension <= 6 ? count(25 * dimension) : 0;
+  return {
+    attempts: effort === 'deep' ? 4 : 2,
+    anchor: {
+      globalEvaluations: count(120 + 30 * dimension),
+      localEvaluations: count(25 * gradients),
+      polishEvaluations: polish,
+    },
+    sweep: {
+      globalEvaluations: count(10 * dimension),
+      localEvaluations: count(18 * gradients),
+      polishEvaluations: polish,
+    },
+    refine: {
+      globalEvaluations: 0,
+      localEvaluations: count(15 * gradients),
+      polishEvaluations: polish,
+    },
+    mend: {
+      globalEvaluations: 0,
+      localEvaluations: count(12 * gradients),
+      polishEvaluations: 0,
+    },
+    firstShare: 0.5,
+    gapShare: effort === 'quick' ? 0.1 : 0.25,
+  };
+}

@@ -1,0 +1,333 @@
+import type { ControllerSettings, OwnSettings, SettingsForm } from '../controllers/index.js';
+import { toOwn } from '../controllers/index.js';
+import { pathsOf, type Response } from '../responses/index.js';
+import {
+  gridDensity,
+  judgeModel,
+  type Limit,
+  type ModelScore,
+  referenceSpeed,
+  type SampledModel,
+  type SpeedReference,
+  sampleModel,
+  type TuningCase,
+} from '../scoring/index.js';
+import type { RuleSettings } from './baseline-settings.js';
+import type { CompiledJob } from './compiled-job.js';
+import {
+  leastHorizon,
+  longestDeadTime,
+  mostSteps,
+  roundHorizon,
+  stepsBetweenScans,
+} from './horizon.js';
+import { chooseSearchStep } from './search-step.js';
+import { statedLimits } from './stated-limits.js';
+import { searchModels } from './uncertainty.js';
+import { upsetsOf } from './upsets.js';
+import { internalSettings, pointOf, settingsAt } from './variables.js';
+
+/** What is fixed once for a job, before anything is searched; plain data, the same in every process. */
+export interface Preparation {
+  readonly steps: number;
+  readonly stepsPerScan: number;
+  /** All limits: stated, and those taken because the document states none. */
+  readonly limits: readonly Limit[];
+  /** What a speed of 1 means. */
+  readonly reference: {
+    readonly method: string;
+    readonly settings: readonly (OwnSettings | null)[];
+  };
+  readonly speed: SpeedReference;
+  /** Scans in one step of the search, and what a speed of 1 means at that step. */
+  readonly searchStride: number;
+  readonly searchSpeed: SpeedReference;
+  /** Today's settings are complete and stable on the nominal unit. */
+  readonly presentIsStable: boolean;
+  /** Published rules' settings, in every loop's own terms. */
+  readonly baselines: readonly RuleSettings[];
+  readonly assumed: readonly string[];
+}
+
+/** Share of the actuator's span that is taken as noise budget where none is stated. */
+const assumedNoiseShare = 0.005;
+/** How much a kept loop's peak sensitivity may grow. */
+const keptGrowth = 1.05;
+
+/** A unit variant sampled for judging. */
+export function sampleVariant(
+  compiled: CompiledJob,
+  tuning: TuningCase,
+  responses: readonly Response[],
+  perDecade: number = gridDensity.judging,
+): SampledModel {
+  return sampleModel(
+    tuning,
+    pathsOf(responses, compiled.measurementCount),
+    compiled.sourceCount,
+    compiled.measurementCount,
+    perDecade,
+  );
+}
+
+/** The case a compiled job is judged by, with a horizon and limits. */
+export function tuningCaseOf(
+  compiled: CompiledJob,
+  fixed: Pick<Preparation, 'steps' | 'stepsPerScan' | 'limits'>,
+): TuningCase {
+  const { limits } = fixed;
+  return {
+    network: compiled.network,
+    loops: compiled.loops,
+    upsets: upsetsOf(compiled),
+    limits,
+    scan: compiled.scan,
+    stepsPerScan: fixed.stepsPerScan,
+    steps: fixed.steps,
+    longestDeadTime: longestDeadTime(compiled),
+    limitsSingularValues: limits.some((l) => l.quantity.startsWith('peakSingularValue')),
+    limitsManual: limits.some((l) => l.quantity === 'anySingleLoopInManual'),
+  };
+}
+
+const plainDetail = { singularValues: false, manualCases: false } as const;
+
+/**
+ * Fix horizon, step, reference and limits of a job.
+ *
+ * Deterministic: from the document alone.
+ */
+export function prepareJob(compiled: CompiledJob): Preparation {
+  const assumed = [...compiled.assumed];
+  const stepsPerScan = stepsBetweenScans(compiled);
+  const stated = statedLimits(compiled);
+  const { rules } = compiled;
+  const present = compiled.hasPresent
+    ? internalSettings(compiled.space, compiled.space.base)
+    : null;
+
+  const nominal = compiled.uncertain.points[0] as readonly Response[];
+  const provisional = (steps: number): TuningCase =>
+    tuningCaseOf(compiled, { steps, stepsPerScan, limits: stated });
+  const judge = (settings: readonly ControllerSettings[], tuning: TuningCase): ModelScore =>
+    judgeModel(tuning, sampleVariant(compiled, tuning, nominal), settings, plainDetail);
+
+  const short = provisional(stepsFor(compiled, stepsPerScan, 20 * compiled.scan));
+  const presentIsStable = present !== null && judge(present, short).stable;
+  const variants = searchModels(
+    compiled.uncertain,
+    compiled.job.search.models,
+    compiled.job.search.seed,
+  );
+  const reference = presentIsStable
+    ? { method: 'present', settings: compiled.space.base }
+    : firstStable(compiled, short, rules, variants);
+  const internal = internalSettings(compiled.space, reference.settings);
+
+  const steps = settleHorizon(compiled, stepsPerScan, internal, provisional, judge);
+  const tuning = provisional(steps);
+  const nominalScore = judge(internal, tuning);
+  const speed = referenceSpeed(tuning, nominalScore.upsets ?? []);
+  const limits = [
+    ...stated,
+    ...assumedLimits(
+      compiled,
+      stated,
+      presentIsStable && present !== null
+        ? worstOfPresent(compiled, short, present, variants)
+        : null,
+      assumed,
+    ),
+  ];
+  const final = tuningCaseOf(compiled, { steps, stepsPerScan, limits });
+  const trials = [
+    internal,
+    ...livelier(compiled, internal, [0.5, 1.5, 2.5]),
+    ...rulesInside(compiled, rules),
+  ];
+  const model = sampleVariant(compiled, { ...final, upsets: [] }, nominal);
+  const stable = trials.filter(
+    (settings) => judgeModel({ ...final, upsets: [] }, model, settings, plainDetail).stable,
+  );
+  const search = chooseSearchStep(compiled, final, nominal, stable);
+  return {
+    steps,
+    stepsPerScan,
+    limits,
+    reference,
+    speed,
+    searchStride: search.stride,
+    searchSpeed: search.speed,
+    presentIsStable,
+    baselines: rules,
+    assumed,
+  };
+}
+
+/** The reference with all retuned gains multiplied and integral times divided. */
+function livelier(
+  compiled: CompiledJob,
+  settings: readonly ControllerSettings[],
+  factors: readonly number[],
+): ControllerSettings[][] {
+  return factors.map((factor) =>
+    settings.map((s, i) =>
+      compiled.loops[i]?.role === 'retune'
+        ? { ...s, kc: s.kc * factor, ti: s.ti / Math.sqrt(factor) }
+        : s,
+    ),
+  );
+}
+
+/** Rules' settings as far as the search may go. */
+function rulesInside(
+  compiled: CompiledJob,
+  rules: readonly RuleSettings[],
+): ControllerSettings[][] {
+  return rules.flatMap(({ settings }) => {
+    if (settings === null) return [];
+    const x = pointOf(compiled.space, settings);
+    return [internalSettings(compiled.space, settingsAt(compiled.space, x))];
+  });
+}
+
+const stepsFor = (compiled: CompiledJob, stepsPerScan: number, horizon: number): number =>
+  Math.min(
+    mostSteps,
+    Math.max(10 * stepsPerScan, Math.round((horizon * stepsPerScan) / compiled.scan)),
+  );
+
+/** The stated horizon, or one in which the reference tuning comes to rest, doubled twice at most. */
+function settleHorizon(
+  compiled: CompiledJob,
+  stepsPerScan: number,
+  reference: readonly ControllerSettings[],
+  provisional: (steps: number) => TuningCase,
+  judge: (settings: readonly ControllerSettings[], tuning: TuningCase) => ModelScore,
+): number {
+  const { job, timeUnit } = compiled;
+  if (job.unit.horizon !== undefined) {
+    return stepsFor(compiled, stepsPerScan, job.unit.horizon * timeUnit);
+  }
+  let horizon = roundHorizon(leastHorizon(compiled, reference), timeUnit);
+  for (let doubling = 0; doubling < 2; doubling += 1) {
+    const tuning = provisional(stepsFor(compiled, stepsPerScan, horizon));
+    const score = judge(reference, tuning);
+    if (score.upsets === null || isAtRest(tuning, score)) break;
+    horizon = roundHorizon(2 * horizon, timeUnit);
+  }
+  return stepsFor(compiled, stepsPerScan, horizon);
+}
+
+/** True when every tight loop that counts has come back to its setpoint in every upset. */
+function isAtRest(tuning: TuningCase, score: ModelScore): boolean {
+  return tuning.upsets.every(({ counted }, u) =>
+    counted.every((i) => {
+      const loop = tuning.loops[i];
+      if (loop === undefined || loop.goal !== 'tight' || loop.weight === 0) return true;
+      return score.upsets?.[u]?.[i]?.settlingTime !== null;
+    }),
+  );
+}
+
+/** BLT, SIMC, or SIMC with its gains halved until it is stable on every model. */
+function firstStable(
+  compiled: CompiledJob,
+  tuning: TuningCase,
+  rules: readonly RuleSettings[],
+  variants: readonly (readonly Response[])[],
+): Preparation['reference'] {
+  const models = variants.map((v) => sampleVariant(compiled, tuning, v));
+  const holds = (settings: readonly (OwnSettings | null)[]): boolean => {
+    const internal = internalSettings(compiled.space, settings);
+    return models.every(
+      (m) => judgeModel({ ...tuning, upsets: [] }, m, internal, plainDetail).stable,
+    );
+  };
+  for (const method of ['BLT', 'SIMC']) {
+    const rule = rules.find((r) => r.method === method && r.settings !== null);
+    if (rule?.settings && holds(rule.settings)) return { method, settings: rule.settings };
+  }
+  const simc = rules.find((r) => r.method === 'SIMC' && r.settings !== null)?.settings;
+  let settings = simc ?? compiled.space.base;
+  for (let halving = 1; halving <= 12; halving += 1) {
+    settings = halved(compiled, settings);
+    if (holds(settings)) return { method: `SIMC with gains halved ${halving} times`, settings };
+  }
+  return { method: 'SIMC with gains halved 12 times', settings };
+}
+
+/** Every retuned loop's gain halved, in its own terms. */
+function halved(
+  compiled: CompiledJob,
+  settings: readonly (OwnSettings | null)[],
+): (OwnSettings | null)[] {
+  const internal = internalSettings(compiled.space, settings);
+  return settings.map((own, i) => {
+    if (own === null || compiled.loops[i]?.role !== 'retune') return own;
+    const s = internal[i] as ControllerSettings;
+    return toOwn({ ...s, kc: s.kc / 2 }, compiled.forms[i] as SettingsForm);
+  });
+}
+
+interface PresentWorst {
+  /** By loop; null in manual. */
+  readonly noise: readonly (number | null)[];
+  readonly sensitivity: readonly (number | null)[];
+}
+
+/** Noise and peak sensitivity of today's settings, the worst over the models on which they are stable. */
+function worstOfPresent(
+  compiled: CompiledJob,
+  tuning: TuningCase,
+  present: readonly ControllerSettings[],
+  variants: readonly (readonly Response[])[],
+): PresentWorst {
+  const noise: (number | null)[] = compiled.loops.map(() => null);
+  const sensitivity: (number | null)[] = compiled.loops.map(() => null);
+  for (const variant of variants) {
+    const model = sampleVariant(compiled, tuning, variant);
+    const { frequency } = judgeModel({ ...tuning, upsets: [] }, model, present, plainDetail);
+    frequency.loops.forEach((f, i) => {
+      if (f === null) return;
+      noise[i] = Math.max(noise[i] ?? 0, f.outputNoise);
+      sensitivity[i] = Math.max(sensitivity[i] ?? 0, f.peakSensitivity);
+    });
+  }
+  return { noise, sensitivity };
+}
+
+/** Limits taken where the document states none, and said. */
+function assumedLimits(
+  compiled: CompiledJob,
+  stated: readonly Limit[],
+  present: PresentWorst | null,
+  assumed: string[],
+): Limit[] {
+  const limits: Limit[] = [];
+  const budgets: string[] = [];
+  compiled.loops.forEach((loop, i) => {
+    const has = (quantity: Limit['quantity']): boolean =>
+      stated.some((l) => l.loop === i && l.quantity === quantity);
+    if (loop.role === 'retune' && !has('outputNoise')) {
+      const bound = Math.max(present?.noise[i] ?? 0, assumedNoiseShare * loop.outputSpan);
+      limits.push({ loop: i, quantity: 'outputNoise', bound, nominal: false });
+      budgets.push(compiled.job.loops[i]?.tag as string);
+    }
+    const before = present?.sensitivity[i] ?? null;
+    if (loop.role === 'keep' && before !== null && !has('peakSensitivity')) {
+      limits.push({
+        loop: i,
+        quantity: 'peakSensitivity',
+        bound: keptGrowth * before,
+        nominal: false,
+      });
+    }
+  });
+  if (budgets.length > 0) {
+    assumed.push(
+      `no outputNoise limit for ${budgets.join(', ')}: the larger of today's noise and 0.5 % of the output's span is taken`,
+    );
+  }
+  return limits;
+}

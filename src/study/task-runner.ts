@@ -1,0 +1,156 @@
+import { Random } from '../base/index.js';
+import { lowestLevel, type Point, solveLevel } from '../search/index.js';
+import { type CompiledJob, compileJob } from './compiled-job.js';
+import { effortPlan } from './effort.js';
+import { scoreFully } from './evaluation.js';
+import { describeInfeasibility } from './infeasibility.js';
+import { type Preparation, prepareJob } from './preparation.js';
+import { scoredSettings } from './scored-settings.js';
+import type { FoundPoint, StudyContext, Task, TaskResult } from './tasks.js';
+import { TuningProblem } from './tuning-problem.js';
+import { pointOf } from './variables.js';
+import { verifyAlternative } from './verification.js';
+import { Workbench } from './workbench.js';
+
+/** Levels above this are no compromise that anybody dials; a stated peakSensitivity limit may say less. */
+export const highestLevel = 2.5;
+/** Points a task hands on beside the optima of its levels. */
+const handedOn = 24;
+
+interface Cache {
+  readonly key: string;
+  readonly compiled: CompiledJob;
+  bench?: Workbench;
+  problem?: TuningProblem;
+}
+
+/**
+ * Runs tasks one after the other, keeping what it builds for the latest job.
+ *
+ * What a task answers depends on the task alone, never on what ran before.
+ */
+export class TaskRunner {
+  private cache: Cache | undefined;
+
+  run(context: StudyContext, task: Task): TaskResult {
+    const cache = this.open(context);
+    switch (task.kind) {
+      case 'prepare':
+        return {
+          kind: 'prepare',
+          preparation: prepareJob(cache.compiled),
+          dimension: cache.compiled.space.variables.length,
+        };
+      case 'anchor':
+        return this.anchor(cache, task);
+      case 'levels':
+        return this.levels(cache, task);
+      case 'score':
+        return this.score(this.bench(cache, task.preparation), task.which);
+      case 'verify': {
+        const bench = this.bench(cache, task.preparation);
+        return verifyAlternative(bench, task.index, task.x, task.level);
+      }
+      case 'nearest':
+        return describeInfeasibility(this.bench(cache, task.preparation), task.starts);
+    }
+  }
+
+  private open(context: StudyContext): Cache {
+    const key = `${context.provenance.job} ${context.provenance.compute}`;
+    if (this.cache?.key !== key) this.cache = { key, compiled: compileJob(context.job) };
+    return this.cache;
+  }
+
+  private bench(cache: Cache, preparation: Preparation): Workbench {
+    cache.bench ??= new Workbench(cache.compiled, preparation);
+    return cache.bench;
+  }
+
+  private problem(cache: Cache, preparation: Preparation): TuningProblem {
+    cache.problem ??= new TuningProblem(this.bench(cache, preparation).searchSetup());
+    return cache.problem;
+  }
+
+  private anchor(cache: Cache, task: Extract<Task, { kind: 'anchor' }>): TaskResult {
+    const { compiled } = cache;
+    const problem = this.problem(cache, task.preparation);
+    const { seed, effort } = compiled.job.search;
+    const plan = effortPlan(effort, problem.dimension).anchor;
+    const starts = startingPoints(compiled, task.preparation);
+    const random = new Random(seed, task.aim === 'lowest' ? 10 : 11, task.attempt);
+    const outcome =
+      task.aim === 'lowest'
+        ? lowestLevel(problem, starts, plan, random)
+        : solveLevel(problem, highestLevel, starts, plan, random);
+    return {
+      kind: 'anchor',
+      aim: task.aim,
+      feasible: outcome.best !== undefined,
+      nearest: [...outcome.nearest.x],
+      points: selectPoints(outcome.best, outcome.points),
+      evaluations: outcome.evaluations,
+    };
+  }
+
+  private levels(cache: Cache, task: Extract<Task, { kind: 'levels' }>): TaskResult {
+    const problem = this.problem(cache, task.preparation);
+    const { seed, effort } = cache.compiled.job.search;
+    const efforts = effortPlan(effort, problem.dimension);
+    const plan = task.explore ? efforts.sweep : efforts.refine;
+    const best: FoundPoint[] = [];
+    const points: FoundPoint[] = [];
+    let evaluations = 0;
+    let before: Float64Array<ArrayBufferLike> | undefined;
+    task.levels.forEach(({ level, starts }, k) => {
+      const from: Float64Array[] = starts.map((x) => Float64Array.from(x));
+      if (before !== undefined) from.push(before);
+      const outcome = solveLevel(
+        problem,
+        level,
+        from,
+        plan,
+        new Random(seed, 12, ...task.stream, k),
+      );
+      evaluations += outcome.evaluations;
+      points.push(...selectPoints(undefined, outcome.points));
+      if (outcome.best === undefined) return;
+      before = outcome.best.x;
+      best.push(found(outcome.best));
+    });
+    return { kind: 'levels', best, points, evaluations };
+  }
+
+  private score(bench: Workbench, which: 'present' | number): TaskResult {
+    const own =
+      which === 'present'
+        ? bench.compiled.space.base
+        : (bench.preparation.baselines[which]?.settings ?? bench.compiled.space.base);
+    const fresh = bench.isExact ? [] : bench.freshModels(0);
+    const { nominal, models } = scoreFully(bench, own, fresh);
+    return { kind: 'score', scored: scoredSettings(bench, own, nominal, models, false) };
+  }
+}
+
+const found = (point: Point): FoundPoint => ({
+  x: [...point.x],
+  cost: point.evaluation.cost,
+  peak: point.peak,
+});
+
+/** The best point and a few of the others, evenly by rank. */
+function selectPoints(best: Point | undefined, points: readonly Point[]): FoundPoint[] {
+  const stride = Math.max(1, points.length / handedOn);
+  const chosen: Point[] = best === undefined ? [] : [best];
+  for (let k = 0; k < points.length; k += stride) chosen.push(points[Math.floor(k)] as Point);
+  return chosen.map(found);
+}
+
+/** Where a search may begin: the reference, today's settings and the published rules, as far as allowed. */
+export function startingPoints(compiled: CompiledJob, preparation: Preparation): Float64Array[] {
+  const sets = [preparation.reference.settings, compiled.space.base];
+  for (const { settings } of preparation.baselines) if (settings !== null) sets.push(settings);
+  const points = sets.map((own) => pointOf(compiled.space, own));
+  const keys = points.map((x) => x.join());
+  return points.filter((_, i) => keys.indexOf(keys[i] as string) === i);
+}
