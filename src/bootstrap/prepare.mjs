@@ -3,7 +3,8 @@
  * installed yet: it uses Node alone. It installs packages when they are absent or outdated, builds
  * when the sources changed, runs the checks of the command, and hands over to the command itself.
  *
- * One line a step; a step that fails shows its whole output, and its exit code becomes ours.
+ * One line a step, on standard error, for standard output belongs to the command; a step that fails
+ * shows its whole output, and its exit code becomes ours.
  */
 import {
   chmodSync,
@@ -53,6 +54,7 @@ const vitest = join('node_modules', 'vitest', 'vitest.mjs');
 const commands = new Map([
   ['build', { build: true }],
   ['lint', { check: true }],
+  ['start', { build: true, node: [join('dist', 'src', 'cli', 'main.js')] }],
   ['demo', { build: true, node: [join('dist', 'src', 'demo', 'main.js')] }],
   ['test', { build: true, check: true, node: [vitest, 'run'] }],
   [
@@ -82,7 +84,7 @@ class StepFailure extends Error {
 
 /** @param {string} text */
 function say(text) {
-  process.stdout.write(`heddle: ${text}\n`);
+  process.stderr.write(`heddle: ${text}\n`);
 }
 
 /**
@@ -92,17 +94,17 @@ function say(text) {
  * @param {() => Promise<{ code: number, output: string }>} run
  */
 async function takeStep(activity, run) {
-  process.stdout.write(`heddle: ${activity} ... `);
+  process.stderr.write(`heddle: ${activity} ... `);
   const start = process.hrtime();
   const { code, output } = await run();
   const [whole, nano] = process.hrtime(start);
   const seconds = (whole + nano / 1e9).toFixed(1);
   if (code === 0) {
-    process.stdout.write(`${seconds} s\n`);
+    process.stderr.write(`${seconds} s\n`);
     return;
   }
-  process.stdout.write(`${code > 128 ? 'stopped' : 'failed'} after ${seconds} s\n`);
-  process.stdout.write(output === '' || output.endsWith('\n') ? output : `${output}\n`);
+  process.stderr.write(`${code > 128 ? 'stopped' : 'failed'} after ${seconds} s\n`);
+  process.stderr.write(output === '' || output.endsWith('\n') ? output : `${output}\n`);
   say(`${activity} ended with exit code ${code}`);
   throw new StepFailure(code);
 }

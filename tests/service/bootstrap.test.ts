@@ -175,6 +175,10 @@ describe('preparing a checkout', () => {
     expect(linesOf(await prepare(['demo']))).toEqual(['demo']);
   });
 
+  it('leaves standard output to the command', async () => {
+    expect((await prepare(['demo', 'alone'])).answer).toBe('demo alone\n');
+  });
+
   it('drops from the build what is no longer in the sources', async () => {
     scratch.write({ 'src/demo/old.json': '{}' });
     await prepare(['build']);
@@ -213,7 +217,7 @@ describe('preparing a checkout', () => {
   it('names the commands there are', async () => {
     const ending = await prepare(['dance']);
     expect(ending.output).toBe(
-      "heddle: no command 'dance'; there are build, lint, demo, test, test:long\n",
+      "heddle: no command 'dance'; there are build, lint, start, demo, test, test:long\n",
     );
     expect(ending.code).toBe(2);
   });
