@@ -1,0 +1,3 @@
+export { computeVersion } from './compute-version.js';
+export { type ThreadAnswer, ThreadFailure, type ThreadFailureCode } from './thread-answer.js';
+export { createThreadPool, type ThreadPool, type ThreadPoolOptions } from './thread-pool.js';
