@@ -1,4 +1,4 @@
-import { once } from 'node:events';
+import { once, setMaxListeners } from 'node:events';
 import { fileURLToPath } from 'node:url';
 import { Piscina } from 'piscina';
 import { CodedError } from '../base/index.js';
@@ -53,23 +53,20 @@ class PiscinaPool<Task, Result> implements ThreadPool<Task, Result> {
       concurrentTasksPerWorker: 1,
       recordTiming: false,
     });
-    // Piscina reports here what befalls a thread without a task: it could not start.
-    this.piscina.on('error', (error) => {
-      this.broken ??= new ThreadFailure(
-        'THREAD_LOST',
-        `calculation threads cannot start: ${wordsOf(error)}`,
-        { cause: error },
-      );
-      void this.close();
-    });
+    // What is reported here befell a thread without a task: it could not start.
+    this.piscina.on('error', (error) => this.giveUp(error));
     this.watch();
   }
 
   async run(task: Task, signal?: AbortSignal): Promise<Result> {
     if (this.closed !== undefined || signal?.aborted) throw this.broken ?? abandoned();
+    // Every waiting task listens to the signal, so their number says nothing of a leak.
+    if (signal !== undefined) setMaxListeners(0, signal);
     const running = this.piscina.run(task, signal === undefined ? {} : { signal });
     this.watch();
     const answer = await running.catch((error: unknown) => {
+      // A thread that ends is replaced, unless it could not even start.
+      if (this.closed === undefined && this.piscina.threads.length === 0) this.giveUp(error);
       throw this.broken ?? (this.closed || signal?.aborted ? abandoned() : lost(error));
     });
     if (answer.ok) return answer.result;
@@ -79,6 +76,16 @@ class PiscinaPool<Task, Result> implements ThreadPool<Task, Result> {
   close(): Promise<void> {
     this.closed ??= this.stopAll();
     return this.closed;
+  }
+
+  /** Without threads, what waits would wait for ever. */
+  private giveUp(error: unknown): void {
+    this.broken ??= new ThreadFailure(
+      'THREAD_LOST',
+      `calculation threads cannot start: ${wordsOf(error)}`,
+      { cause: error },
+    );
+    void this.close();
   }
 
   private async stopAll(): Promise<void> {
