@@ -1,0 +1,133 @@
+import { randomUUID } from 'node:crypto';
+import { mkdir, open, readdir, realpath, rename, rm, stat, writeFile } from 'node:fs/promises';
+import { basename, dirname, join, resolve } from 'node:path';
+import { printable } from './printable.js';
+import { exitCode, Refusal } from './refusal.js';
+
+/**
+ * Files that results go to. A target is tried out before the work that fills it begins, and a file
+ * is whole or not there: it is written beside its place and moved in one step.
+ */
+
+/**
+ * Makes sure that a file can be written, without touching what it holds.
+ * @throws {Refusal} naming the option, the path and the reason
+ */
+export async function tryOutFile(option: string, path: string): Promise<void> {
+  try {
+    const about = await statOf(path);
+    if (about?.isDirectory()) throw unwritable(option, path, { code: 'EISDIR' });
+    if (about !== null && !about.isFile()) return;
+    await tryOutFolderOf(await whereTo(path));
+  } catch (error) {
+    throw error instanceof Refusal ? error : unwritable(option, path, error);
+  }
+}
+
+/**
+ * Makes sure that files can be written to a folder, which is made where it is missing.
+ * @throws {Refusal} naming the option, the path and the reason
+ */
+export async function tryOutFolder(option: string, path: string): Promise<void> {
+  try {
+    await mkdir(path, { recursive: true });
+    await tryOutFolderOf(join(path, 'document.json'));
+  } catch (error) {
+    throw error instanceof Refusal ? error : unwritable(option, path, error);
+  }
+}
+
+async function tryOutFolderOf(path: string): Promise<void> {
+  const trial = neighbourOf(path);
+  await writeFile(trial, '', { flag: 'wx' });
+  await rm(trial, { force: true });
+}
+
+/**
+ * Writes a file in one step; a pipe or device is written to as it is.
+ * @throws {Refusal} naming the option, the path and the reason
+ */
+export async function writeWhole(option: string, path: string, text: string): Promise<void> {
+  try {
+    const about = await statOf(path);
+    if (about !== null && !about.isFile()) {
+      await writeFile(path, text);
+      return;
+    }
+    await moveIntoPlace(await whereTo(path), text);
+  } catch (error) {
+    throw error instanceof Refusal ? error : unwritable(option, path, error);
+  }
+}
+
+async function moveIntoPlace(target: string, text: string): Promise<void> {
+  const draft = neighbourOf(target);
+  try {
+    const handle = await open(draft, 'wx');
+    try {
+      await handle.writeFile(text);
+      await handle.sync();
+    } finally {
+      await handle.close();
+    }
+    await rename(draft, target);
+  } catch (error) {
+    await rm(draft, { force: true });
+    throw error;
+  }
+}
+
+/** True when both paths lead to one file that exists. */
+export async function isSameFile(a: string, b: string): Promise<boolean> {
+  const [first, second] = await Promise.all([a, b].map((path) => stat(path).catch(() => null)));
+  if (!first || !second) return false;
+  return first.dev === second.dev && first.ino === second.ino;
+}
+
+/** Documents of alternatives in a folder that are not among those just written. */
+export async function leftOverDocuments(
+  folder: string,
+  written: ReadonlySet<string>,
+): Promise<string[]> {
+  const names = await readdir(folder);
+  return names.filter((name) => /^A\d{2,3}\.json$/.test(name) && !written.has(name)).sort();
+}
+
+/** The file itself where the path is a link to it. */
+const whereTo = (path: string): Promise<string> => realpath(path).catch(() => resolve(path));
+
+const neighbourOf = (path: string): string =>
+  join(dirname(path), `.${basename(path)}.${randomUUID()}.part`);
+
+const statOf = (path: string) =>
+  stat(path).catch((error: { code?: string }) => {
+    if (error.code === 'ENOENT') return null;
+    throw error;
+  });
+
+const reasons: Readonly<Record<string, readonly [problem: string, value: string]>> = {
+  ENOENT: ['its folder does not exist', 'no such folder'],
+  ENOTDIR: ['its folder does not exist', 'a path through something that is no folder'],
+  EEXIST: ['this is not a folder', 'a file'],
+  EISDIR: ['this is a folder', 'a folder'],
+  EACCES: ['nothing may be written there', 'no permission'],
+  EPERM: ['nothing may be written there', 'no permission'],
+  EROFS: ['nothing can be written there', 'a file system that is read only'],
+  ENOSPC: ['there is no room left', 'a full file system'],
+  ENAMETOOLONG: ['there can be no such file', 'a name that is too long'],
+};
+
+/** Why a result could not be written, from what the system said. */
+function unwritable(option: string, path: string, error: unknown): Refusal {
+  const code = String((error as { code?: unknown }).code ?? error);
+  const [problem, value] = reasons[code] ?? ['this cannot be written', code];
+  const complaint = {
+    code: 'FILE_UNREADABLE',
+    path: option,
+    subject: printable(path),
+    value,
+    problem,
+    allowed: 'a place where files can be written',
+  } as const;
+  return new Refusal(exitCode.failed, [complaint]);
+}

@@ -1,0 +1,159 @@
+import type { UnitMetrics, Warning } from '../../contract/index.js';
+import { counted, duration, significant } from './figures.js';
+import { interactionTable } from './interaction-table.js';
+import type { Paper } from './paper.js';
+import { facts, page, remarks, section } from './prose.js';
+
+/** What is known of a job before anything is searched. */
+export interface CheckReport {
+  /** SHA-256 of the document. */
+  readonly job: string;
+  readonly compute: string;
+  readonly unit: {
+    readonly name: string;
+    readonly timeUnit: string;
+    readonly measurements: number;
+    readonly actuators: number;
+    readonly disturbances: number;
+    readonly responses: number;
+    readonly operatingPoints: number;
+  };
+  readonly loops: {
+    readonly retune: number;
+    readonly keep: number;
+    readonly manual: number;
+    readonly averaging: number;
+    readonly driven: number;
+  };
+  readonly upsets: {
+    readonly setpoint: number;
+    readonly load: number;
+    readonly disturbance: number;
+  };
+  readonly interaction: Pick<UnitMetrics, 'rga' | 'rgaLoops' | 'niederlinski'>;
+  /** Models of the search set, and how many turn the sign of the steady-state determinant around. */
+  readonly determinant: { readonly models: number; readonly signChanges: number };
+  readonly run: {
+    /** Time unit of the job, like every time here. */
+    readonly scan: number;
+    readonly step: number;
+    readonly searchStep: number;
+    readonly horizon: number;
+    readonly models: number;
+    readonly limits: number;
+    /** Numbers that are searched. */
+    readonly settings: number;
+    readonly alternatives: number;
+    readonly effort: string;
+    readonly seed: number;
+  };
+  /** What a speed of 1 means. */
+  readonly reference: string;
+  readonly presentIsStable: boolean;
+  readonly assumed: readonly string[];
+  readonly warnings: readonly Warning[];
+  /** A rough guess. */
+  readonly estimate: { readonly seconds: number; readonly threads: number };
+}
+
+/** A check as people read it. */
+export function checkPage(report: CheckReport, paper: Paper): string {
+  const { paint } = paper;
+  const warnings = report.warnings.map(
+    ({ path, value, problem }) => `${path}: ${problem} (${value})`,
+  );
+  const table = interactionTable(report.interaction, paper);
+  return page([
+    `${paint.strong(report.unit.name)}\n${paint.good('This document is accepted.')}`,
+    warnings.length === 0 ? null : section('Warnings', remarks(warnings, paper), paper),
+    section('The unit', unitFacts(report, paper), paper),
+    table === null ? null : section('Interaction at steady state', table, paper),
+    determinantPart(report, paper),
+    section('What will be run', runFacts(report, paper), paper),
+    report.assumed.length === 0 ? null : section('Assumed', remarks(report.assumed, paper), paper),
+  ]);
+}
+
+function unitFacts({ unit, loops, upsets }: CheckReport, paper: Paper): string {
+  const tasks = [
+    `${loops.retune} to retune`,
+    loops.keep > 0 ? `${loops.keep} kept as they are` : '',
+    loops.manual > 0 ? `${loops.manual} in manual` : '',
+  ].filter((text) => text !== '');
+  const kinds = [
+    loops.averaging > 0 ? counted(loops.averaging, 'averaging level') : '',
+    loops.driven > 0 ? `${loops.driven} driven by another loop` : '',
+  ].filter((text) => text !== '');
+  const size = [
+    counted(unit.measurements, 'measurement'),
+    counted(unit.actuators, 'actuator'),
+    counted(unit.disturbances, 'disturbance'),
+    counted(unit.responses, 'response'),
+  ];
+  if (unit.operatingPoints > 0) size.push(counted(unit.operatingPoints, 'further operating point'));
+  const all = loops.retune + loops.keep + loops.manual;
+  return facts(
+    [
+      ['loops', `${all}: ${tasks.join(', ')}${kinds.length > 0 ? `; ${kinds.join(', ')}` : ''}`],
+      ['described by', size.join(', ')],
+      [
+        'upsets',
+        [
+          upsets.setpoint > 0 ? counted(upsets.setpoint, 'setpoint step') : '',
+          upsets.load > 0 ? counted(upsets.load, 'load step') : '',
+          upsets.disturbance > 0 ? counted(upsets.disturbance, 'disturbance step') : '',
+        ]
+          .filter((text) => text !== '')
+          .join(', '),
+      ],
+    ],
+    paper,
+  );
+}
+
+function determinantPart({ determinant }: CheckReport, paper: Paper): string | null {
+  const { models, signChanges } = determinant;
+  if (signChanges === 0) return null;
+  const words = `${signChanges} of ${models} models turn the sign of the steady-state determinant around: no tuning with integral action everywhere is stable on those and on the others alike. Narrow the gain spreads, or pair the loops otherwise.`;
+  return section('Sign of the determinant', remarks([paper.paint.warn(words)], paper), paper);
+}
+
+function runFacts(
+  { run, unit, reference, presentIsStable, estimate }: CheckReport,
+  paper: Paper,
+): string {
+  const time = (value: number): string => `${significant(value, 4)} ${unit.timeUnit}`;
+  const steps =
+    run.searchStep === run.step
+      ? `${time(run.step)}, in the search too`
+      : `${time(run.step)}; the search takes ${time(run.searchStep)}, shown to differ little`;
+  const speed = presentIsStable
+    ? "1.00 is as fast as today's settings"
+    : `today's settings are unstable, so 1.00 is as fast as ${reference}`;
+  const models =
+    run.models === 1 ? 'one, taken as exact' : `${run.models} for the search, fresh ones to verify`;
+  return facts(
+    [
+      [
+        'search',
+        `${counted(run.settings, 'setting')} for ${counted(run.alternatives, 'alternative')}, ${run.effort} effort, seed ${run.seed}`,
+      ],
+      ['limits', `${run.limits}`],
+      ['models', models],
+      ['scan', time(run.scan)],
+      ['horizon', `${time(run.horizon)} an upset`],
+      ['step', steps],
+      ['speed', speed],
+      ['takes', `about ${roughly(estimate.seconds)} on ${counted(estimate.threads, 'thread')}`],
+    ],
+    paper,
+  );
+}
+
+/** A guess with no more digits than it deserves. */
+function roughly(seconds: number): string {
+  if (seconds < 5) return 'a few seconds';
+  if (seconds < 100) return `${Number(seconds.toPrecision(1))} s`;
+  if (seconds < 5400) return `${Math.max(2, Math.round(seconds / 60))} min`;
+  return duration(Math.round(seconds / 600) * 600);
+}

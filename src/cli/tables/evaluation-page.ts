@@ -1,0 +1,232 @@
+import type {
+  EvaluationDocument,
+  JobDocument,
+  LoopDocument,
+  LoopMetrics,
+  Metrics,
+} from '../../contract/index.js';
+import { counted, figure, fixed, margin, noFigure, significant, withUnit } from './figures.js';
+import { grid } from './grid.js';
+import { interactionTable } from './interaction-table.js';
+import type { LimitVerdict } from './limit-verdicts.js';
+import { limitInWords } from './limit-words.js';
+import type { Paper } from './paper.js';
+import { facts, page, remarks, section } from './prose.js';
+import { loopUnits } from './setting-units.js';
+
+export interface EvaluationView {
+  readonly evaluation: EvaluationDocument;
+  readonly job: JobDocument;
+  /** Whose settings they are. */
+  readonly subject: string;
+  readonly verdicts: readonly LimitVerdict[];
+}
+
+/** One scored tuning set as people read it. */
+export function evaluationPage(view: EvaluationView, paper: Paper): string {
+  const { evaluation, job, subject } = view;
+  const { scored } = evaluation;
+  const { paint } = paper;
+  const heading = `${paint.strong(job.unit.name)}\n${subject}, ${conditions(evaluation, job)}`;
+  if (!scored.nominal.unit.stable) {
+    return page([heading, unstablePart(view, paper), noticesPart(evaluation, paper)]);
+  }
+  return page([
+    heading,
+    section('Result', summary(view, paper), paper),
+    section('Loops: margins', marginsTable(view, paper), paper),
+    section('Loops: response to the upsets', responsesTable(view, paper), paper),
+    section('Limits', limitsPart(view, paper), paper),
+    section('Unit', unitPart(view, paper), paper),
+    noticesPart(evaluation, paper),
+  ]);
+}
+
+const isExact = (job: JobDocument): boolean =>
+  job.search.models === 1 && job.unit.operatingPoints.length === 0;
+
+function conditions({ horizon, step, timeUnit }: EvaluationDocument, job: JobDocument): string {
+  const models = isExact(job)
+    ? 'the unit taken as exact'
+    : `${job.search.models} models of the unit`;
+  return `over ${significant(horizon)} ${timeUnit} in steps of ${significant(step)} ${timeUnit}, ${models}`;
+}
+
+function unstablePart(view: EvaluationView, paper: Paper): string {
+  const lines = [
+    paper.paint.bad('These settings are unstable on the nominal unit.'),
+    'There are no margins, responses or objectives to show: what grows has no figures.',
+  ];
+  const other = view.evaluation.reference;
+  if (other !== 'present') lines.push(`A speed of 1.00 would be that of ${other}.`);
+  return lines.join('\n');
+}
+
+function summary({ evaluation, job }: EvaluationView, paper: Paper): string {
+  const { scored, reference } = evaluation;
+  const unstable = scored.worst.unit.unstableModels ?? 0;
+  const than = reference === 'present' ? 'today' : reference;
+  const list: [string, string][] = [];
+  if (!scored.stable) {
+    const words = `unstable on ${counted(unstable, 'model')} of the set, though stable on the nominal unit`;
+    list.push(['stable', paper.paint.bad(words)]);
+  } else {
+    const ms = fixed(scored.objectives.robustness, 2);
+    const where = isExact(job) ? 'of a retuned loop' : 'of a retuned loop on any model';
+    list.push(['robustness', `${ms}, the largest peak sensitivity Ms ${where}`]);
+  }
+  const speed = `${fixed(scored.nominal.unit.speed, 2)}, where 1.00 is as fast as ${than} and less is faster`;
+  const worst = scored.worst.unit.speed;
+  const onWorst = isExact(job) || worst === null ? '' : `; ${fixed(worst, 2)} on the worst model`;
+  list.unshift(['speed', `${speed}${onWorst}`]);
+  return facts(list, paper);
+}
+
+/** A row for the nominal unit and one for the worst of the set, where there is more than one model. */
+function twoRows(
+  { evaluation, job }: EvaluationView,
+  paper: Paper,
+  cells: (loop: LoopDocument, metrics: LoopMetrics, metricsOf: Metrics) => readonly string[],
+): string[][] {
+  const { nominal, worst } = evaluation.scored;
+  return job.loops
+    .filter(({ task }) => task !== 'manual')
+    .flatMap((loop) => {
+      const first = nominal.loops[loop.tag];
+      const second = worst.loops[loop.tag];
+      if (first === undefined || second === undefined) return [];
+      const tag = paper.paint.strong(loop.tag);
+      if (isExact(job)) return [[tag, ...cells(loop, first, nominal)]];
+      return [
+        [tag, 'nominal', ...cells(loop, first, nominal)],
+        ['', paper.paint.faint('worst'), ...cells(loop, second, worst)],
+      ];
+    });
+}
+
+const leading = ({ job }: EvaluationView): { head: string }[] =>
+  isExact(job) ? [{ head: 'loop' }] : [{ head: 'loop' }, { head: '' }];
+
+function marginsTable(view: EvaluationView, paper: Paper): string {
+  const { timeUnit } = view.evaluation;
+  const columns = [
+    ...leading(view),
+    { head: 'Ms', lean: 'right' },
+    { head: 'Mt', lean: 'right' },
+    { head: 'gain\nmargin', lean: 'right' },
+    { head: 'phase\nmargin', lean: 'right' },
+    { head: `delay\nmargin, ${timeUnit}`, lean: 'right' },
+    { head: 'output\nnoise', lean: 'right' },
+  ] as const;
+  const rows = twoRows(view, paper, (loop, metrics, { unit }) => [
+    fixed(metrics.peakSensitivity, 2),
+    fixed(metrics.peakComplementary, 2),
+    margin(metrics.gainMargin, unit.stable, (value) => value.toFixed(2)),
+    margin(metrics.phaseMargin, unit.stable, (value) => `${value.toFixed(0)} deg`),
+    margin(metrics.delayMargin, unit.stable, (value) => significant(value)),
+    withUnit(metrics.outputNoise, loopUnits(view.job, loop).output),
+  ]);
+  return grid(columns, rows, paper);
+}
+
+function responsesTable(view: EvaluationView, paper: Paper): string {
+  const { timeUnit } = view.evaluation;
+  const columns = [
+    ...leading(view),
+    { head: 'overshoot', lean: 'right' },
+    { head: `settling,\n${timeUnit}`, lean: 'right' },
+    { head: 'peak\ndeviation', lean: 'right' },
+    { head: 'IAE', lean: 'right' },
+    { head: 'output\ntravel', lean: 'right' },
+    { head: 'move a\nscan', lean: 'right' },
+  ] as const;
+  const rows = twoRows(view, paper, (loop, metrics, { unit }) => {
+    const units = loopUnits(view.job, loop);
+    const stepped = isStepped(view, loop.tag);
+    const late = unit.stable && stepped ? paper.paint.bad('not') : noFigure;
+    return [
+      metrics.overshoot === null ? noFigure : `${metrics.overshoot.toFixed(1)} %`,
+      metrics.settlingTime === null ? late : significant(metrics.settlingTime),
+      withUnit(metrics.peakDeviation, units.pv),
+      figure(metrics.iae),
+      withUnit(metrics.travel, units.output),
+      withUnit(metrics.peakMove, units.output),
+    ];
+  });
+  return grid(columns, rows, paper);
+}
+
+const isStepped = ({ evaluation }: EvaluationView, tag: string): boolean =>
+  evaluation.scored.nominal.upsets?.some((u) => u.kind === 'setpoint' && u.tag === tag) ?? false;
+
+function limitsPart({ verdicts, evaluation }: EvaluationView, paper: Paper): string {
+  const { paint } = paper;
+  if (verdicts.length === 0) return '  none stated';
+  const judged = verdicts.filter(({ holds }) => holds !== null);
+  const broken = judged.filter(({ holds }) => holds === false);
+  const unknown = verdicts.length - judged.length;
+  const lines: string[] = [];
+  if (unknown > 0) {
+    const why = evaluation.scored.stable ? '' : ', which are for stable models alone';
+    lines.push(`  ${counted(unknown, 'limit')} not judged${why}`);
+  }
+  if (broken.length === 0) {
+    if (judged.length > 0) {
+      lines.push(
+        `  ${paint.good(judged.length === 1 ? 'the one limit holds' : `all ${judged.length} hold`)}`,
+      );
+    }
+    return lines.join('\n');
+  }
+  lines.push(`  ${paint.bad(`${broken.length} of ${judged.length} broken`)}`);
+  const columns = [
+    { head: '' },
+    { head: 'limit' },
+    { head: 'asked', lean: 'right' },
+    { head: 'reached', lean: 'right' },
+    { head: '' },
+  ] as const;
+  const rows = broken.map((verdict) => [
+    verdict.loop ?? 'unit',
+    limitInWords(verdict.limit),
+    verdict.asked,
+    verdict.reached,
+    [verdict.nominal ? 'nominal' : '', verdict.stated ? '' : 'assumed'].filter(Boolean).join(', '),
+  ]);
+  lines.push(grid(columns, rows, paper));
+  return lines.join('\n');
+}
+
+function unitPart({ evaluation }: EvaluationView, paper: Paper): string {
+  const { nominal, worst } = evaluation.scored;
+  const both = (key: 'peakSingularValueS' | 'peakSingularValueT'): string => {
+    const text = fixed(nominal.unit[key], 2);
+    const other = worst.unit[key];
+    return other === null || other === nominal.unit[key]
+      ? text
+      : `${text}, worst ${fixed(other, 2)}`;
+  };
+  const needed = Object.entries(nominal.loops)
+    .filter(([, { stableInManual }]) => stableInManual === false)
+    .map(([tag]) => tag);
+  const manual =
+    needed.length === 0
+      ? 'the rest is stable with any one loop in manual'
+      : paper.paint.warn(`must not be in manual: ${needed.join(', ')}`);
+  const table = interactionTable(nominal.unit, paper);
+  const list = facts(
+    [
+      ['peak singular value of S', both('peakSingularValueS')],
+      ['peak singular value of T', both('peakSingularValueT')],
+      ['loops in manual', manual],
+    ],
+    paper,
+  );
+  return table === null ? list : `${list}\n${table}`;
+}
+
+function noticesPart({ warnings }: EvaluationDocument, paper: Paper): string | null {
+  if (warnings.length === 0) return null;
+  const texts = warnings.map(({ path, value, problem }) => `${path}: ${problem} (${value})`);
+  return section('Warnings', remarks(texts, paper), paper);
+}
