@@ -1,7 +1,7 @@
 import type { DiscreteController } from '../controllers/index.js';
 import { LoopTraces } from './loop-traces.js';
 import { type LoopMargins, readMargins } from './margins.js';
-import { findPeak } from './peaks.js';
+import { findBandPeaks, findPeak } from './peaks.js';
 import type { SampledLoops } from './sampled-loops.js';
 import { singularValuesAt } from './singular-values.js';
 import { countUnstablePoles, type PoleCount, rowsOpenedBy } from './stability.js';
@@ -14,6 +14,8 @@ export interface LoopFrequencyFigures extends LoopMargins {
   readonly outputNoise: number;
   /** The same from the loop's own measurement alone. */
   readonly outputNoiseOwn: number;
+  /** Peak sensitivity in each of the bands asked for. */
+  readonly bandSensitivities?: Float64Array;
 }
 
 export interface FrequencyFigures {
@@ -37,6 +39,8 @@ export interface AnalysisRequest {
   readonly refine: boolean;
   readonly singularValues: boolean;
   readonly manualCases: boolean;
+  /** Stretches of the grid whose peak sensitivities are wanted one by one. */
+  readonly bands?: number;
 }
 
 /**
@@ -111,6 +115,15 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
       ),
       outputNoise: Math.sqrt(noise.total[i] as number),
       outputNoiseOwn: Math.sqrt(noise.own[i] as number),
+      ...(request.bands === undefined
+        ? {}
+        : {
+            bandSensitivities: findBandPeaks(
+              (k) => traces.sensitivity(k, i),
+              angles,
+              request.bands,
+            ),
+          }),
     };
   });
   const singularPeak = (

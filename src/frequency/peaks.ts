@@ -39,6 +39,31 @@ export function findPeak(
   return peak;
 }
 
+/**
+ * Largest value in each of `bands` equal stretches of the grid, crests smoothed by a parabola.
+ *
+ * The largest of all jumps from one resonance to another as settings change; the largest of a fixed
+ * stretch moves smoothly, which is what a descent can follow.
+ */
+export function findBandPeaks(
+  values: (k: number) => number,
+  angles: Float64Array,
+  bands: number,
+): Float64Array {
+  const last = angles.length - 1;
+  const peaks = new Float64Array(bands);
+  for (let band = 0; band < bands; band += 1) {
+    const from = Math.round((band * last) / bands);
+    const to = Math.round(((band + 1) * last) / bands);
+    let at = from;
+    for (let k = from + 1; k <= to; k += 1) if (values(k) > values(at)) at = k;
+    const inside =
+      at > 0 && at < last && values(at - 1) <= values(at) && values(at + 1) <= values(at);
+    peaks[band] = inside ? crestOf(values, angles, at) : values(at);
+  }
+  return peaks;
+}
+
 /** Top of the parabola through three points, over the logarithm of the angle. */
 function crestOf(values: (k: number) => number, angles: Float64Array, k: number): number {
   const x0 = Math.log((angles[k - 1] as number) / (angles[k] as number));

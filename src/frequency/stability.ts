@@ -20,6 +20,10 @@ export function rowsOpenedBy(loops: SampledLoops, loop: number): number[] {
     .filter((row) => row >= 0);
 }
 
+/** Halfway in the logarithm, or plainly where the interval is wide or begins at zero. */
+const middleOf = (from: number, to: number): number =>
+  from > 0 && to < 2 * from ? Math.sqrt(from * to) : (from + to) / 2;
+
 const fullTurn = 2 * Math.PI;
 const wrap = (angle: number): number => angle - fullTurn * Math.round(angle / fullTurn);
 /** Largest step of log F between neighbours, and largest change of that step, that count as followed. */
@@ -104,9 +108,14 @@ export function countUnstablePoles(
     }
   };
   const follow = (a: Sample, from: number, b: Sample, to: number, depth: number): void => {
-    const middle = from * to > 0 && to < 2 * from ? Math.sqrt(from * to) : (from + to) / 2;
+    const middle = middleOf(from, to);
     const m = between(middle);
-    if (!bends(a, m, b)) {
+    // Both halves must be straight too: coinciding zeros may hide from one middle, not from three.
+    const straight =
+      !bends(a, m, b) &&
+      !bends(a, between(middleOf(from, middle)), m) &&
+      !bends(m, between(middleOf(middle, to)), b);
+    if (straight) {
       take(a, m);
       take(m, b);
     } else if (depth >= deepest || middle <= from || middle >= to) {
@@ -130,7 +139,7 @@ export function countUnstablePoles(
   }
   return cases.map((_, c) => {
     const turns = -(total[c] as number) / Math.PI;
-    const unstable = Math.round(turns);
+    const unstable = Math.round(turns) + 0;
     const decided = lost[c] === 0 && Math.abs(turns - unstable) < 0.2 && unstable >= 0;
     return { unstable: decided ? unstable : Math.max(1, unstable), decided };
   });

@@ -5,7 +5,7 @@ import {
   type Polynomial,
 } from '../numerics/index.js';
 import type { ProcessModel } from './model.js';
-import { type SplitModel, type StateSpace, splitModel } from './state-space.js';
+import { type SplitModel, splitModel } from './state-space.js';
 
 /** One path from a held source to a measurement: a response in continuous time. */
 export interface UnitPath {
@@ -22,7 +22,7 @@ export interface SampledInput {
   readonly before: Float64Array;
 }
 
-/** The stable part of one path: x[k+1] = transition x[k] + input; PV += output x + direct part. */
+/** A stable part of one path: x[k+1] = transition x[k] + input; PV += output x + direct part. */
 export interface SampledChannel extends SampledInput {
   readonly measurement: number;
   readonly order: number;
@@ -101,19 +101,38 @@ function sampleInput(
   };
 }
 
-function sampleChannel(path: UnitPath, split: SplitModel, step: number): SampledChannel | null {
-  const { stable, feedthrough } = split;
-  if (stable.order === 0 && feedthrough === 0) return null;
-  const { steps, rest } = splitDeadTime(path.model.deadTime, step);
-  return {
-    source: path.source,
-    measurement: path.measurement,
-    order: stable.order,
-    output: stable.c,
-    feedthrough,
-    directDelay: rest === 0 ? steps : steps + 1,
-    ...sampleInput(stable.a, stable.b, stable.order, path.model.deadTime, step),
-  };
+function sampleChannels(path: UnitPath, split: SplitModel, step: number): SampledChannel[] {
+  const { deadTime } = path.model;
+  const { steps, rest } = splitDeadTime(deadTime, step);
+  const directDelay = rest === 0 ? steps : steps + 1;
+  const { source, measurement } = path;
+  const channels = split.stable.map(
+    ({ order, a, b, c }): SampledChannel => ({
+      source,
+      measurement,
+      order,
+      output: c,
+      feedthrough: 0,
+      directDelay,
+      ...sampleInput(a, b, order, deadTime, step),
+    }),
+  );
+  if (split.feedthrough !== 0) {
+    const nothing = new Float64Array(0);
+    channels.push({
+      source,
+      measurement,
+      order: 0,
+      output: nothing,
+      transition: nothing,
+      now: nothing,
+      before: nothing,
+      delay: steps,
+      feedthrough: split.feedthrough,
+      directDelay,
+    });
+  }
+  return channels;
 }
 
 /** Poles are one and the same when their factors agree to a few digits less than rounding. */
@@ -204,8 +223,7 @@ export function sampleUnit(
   );
   for (const path of paths) {
     const split = splitModel(path.model);
-    const channel = sampleChannel(path, split, step);
-    if (channel !== null) channels.push(channel);
+    channels.push(...sampleChannels(path, split, step));
     if (split.unstableFactors.length > 0) unstable[path.measurement]?.push({ path, split });
   }
   const blocks = unstable.flatMap((parts, measurement) =>
@@ -218,5 +236,3 @@ export function sampleUnit(
   for (const channel of channels) longestDelay = Math.max(longestDelay, channel.directDelay);
   return { step, sourceCount, measurementCount, channels, blocks, longestDelay };
 }
-
-export type { StateSpace };

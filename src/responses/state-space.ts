@@ -1,5 +1,6 @@
 import {
   dividePolynomials,
+  evaluatePolynomial,
   multiplyPolynomials,
   type Polynomial,
   solveLinear,
@@ -17,7 +18,8 @@ export interface StateSpace {
 
 /** A response split into a stable part, what its unstable poles carry, and a direct part. */
 export interface SplitModel {
-  readonly stable: StateSpace;
+  /** In parallel: their outputs add up. */
+  readonly stable: readonly StateSpace[];
   /** Over the product of `unstableFactors`; [0] when there are none. */
   readonly unstableNumerator: Polynomial;
   readonly unstableFactors: readonly Polynomial[];
@@ -43,7 +45,7 @@ export function splitModel(model: ProcessModel): SplitModel {
   }
   if (unstableFactors.length === 0) {
     return {
-      stable: realizeChain(numerator, stableFactors),
+      stable: realize(numerator, stableFactors),
       unstableNumerator: Float64Array.of(0),
       unstableFactors,
       feedthrough,
@@ -51,7 +53,7 @@ export function splitModel(model: ProcessModel): SplitModel {
   }
   const { first, second } = partialFractions(numerator, du, ds);
   return {
-    stable: realizeChain(second, stableFactors),
+    stable: realize(second, stableFactors),
     unstableNumerator: first,
     unstableFactors,
     feedthrough,
@@ -90,6 +92,46 @@ function partialFractions(
     first: solution.slice(0, m).map((c, j) => c / power(j)),
     second: solution.slice(m).map((c, j) => c / power(j)),
   };
+}
+
+/** Lags this far apart, as a ratio, may stand side by side without cancelling each other. */
+const apart = 1.05;
+
+/** Lags side by side where they are well apart, which is cheapest to simulate; else in a chain. */
+function realize(numerator: Polynomial, factors: readonly Polynomial[]): StateSpace[] {
+  const modes = realizeModes(numerator, factors);
+  if (modes !== null) return modes;
+  const chain = realizeChain(numerator, factors);
+  return chain.order === 0 ? [] : [chain];
+}
+
+/** numerator / product of real, distinct lags as a sum of first-order sections; null where they are not. */
+function realizeModes(numerator: Polynomial, factors: readonly Polynomial[]): StateSpace[] | null {
+  const poles: number[] = [];
+  for (const factor of factors) {
+    if (factor.length !== 2) return null;
+    poles.push(-(factor[0] as number) / (factor[1] as number));
+  }
+  const sorted = poles.toSorted((a, b) => a - b);
+  for (let i = 1; i < sorted.length; i += 1) {
+    if (!((sorted[i - 1] as number) / (sorted[i] as number) > apart)) return null;
+  }
+  return factors.flatMap((factor, i): StateSpace[] => {
+    const pole = poles[i] as number;
+    let residue = evaluatePolynomial(numerator, pole) / (factor[1] as number);
+    factors.forEach((other, j) => {
+      if (j !== i) residue /= evaluatePolynomial(other, pole);
+    });
+    if (residue === 0) return [];
+    return [
+      {
+        order: 1,
+        a: Float64Array.of(pole),
+        b: Float64Array.of(-pole),
+        c: Float64Array.of(-residue / pole),
+      },
+    ];
+  });
 }
 
 /**

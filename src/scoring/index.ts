@@ -13,18 +13,22 @@ export {
   type SampledModel,
   sampleModel,
 } from './judge.js';
+export type { Limit, LoopQuantity, UnitQuantity } from './limit.js';
 export {
   isLowerLimit,
-  type Limit,
-  type LoopQuantity,
   limitExcess,
   limitedValue,
   needsSimulation,
   tightenLimit,
-  type UnitQuantity,
 } from './limits.js';
 export { type LoopTimeFigures, summarizeLoop } from './loop-figures.js';
-export { referenceSpeed, type SpeedReference, speedOf } from './speed.js';
+export {
+  referenceSpeed,
+  type SpeedParts,
+  type SpeedReference,
+  speedOf,
+  speedParts,
+} from './speed.js';
 export {
   type LoopCase,
   settlingBands,

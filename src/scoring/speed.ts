@@ -57,21 +57,40 @@ export function referenceSpeed(
   return { ...reference, total: total > 0 ? total : 1 };
 }
 
+/** The two parts of E, both as shares of the reference's E. */
+export interface SpeedParts {
+  readonly tight: number;
+  readonly averaging: number;
+}
+
 /**
- * E / E of the reference: below 1 is faster. Averaging loops enter by their peak output rate against
+ * E / E of the reference in its two parts. Averaging loops enter by their peak output rate against
  * the reference's, scaled by the reference's mean tight term so that both kinds weigh alike.
  */
+export function speedParts(
+  tuning: TuningCase,
+  figures: readonly (readonly UpsetFigures[])[],
+  reference: SpeedReference,
+): SpeedParts {
+  const { tight, rates } = termsOf(tuning, figures);
+  let averaging = 0;
+  tuning.loops.forEach((loop, i) => {
+    const before = reference.rates[i] as number;
+    if (loop.goal !== 'averaging' || loop.role === 'manual' || !(before > 0)) return;
+    averaging += (loop.weight * reference.meanTight * (rates[i] as number)) / before;
+  });
+  return {
+    tight: tight.reduce((a, b) => a + b, 0) / reference.total,
+    averaging: averaging / reference.total,
+  };
+}
+
+/** E / E of the reference: below 1 is faster. */
 export function speedOf(
   tuning: TuningCase,
   figures: readonly (readonly UpsetFigures[])[],
   reference: SpeedReference,
 ): number {
-  const { tight, rates } = termsOf(tuning, figures);
-  let total = tight.reduce((a, b) => a + b, 0);
-  tuning.loops.forEach((loop, i) => {
-    const before = reference.rates[i] as number;
-    if (loop.goal !== 'averaging' || loop.role === 'manual' || !(before > 0)) return;
-    total += (loop.weight * reference.meanTight * (rates[i] as number)) / before;
-  });
-  return total / reference.total;
+  const { tight, averaging } = speedParts(tuning, figures, reference);
+  return tight + averaging;
 }

@@ -1,6 +1,6 @@
 import type { ControllerAlgorithm, LoopNetwork } from '../controllers/index.js';
 import type { Upset } from '../simulation/index.js';
-import type { Limit } from './limits.js';
+import type { Limit } from './limit.js';
 
 /** What scoring needs to know of one loop besides its place in the network. */
 export interface LoopCase {

@@ -89,3 +89,57 @@ export function flattenUnit(unit: SampledUnit, network: LoopNetwork): FlatUnit {
     direct,
   };
 }
+
+/** States of all wide sections together. */
+export const wideOrder = (flat: FlatUnit): number => flat.wide.reduce((n, w) => n + w.order, 0);
+
+/**
+ * Advance the wide sections from step k - 1 to k and add them to the PVs.
+ * @param states  of all sections, one after the other
+ * @param scratch  room for the widest
+ * @param history  held inputs, a row of `stride` a source, step 0 at `lead`
+ */
+export function advanceWide(
+  wide: readonly WideSection[],
+  states: Float64Array,
+  scratch: Float64Array,
+  history: Float64Array,
+  stride: number,
+  lead: number,
+  k: number,
+  values: Float64Array,
+): void {
+  let base = 0;
+  for (let w = 0; w < wide.length; w += 1) {
+    const section = wide[w] as WideSection;
+    const n = section.order;
+    const { transition, output, inputs } = section;
+    for (let i = 0; i < n; i += 1) {
+      let sum = 0;
+      for (let j = 0; j < n; j += 1) {
+        sum += (transition[i * n + j] as number) * (states[base + j] as number);
+      }
+      scratch[i] = sum;
+    }
+    for (let c = 0; c < inputs.length; c += 1) {
+      const input = inputs[c] as SampledInput;
+      const at = input.source * stride + lead - 1 - input.delay + k;
+      const now = history[at] as number;
+      const before = history[at - 1] as number;
+      for (let i = 0; i < n; i += 1) {
+        scratch[i] =
+          (scratch[i] as number) +
+          (input.now[i] as number) * now +
+          (input.before[i] as number) * before;
+      }
+    }
+    let y = 0;
+    for (let i = 0; i < n; i += 1) {
+      const x = scratch[i] as number;
+      states[base + i] = x;
+      y += (output[i] as number) * x;
+    }
+    values[section.measurement] = (values[section.measurement] as number) + y;
+    base += n;
+  }
+}

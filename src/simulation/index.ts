@@ -1,4 +1,5 @@
 export { figureCount, type KernelSetup, kernelFigures, type SimulationKernel } from './kernel.js';
 export { type PlainRun, simulatePlainly, type Trajectory } from './plain.js';
 export { ScalarKernel } from './scalar-kernel.js';
-export { steppedLoop, type Upset } from './upset.js';
+export { TwoRateKernel, type TwoRateSetup } from './two-rate-kernel.js';
+export type { Upset } from './upset.js';

@@ -23,6 +23,3 @@ export type Upset =
       readonly size: number;
       readonly opened: readonly number[];
     };
-
-/** The loop whose own setpoint is stepped, or -1. */
-export const steppedLoop = (upset: Upset): number => (upset.kind === 'setpoint' ? upset.loop : -1);

@@ -1,6 +1,9 @@
 import type { SearchDocument } from '../contract/index.js';
 import type { Plan } from '../search/index.js';
 
+/** Levels above this are no compromise that anybody dials; a stated peakSensitivity limit may say less. */
+export const highestLevel = 2.5;
+
 /** How many points each kind of work may evaluate; fixed by the document alone. */
 export interface EffortPlan {
   /** Independent searches for each end of the front. */

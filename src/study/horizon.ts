@@ -1,5 +1,10 @@
 import type { ControllerSettings, Loop } from '../controllers/index.js';
-import { isIntegrator, isUnstableFactor, type UnitPath } from '../responses/index.js';
+import {
+  isIntegrator,
+  isUnstableFactor,
+  type ProcessModel,
+  type UnitPath,
+} from '../responses/index.js';
 import type { CompiledJob } from './compiled-job.js';
 
 /** Most steps of one simulated upset. */
@@ -11,6 +16,10 @@ function timeConstantOf(factor: Float64Array): number {
   const [c0, c1, c2] = [factor[0] as number, factor[1] as number, factor[2]];
   return c2 === undefined ? Math.abs(c1 / c0) : Math.sqrt(Math.abs(c2 / c0));
 }
+
+/** Sum of a response's lags, s; integrators aside. */
+export const lagsOf = (model: ProcessModel): number =>
+  model.factors.filter((f) => !isUnstableFactor(f)).reduce((sum, f) => sum + timeConstantOf(f), 0);
 
 /** Paths into the measurements of closed loops. */
 function seenPaths(compiled: CompiledJob): UnitPath[] {
@@ -51,10 +60,7 @@ export function leastHorizon(
 ): number {
   let horizon = 20 * compiled.scan;
   for (const { model } of seenPaths(compiled)) {
-    const lags = model.factors
-      .filter((f) => !isUnstableFactor(f))
-      .reduce((sum, f) => sum + timeConstantOf(f), 0);
-    horizon = Math.max(horizon, model.deadTime + 5 * lags);
+    horizon = Math.max(horizon, model.deadTime + 5 * lagsOf(model));
   }
   settings.forEach((s, i) => {
     const automatic = (compiled.network.loops[i] as Loop).automatic;

@@ -42,6 +42,8 @@ export interface Preparation {
   /** Scans in one step of the search, and what a speed of 1 means at that step. */
   readonly searchStride: number;
   readonly searchSpeed: SpeedReference;
+  /** Largest error of speed at that step, seen on settings from slack to brisk. */
+  readonly searchError: number;
   /** Today's settings are complete and stable on the nominal unit. */
   readonly presentIsStable: boolean;
   /** Published rules' settings, in every loop's own terms. */
@@ -51,6 +53,8 @@ export interface Preparation {
 
 /** Share of the actuator's span that is taken as noise budget where none is stated. */
 const assumedNoiseShare = 0.005;
+/** Settings that peak higher than this say nothing of where the search will be. */
+const trialPeak = 3;
 /** How much a kept loop's peak sensitivity may grow. */
 const keptGrowth = 1.05;
 
@@ -146,10 +150,12 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     ...rulesInside(compiled, rules),
   ];
   const model = sampleVariant(compiled, { ...final, upsets: [] }, nominal);
-  const stable = trials.filter(
-    (settings) => judgeModel({ ...final, upsets: [] }, model, settings, plainDetail).stable,
-  );
-  const search = chooseSearchStep(compiled, final, nominal, stable);
+  const sane = trials.filter((settings, t) => {
+    const score = judgeModel({ ...final, upsets: [] }, model, settings, plainDetail);
+    const peaks = score.frequency.loops.map((f) => f?.peakSensitivity ?? 0);
+    return score.stable && (t === 0 || Math.max(...peaks) < trialPeak);
+  });
+  const search = chooseSearchStep(compiled, final, nominal, sane);
   return {
     steps,
     stepsPerScan,
@@ -158,6 +164,7 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     speed,
     searchStride: search.stride,
     searchSpeed: search.speed,
+    searchError: search.error,
     presentIsStable,
     baselines: rules,
     assumed,

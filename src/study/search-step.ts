@@ -1,65 +1,27 @@
-import type { ControllerSettings } from '../controllers/index.js';
-import { pathsOf, type Response, sampleUnit } from '../responses/index.js';
+import type { ControllerSettings, Loop } from '../controllers/index.js';
+import type { Response } from '../responses/index.js';
 import {
-  controllersOf,
-  needsSimulation,
   referenceSpeed,
+  type SpeedParts,
   type SpeedReference,
-  settlingBands,
-  speedOf,
+  speedParts,
   type TuningCase,
   type UpsetFigures,
 } from '../scoring/index.js';
-import { figureCount, ScalarKernel } from '../simulation/index.js';
 import type { CompiledJob } from './compiled-job.js';
-import { readKernelFigures } from './tuning-problem.js';
-import { searchCase } from './workbench.js';
+import { isQuick, standsApart } from './quick-loops.js';
+import { SearchSimulation } from './search-simulation.js';
 
-/** Largest error of speed that a coarser step of the search may bring. */
-const allowedError = 0.004;
+/**
+ * Largest errors that longer steps of the search may bring to the speed of a trial: of what tight
+ * loops add to it, and of what averaging loops add, whose largest move within one scan is blurred.
+ */
+const allowedTight = 0.006;
+const allowedAveraging = 0.05;
 /** Strides tried, in scans. */
-const strides = [2, 3, 4, 5, 6, 8, 10, 12, 16, 20] as const;
+const strides = [2, 3, 4, 5, 6, 8, 10, 12, 15, 20, 25, 30] as const;
 /** Fewest steps of an upset that still show its course. */
-const fewestSteps = 300;
-
-/** Figures [upset][loop] of the nominal unit by the kernel. */
-function simulateNominal(
-  compiled: CompiledJob,
-  tuning: TuningCase,
-  responses: readonly Response[],
-  candidates: readonly (readonly ControllerSettings[])[],
-): UpsetFigures[][][] {
-  const paths = pathsOf(responses, compiled.measurementCount);
-  const step = tuning.scan / tuning.stepsPerScan;
-  const kernel = new ScalarKernel({
-    network: tuning.network,
-    units: [sampleUnit(paths, compiled.sourceCount, compiled.measurementCount, step)],
-    upsets: tuning.upsets.map((u) => u.upset),
-    bands: tuning.upsets.map((u) => settlingBands(tuning, u.upset)),
-    stepsPerScan: tuning.stepsPerScan,
-    steps: tuning.steps,
-  });
-  const count = tuning.loops.length;
-  const upsets = tuning.upsets.map((_, u) => u);
-  const flat = kernel.simulate(
-    candidates.map((settings) => controllersOf(tuning, settings, tuning.scan)),
-    [0],
-    upsets,
-  );
-  return candidates.map((_, c) =>
-    tuning.upsets.map(({ upset }, u) =>
-      tuning.loops.map((__, i) => {
-        const offset = ((c * upsets.length + u) * count + i) * figureCount;
-        return readKernelFigures(
-          flat,
-          offset,
-          upset.kind === 'setpoint' && upset.loop === i,
-          tuning.scan,
-        );
-      }),
-    ),
-  );
-}
+const fewestSteps = 250;
 
 /** The step of the search and what speed is measured against at that step. */
 export interface SearchStep {
@@ -71,43 +33,63 @@ export interface SearchStep {
 }
 
 /**
- * The coarsest step at which the speed of several tuning sets, slack to brisk, agrees with that at
- * the true scan. Limits on the output's rate or single moves are judged at the true scan alone.
+ * The longest step at which the speed of several tuning sets, slack to brisk, agrees with that at the
+ * true scan. Limits on the output's rate, single moves or travel are judged at the true scan alone.
  * @param trials  settings stable on the nominal unit; the first is the reference
  */
 export function chooseSearchStep(
   compiled: CompiledJob,
   tuning: TuningCase,
-  responses: readonly Response[],
+  nominal: readonly Response[],
   trials: readonly (readonly ControllerSettings[])[],
 ): SearchStep {
-  const fine = simulateNominal(compiled, tuning, responses, trials);
+  const figuresAt = (stride: number): UpsetFigures[][][] => {
+    const simulation = new SearchSimulation(compiled, tuning, stride, [nominal]);
+    return trials.map((settings) => simulation.simulate(settings, [0])[0] as UpsetFigures[][]);
+  };
+  const fine = figuresAt(1);
   const speed = referenceSpeed(tuning, fine[0] as UpsetFigures[][]);
-  const exact = fine.map((figures) => speedOf(tuning, figures, speed));
+  const exact = fine.map((figures) => speedParts(tuning, figures, speed));
   let best: SearchStep = { stride: 1, speed, error: 0 };
-  const scans = tuning.steps / tuning.stepsPerScan;
-  const scanBound = tuning.limits.some(
-    (l) => l.quantity === 'outputRate' || l.quantity === 'outputMove' || l.quantity === 'travel',
-  );
-  if (
-    scanBound ||
-    tuning.limits.some(
-      (l) => needsSimulation(l.quantity) && l.quantity === 'overshoot' && l.bound < 1,
-    )
-  ) {
-    return best;
-  }
+  if (tuning.stepsPerScan > 1 || needsEveryScan(compiled, tuning)) return best;
   for (const stride of strides) {
-    if (scans / stride < fewestSteps) break;
-    const coarse = searchCase(tuning, stride);
-    const figures = simulateNominal(compiled, coarse, responses, trials);
-    const reference = referenceSpeed(coarse, figures[0] as UpsetFigures[][]);
-    const error = figures.reduce((worst, f, t) => {
-      const ratio = speedOf(coarse, f, reference) / (exact[t] as number);
-      return Number.isFinite(ratio) ? Math.max(worst, Math.abs(ratio - 1)) : Infinity;
-    }, 0);
-    if (!(error <= allowedError)) break;
-    best = { stride, speed: reference, error };
+    if (tuning.steps / stride < fewestSteps || !canStride(compiled, tuning, stride)) break;
+    const figures = figuresAt(stride);
+    const reference = referenceSpeed(tuning, figures[0] as UpsetFigures[][]);
+    let worst = 0;
+    let error = 0;
+    figures.forEach((f, t) => {
+      const { tight, averaging } = speedParts(tuning, f, reference);
+      const truth = exact[t] as SpeedParts;
+      const total = truth.tight + truth.averaging;
+      const tightError = Math.abs(tight - truth.tight) / total;
+      const averagingError = Math.abs(averaging - truth.averaging) / total;
+      worst = Math.max(worst, tightError / allowedTight, averagingError / allowedAveraging);
+      error = Math.max(error, Math.abs((tight + averaging) / total - 1));
+    });
+    if (worst <= 1) best = { stride, speed: reference, error };
+    else if (!(worst <= 3)) break;
   }
   return best;
+}
+
+/** Some limit is on what happens from one scan to the next, or a response is direct. */
+function needsEveryScan(compiled: CompiledJob, tuning: TuningCase): boolean {
+  const byScan = tuning.limits.some(
+    (l) => l.quantity === 'outputRate' || l.quantity === 'outputMove' || l.quantity === 'travel',
+  );
+  const direct = compiled.paths.some(
+    ({ model }) => model.numerator.length > model.factors.reduce((n, f) => n + f.length - 1, 0),
+  );
+  return byScan || direct;
+}
+
+/** Every quick loop can be simulated apart, and every inner loop is quick. */
+function canStride(compiled: CompiledJob, tuning: TuningCase, stride: number): boolean {
+  return compiled.network.loops.every((loop: Loop, i) => {
+    if (!loop.automatic) return true;
+    if (isQuick(compiled, i, tuning.scan * stride)) return standsApart(compiled, i);
+    const outer = compiled.network.outerOf[i] as number;
+    return outer < 0 || !('source' in loop.drives);
+  });
 }

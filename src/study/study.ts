@@ -13,7 +13,7 @@ import { passingShare } from '../scoring/index.js';
 import { nonDominated, selectEvenly } from '../search/index.js';
 import { hashOf } from './canonical.js';
 import { commonScan } from './compiled-job.js';
-import { effortPlan } from './effort.js';
+import { effortPlan, highestLevel } from './effort.js';
 import type { Preparation } from './preparation.js';
 import type { FoundPoint, StudyContext, Task, TaskResult, Verified } from './tasks.js';
 
@@ -131,6 +131,11 @@ function archiveOf(stages: readonly (readonly TaskResult[])[]): FoundPoint[] {
       if (r.kind === 'levels') points.push(...r.best, ...r.points);
     }
   }
+  return frontOf(points);
+}
+
+/** The points no other beats, by peak. */
+function frontOf(points: readonly FoundPoint[]): FoundPoint[] {
   const kept = nonDominated(points.map((p) => [p.cost, p.peak]));
   return kept
     .map((k) => points[k] as FoundPoint)
@@ -148,10 +153,7 @@ function bestOf(stages: readonly (readonly TaskResult[])[]): FoundPoint[] {
         points.push(...r.points.slice(0, 1));
     }
   }
-  const kept = nonDominated(points.map((p) => [p.cost, p.peak]));
-  return kept
-    .map((k) => points[k] as FoundPoint)
-    .sort((a, b) => a.peak - b.peak || a.cost - b.cost);
+  return frontOf(points.filter((p) => p.peak <= highestLevel * (1 + 1e-9)));
 }
 
 /** Worst peak sensitivity of today's settings; Infinity when they are unstable. */
@@ -168,11 +170,11 @@ const ampleRobustness = 1.2;
  * distance from an open loop.
  */
 function levelsBetween(archive: readonly FoundPoint[], present: number, count: number): number[] {
-  const low = archive[0]?.peak ?? 1.2;
-  const high = archive.reduce(
-    (best, p) => (p.cost < best.cost ? p : best),
-    archive[0] as FoundPoint,
-  ).peak;
+  const first = archive[0] as FoundPoint;
+  const low = first.peak;
+  const high = archive
+    .filter((p) => p.peak <= highestLevel)
+    .reduce((best, p) => (p.cost < best.cost ? p : best), first).peak;
   const ample = Math.min(ampleRobustness, Math.max(present, 1.05));
   const from = Math.min(high, Math.max(low + 0.02 * (high - low), ample));
   const ratio = (high - 1) / (from - 1);

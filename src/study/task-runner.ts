@@ -1,7 +1,7 @@
 import { Random } from '../base/index.js';
 import { lowestLevel, type Point, solveLevel } from '../search/index.js';
 import { type CompiledJob, compileJob } from './compiled-job.js';
-import { effortPlan } from './effort.js';
+import { effortPlan, highestLevel } from './effort.js';
 import { scoreFully } from './evaluation.js';
 import { describeInfeasibility } from './infeasibility.js';
 import { type Preparation, prepareJob } from './preparation.js';
@@ -12,8 +12,6 @@ import { pointOf } from './variables.js';
 import { verifyAlternative } from './verification.js';
 import { Workbench } from './workbench.js';
 
-/** Levels above this are no compromise that anybody dials; a stated peakSensitivity limit may say less. */
-export const highestLevel = 2.5;
 /** Points a task hands on beside the optima of its levels. */
 const handedOn = 24;
 

@@ -1,5 +1,5 @@
 import type { ControllerSettings } from '../controllers/index.js';
-import { analyseLoops, type FrequencyFigures } from '../frequency/index.js';
+import { analyseLoops, type FrequencyFigures, type SampledLoops } from '../frequency/index.js';
 import {
   controllersOf,
   type Limit,
@@ -7,9 +7,7 @@ import {
   limitExcess,
   limitedValue,
   needsSimulation,
-  type SampledModel,
   type SpeedReference,
-  settlingBands,
   speedOf,
   summarizeLoop,
   type TuningCase,
@@ -17,25 +15,31 @@ import {
   type UpsetFigures,
 } from '../scoring/index.js';
 import type { Evaluation, Problem } from '../search/index.js';
-import { figureCount, ScalarKernel, type SimulationKernel } from '../simulation/index.js';
+import type { SearchSimulation } from './search-simulation.js';
 import { type DecisionSpace, internalSettings, settingsAt } from './variables.js';
 
 /** Share of every limit that the search keeps in hand, so that fresh models stay inside. */
 export const shareInHand = 0.02;
 
-/** What a search is set on: models, a simulation step of its own, and what speed is measured against. */
+/** Stretches of frequency whose peaks the search follows one by one. */
+const bands = 8;
+const none = new Float64Array(0);
+
+/** What a search is set on: models, a simulation of them, and what speed is measured against. */
 export interface SearchSetup {
   readonly space: DecisionSpace;
-  /** The case at the search's step. */
   readonly tuning: TuningCase;
-  /** Nominal first; sampled at the search's step, on the searching grid. */
-  readonly models: readonly SampledModel[];
+  /** Every model's loops on the searching grid, nominal first. */
+  readonly loops: readonly SampledLoops[];
+  /** Of the same models. */
+  readonly simulation: SearchSimulation;
   readonly speed: SpeedReference;
 }
 
 /**
  * A tuning job as the search sees it: a point is a tuning set, cost its speed on the nominal unit,
- * levelled the peak sensitivity of every retuned loop on every model, constraints all limits on all
+ * levelled the peak sensitivity of
+ * every retuned loop on every model in every band of frequency, constraints all limits on all
  * models they hold for. A set that is unstable on any model lies outside the domain.
  */
 export class TuningProblem implements Problem {
@@ -43,35 +47,22 @@ export class TuningProblem implements Problem {
   readonly levelledCount: number;
   readonly constraintCount: number;
   private readonly retuned: readonly number[];
-  private readonly kernel: SimulationKernel;
-  private readonly upsetIndices: readonly number[];
   /** Models that some limit on simulated figures holds for. */
   private readonly simulated: readonly number[];
   private readonly tightened: readonly { readonly limit: Limit; readonly bound: number }[];
-  private readonly scan: number;
 
   constructor(private readonly setup: SearchSetup) {
-    const { space, tuning, models } = setup;
+    const { space, tuning, loops: models } = setup;
     this.dimension = space.variables.length;
     this.retuned = tuning.loops.flatMap((loop, i) => (loop.role === 'retune' ? [i] : []));
-    this.levelledCount = this.retuned.length * models.length;
+    this.levelledCount = this.retuned.length * models.length * bands;
     this.tightened = tuning.limits.map((limit) => ({
       limit,
       bound: tightenLimit(limit, shareInHand),
     }));
     this.constraintCount = tuning.limits.reduce((n, l) => n + (l.nominal ? 1 : models.length), 0);
-    this.upsetIndices = tuning.upsets.map((_, u) => u);
     const everywhere = tuning.limits.some((l) => !l.nominal && needsSimulation(l.quantity));
     this.simulated = everywhere ? models.map((_, m) => m) : [0];
-    this.scan = tuning.scan;
-    this.kernel = new ScalarKernel({
-      network: tuning.network,
-      units: models.map((m) => m.unit),
-      upsets: tuning.upsets.map((u) => u.upset),
-      bands: tuning.upsets.map((u) => settlingBands(tuning, u.upset)),
-      stepsPerScan: tuning.stepsPerScan,
-      steps: tuning.steps,
-    });
   }
 
   evaluate(points: readonly Float64Array[]): readonly Evaluation[] {
@@ -79,7 +70,7 @@ export class TuningProblem implements Problem {
   }
 
   private evaluateOne(x: Float64Array): Evaluation {
-    const { space, tuning, models, speed } = this.setup;
+    const { space, tuning, loops: models, simulation, speed } = this.setup;
     const settings = internalSettings(space, settingsAt(space, x));
     const frequencies = this.analyse(settings);
     const disorder = frequencies.reduce((n, f) => n + f.stability.unstable, 0);
@@ -90,11 +81,11 @@ export class TuningProblem implements Problem {
     let at = 0;
     for (const f of frequencies) {
       for (const i of this.retuned) {
-        levelled[at] = f.loops[i]?.peakSensitivity ?? 0;
-        at += 1;
+        levelled.set(f.loops[i]?.bandSensitivities ?? none, at);
+        at += bands;
       }
     }
-    const figures = this.simulate(settings);
+    const figures = simulation.simulate(settings, this.simulated);
     const time = new Map<number, LoopTimeFigures[]>();
     this.simulated.forEach((m, k) => {
       const own = figures[k] as UpsetFigures[][];
@@ -117,58 +108,19 @@ export class TuningProblem implements Problem {
   }
 
   private analyse(settings: readonly ControllerSettings[]): FrequencyFigures[] {
-    const { tuning, models } = this.setup;
-    const scan = tuning.loops[0]?.algorithm.scan ?? this.scan;
-    const controllers = controllersOf(tuning, settings, scan);
-    return models.map((model) =>
+    const { tuning, loops: models } = this.setup;
+    const controllers = controllersOf(tuning, settings, tuning.scan);
+    return models.map((loops) =>
       analyseLoops({
-        loops: model.loops,
+        loops,
         controllers,
         noise: tuning.loops.map((loop) => loop.noise),
         spans: tuning.loops.map((loop) => loop.inputSpan),
         refine: false,
         singularValues: tuning.limitsSingularValues,
         manualCases: tuning.limitsManual,
+        bands,
       }),
     );
   }
-
-  /** Figures [simulated model][upset][loop]. */
-  private simulate(settings: readonly ControllerSettings[]): UpsetFigures[][][] {
-    const { tuning } = this.setup;
-    const controllers = controllersOf(tuning, settings, tuning.scan);
-    const flat = this.kernel.simulate([controllers], this.simulated, this.upsetIndices);
-    const count = tuning.loops.length;
-    return this.simulated.map((_, k) =>
-      tuning.upsets.map(({ upset }, u) =>
-        tuning.loops.map((__, i) => {
-          const offset = ((k * tuning.upsets.length + u) * count + i) * figureCount;
-          const stepped = upset.kind === 'setpoint' && upset.loop === i;
-          return readKernelFigures(flat, offset, stepped, tuning.scan);
-        }),
-      ),
-    );
-  }
-}
-
-/** Kernel figures of one loop in one upset, in the shape of the plain path. */
-export function readKernelFigures(
-  flat: Float64Array,
-  offset: number,
-  stepped: boolean,
-  scan: number,
-): UpsetFigures {
-  const settlingTime = flat[offset + 4] as number;
-  const peakMove = flat[offset + 6] as number;
-  return {
-    iae: flat[offset] as number,
-    itae: flat[offset + 1] as number,
-    peakDeviation: flat[offset + 2] as number,
-    overshoot: stepped ? 100 * (flat[offset + 3] as number) : null,
-    settlingTime: settlingTime === Number.POSITIVE_INFINITY ? null : settlingTime,
-    travel: flat[offset + 5] as number,
-    peakMove,
-    peakRate: peakMove / scan,
-    limited: flat[offset + 7] === 1,
-  };
 }

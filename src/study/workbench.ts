@@ -1,41 +1,11 @@
-import { pathsOf, type Response, sampleUnit } from '../responses/index.js';
-import {
-  gridDensity,
-  type SampledModel,
-  type SpeedReference,
-  type TuningCase,
-} from '../scoring/index.js';
+import type { SampledLoops } from '../frequency/index.js';
+import type { Response } from '../responses/index.js';
+import { gridDensity, type SampledModel, type TuningCase } from '../scoring/index.js';
 import type { CompiledJob } from './compiled-job.js';
 import { type Preparation, sampleVariant, tuningCaseOf } from './preparation.js';
+import { SearchSimulation } from './search-simulation.js';
 import type { SearchSetup } from './tuning-problem.js';
 import { freshModels, searchModels } from './uncertainty.js';
-
-/** The case as the search simulates it: one scan every `stride` scans of the controllers. */
-export function searchCase(tuning: TuningCase, stride: number): TuningCase {
-  if (stride === 1) return tuning;
-  return {
-    ...tuning,
-    scan: tuning.scan * stride,
-    stepsPerScan: 1,
-    steps: Math.round(tuning.steps / tuning.stepsPerScan / stride),
-  };
-}
-
-/** A model for the search: simulated at the search's step, its frequencies those of the true scan. */
-export function sampleForSearch(
-  compiled: CompiledJob,
-  tuning: TuningCase,
-  coarse: TuningCase,
-  responses: readonly Response[],
-): SampledModel {
-  const model = sampleVariant(compiled, tuning, responses, gridDensity.searching);
-  if (coarse === tuning) return model;
-  const paths = pathsOf(responses, compiled.measurementCount);
-  return {
-    loops: model.loops,
-    unit: sampleUnit(paths, compiled.sourceCount, compiled.measurementCount, coarse.scan),
-  };
-}
 
 /** Fresh models a verification draws: without a failure they say 95 % with 95 % confidence. */
 export const freshCount = 59;
@@ -43,11 +13,10 @@ export const freshCount = 59;
 /** Everything one process keeps at hand while it works on one job; built from document and preparation. */
 export class Workbench {
   readonly tuning: TuningCase;
-  readonly coarse: TuningCase;
   readonly variants: readonly (readonly Response[])[];
   private judging: readonly SampledModel[] | undefined;
   private readonly fresh = new Map<number, readonly SampledModel[]>();
-  private searching: readonly SampledModel[] | undefined;
+  private searching: readonly SampledLoops[] | undefined;
 
   constructor(
     readonly compiled: CompiledJob,
@@ -55,7 +24,6 @@ export class Workbench {
   ) {
     const { search } = compiled.job;
     this.tuning = tuningCaseOf(compiled, preparation);
-    this.coarse = searchCase(this.tuning, preparation.searchStride);
     this.variants = searchModels(compiled.uncertain, search.models, search.seed);
   }
 
@@ -87,18 +55,18 @@ export class Workbench {
 
   /** @param extra  models that broke a limit in verification and join the search */
   searchSetup(extra: readonly (readonly Response[])[] = []): SearchSetup {
-    const sample = (v: readonly Response[]): SampledModel =>
-      sampleForSearch(this.compiled, this.tuning, this.coarse, v);
+    const { compiled, tuning, preparation } = this;
+    const sample = (v: readonly Response[]): SampledLoops =>
+      sampleVariant(compiled, tuning, v, gridDensity.searching).loops;
     this.searching ??= this.variants.map(sample);
+    const { searchStride, searchSpeed } = preparation;
+    const variants = [...this.variants, ...extra];
     return {
-      space: this.compiled.space,
-      tuning: this.coarse,
-      models: [...this.searching, ...extra.map(sample)],
-      speed: this.searchSpeed,
+      space: compiled.space,
+      tuning,
+      loops: [...this.searching, ...extra.map(sample)],
+      simulation: new SearchSimulation(compiled, tuning, searchStride, variants),
+      speed: searchSpeed,
     };
-  }
-
-  private get searchSpeed(): SpeedReference {
-    return this.preparation.searchSpeed;
   }
 }

@@ -1,0 +1,47 @@
+import {
+  type ControllerAlgorithm,
+  type ControllerSettings,
+  type DiscreteController,
+  discretizeController,
+} from './algorithm.js';
+
+/** Mean delay of y += (1 - decay)(x - y) run every `step`, s. */
+const delayOf = (decay: number, step: number): number => (step * decay) / (1 - decay);
+
+/** The decay that has a mean delay at a step; none where the delay is not to be had. */
+const decayFor = (delay: number, step: number): number => (delay > 0 ? delay / (step + delay) : 0);
+
+/**
+ * A controller run once every `longStep` that acts like the same controller run at its scan.
+ *
+ * Every term keeps the mean delay it has at the scan: lags by their mean delay, the derivative less
+ * the longer difference it is taken over, and the integral, which a backward sum runs ahead by half
+ * a step, by the proportional action that this amounts to. What remains is the hold, which is the
+ * same for all terms; it is for the caller to make good. The error is of second order in the step.
+ */
+export function discretizeForLongStep(
+  settings: ControllerSettings,
+  algorithm: ControllerAlgorithm,
+  longStep: number,
+): DiscreteController {
+  const { scan } = algorithm;
+  const atScan = discretizeController(settings, algorithm);
+  if (longStep <= scan) return atScan;
+  const filterDecay = decayFor(delayOf(atScan.filterDecay, scan), longStep);
+  const derivativeDelay = delayOf(atScan.derivativeDecay, scan) - (longStep - scan) / 2;
+  const derivativeDecay = atScan.kd === 0 ? 0 : decayFor(derivativeDelay, longStep);
+  const ahead = (settings.kc * (longStep - scan)) / (2 * settings.ti);
+  // A gain smaller than what the integral runs ahead would turn its sign; such a loop is all integral.
+  const excess = Math.abs(ahead) < Math.abs(atScan.kp) ? ahead : 0;
+  const kp = atScan.kp - excess;
+  return {
+    kp,
+    ki: (settings.kc * longStep) / settings.ti,
+    kd: atScan.kd === 0 ? 0 : (settings.kc * settings.td * (1 - derivativeDecay)) / longStep,
+    derivativeDecay,
+    filterDecay,
+    filterOrder: atScan.filterOrder,
+    setpointWeight: kp === 0 ? 0 : (atScan.kp * atScan.setpointWeight - excess) / kp,
+    derivativeSetpointWeight: atScan.derivativeSetpointWeight,
+  };
+}

@@ -1,0 +1,301 @@
+import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
+import type { SampledUnit } from '../responses/index.js';
+import { advanceWide, type FlatUnit, flattenUnit, wideOrder } from './flat-unit.js';
+import { figureCount, type SimulationKernel } from './kernel.js';
+import {
+  countSample,
+  loadLoop,
+  OUTPUT,
+  OWN_SETPOINT,
+  reportLoop,
+  restLoop,
+  SLOTS,
+  scanLoop,
+} from './loop-bank.js';
+import type { Upset } from './upset.js';
+
+/** What the kernel is built for: a unit split into quick loops and all the rest. */
+export interface TwoRateSetup {
+  readonly network: LoopNetwork;
+  /** By loop: true where it runs at every scan on its own response, all others at every `stride` scans. */
+  readonly quick: readonly boolean[];
+  /** Models without the quick loops' own responses, sampled at `stride` scans. */
+  readonly units: readonly SampledUnit[];
+  /** The quick loops' own responses alone, sampled at the scan; first order only. */
+  readonly ownUnits: readonly SampledUnit[];
+  readonly stride: number;
+  /** Long steps of every upset. */
+  readonly steps: number;
+  readonly upsets: readonly Upset[];
+  /** PV deviation that counts as settled, [upset][loop]. */
+  readonly bands: readonly (readonly number[])[];
+  /** s by which a loop's response to its own setpoint comes early, to be made good in its IAE. */
+  readonly early: readonly number[];
+}
+
+/**
+ * A kernel for units whose loops live on two time scales: flow loops of seconds inside temperature
+ * loops of minutes.
+ *
+ * Quick loops scan as they do, each on its own response; to everything else they show the mean of
+ * their output over a long step. All other loops scan once a long step. The longer hold of these is
+ * made good by dead times shortened by half of what it adds, so that the error is of second order in
+ * the long step. The caller has to show that it is small.
+ */
+export class TwoRateKernel implements SimulationKernel {
+  private readonly flat: readonly FlatUnit[];
+  private readonly own: readonly (readonly OwnResponse[])[];
+  private readonly bank: Float64Array;
+  private readonly values: Float64Array;
+  private readonly states: Float64Array;
+  private readonly wideStates: Float64Array;
+  private readonly scratch: Float64Array;
+  private readonly history: Float64Array;
+  private readonly lead: number;
+  private readonly rowLength: number;
+  private readonly automatic: Uint8Array;
+  private readonly slowOrder: readonly number[];
+  private readonly quickLoops: readonly number[];
+  private readonly bases: Int32Array;
+
+  constructor(private readonly setup: TwoRateSetup) {
+    const { network, units, ownUnits, quick, steps, stride } = setup;
+    const count = network.loops.length;
+    const first = units[0];
+    this.flat = units.map((unit) => flattenUnit(unit, network));
+    this.quickLoops = network.order.filter((i) => quick[i]);
+    this.slowOrder = network.order.filter((i) => !quick[i]);
+    this.own = ownUnits.map((unit) =>
+      this.quickLoops.map((i) => new OwnResponse(unit, network.loops[i] as Loop, steps * stride)),
+    );
+    this.bank = new Float64Array(count * SLOTS);
+    this.values = new Float64Array(first?.measurementCount ?? 0);
+    this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.decay.length)));
+    this.wideStates = new Float64Array(Math.max(1, ...this.flat.map(wideOrder)));
+    this.scratch = new Float64Array(
+      Math.max(1, ...this.flat.flatMap((f) => f.wide.map((w) => w.order))),
+    );
+    this.lead = Math.max(1, ...this.flat.map((f) => f.lead));
+    this.rowLength = this.lead + steps + 1;
+    this.history = new Float64Array((first?.sourceCount ?? 0) * this.rowLength);
+    this.automatic = new Uint8Array(count);
+    this.bases = new Int32Array(Math.max(1, ...this.flat.map((f) => f.inputSection.length)));
+  }
+
+  simulate(
+    candidates: readonly (readonly DiscreteController[])[],
+    units: readonly number[],
+    upsets: readonly number[],
+  ): Float64Array {
+    const width = this.setup.network.loops.length * figureCount;
+    const out = new Float64Array(candidates.length * units.length * upsets.length * width);
+    let offset = 0;
+    for (const controllers of candidates) {
+      this.loadControllers(controllers);
+      for (const unit of units) {
+        for (const upset of upsets) {
+          this.run(unit, upset);
+          this.report(upset, out, offset);
+          offset += width;
+        }
+      }
+    }
+    return out;
+  }
+
+  private scanOf(loop: number): number {
+    const { quick, units, stride } = this.setup;
+    const step = (units[0] as SampledUnit).step;
+    return quick[loop] ? step / stride : step;
+  }
+
+  private loadControllers(controllers: readonly DiscreteController[]): void {
+    this.setup.network.loops.forEach((loop, i) => {
+      loadLoop(this.bank, i * SLOTS, loop, controllers[i] as DiscreteController, this.scanOf(i));
+    });
+  }
+
+  private run(unit: number, upsetIndex: number): void {
+    const { setup, bank, values, history, rowLength, lead, automatic, states } = this;
+    const { network, upsets, bands, stride, steps } = setup;
+    const { loops } = network;
+    const flat = this.flat[unit] as FlatUnit;
+    const upset = upsets[upsetIndex] as Upset;
+    const own = this.own[unit] as readonly OwnResponse[];
+    history.fill(0);
+    states.fill(0);
+    this.wideStates.fill(0);
+    for (const response of own) response.rest();
+    loops.forEach((loop, i) => {
+      restLoop(bank, i * SLOTS, i, upset, bands[upsetIndex]?.[i] as number);
+      automatic[i] = loop.automatic && !upset.opened.includes(i) ? 1 : 0;
+    });
+    for (let i = 0; i < flat.inputSection.length; i += 1) {
+      this.bases[i] =
+        (flat.inputSource[i] as number) * rowLength + lead - 1 - (flat.inputDelay[i] as number);
+    }
+    const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
+
+    for (let k = 0; k <= steps; k += 1) {
+      this.advance(flat, k);
+      if (pushed >= 0) history[pushed * rowLength + lead + k] = upset.size;
+      for (let o = 0; o < this.slowOrder.length; o += 1) {
+        const i = this.slowOrder[o] as number;
+        const loop = loops[i] as Loop;
+        const at = i * SLOTS;
+        const setpoint = this.setpointOf(i);
+        const measured = values[loop.measurement] as number;
+        if (automatic[i] === 1) {
+          const inner = 'loop' in loop.drives ? loop.drives.loop * SLOTS : -1;
+          scanLoop(bank, at, inner, setpoint, measured);
+        }
+        if ('source' in loop.drives)
+          this.record(loop.drives.source, k, pushed, upset, bank[at + OUTPUT] as number);
+        if (loop.setpointSource >= 0)
+          history[loop.setpointSource * rowLength + lead + k] = setpoint;
+        countSample(bank, at, k, setpoint, measured, k === steps);
+      }
+      for (let q = 0; q < this.quickLoops.length; q += 1) {
+        const i = this.quickLoops[q] as number;
+        const loop = loops[i] as Loop;
+        const response = own[q] as OwnResponse;
+        const setpoint = this.setpointOf(i);
+        const load = response.source === pushed ? upset.size : 0;
+        const base = values[loop.measurement] as number;
+        const mean = this.runQuick(i, response, k * stride, setpoint, base, load, k === steps);
+        this.record(response.source, k, pushed, upset, mean);
+        if (loop.setpointSource >= 0)
+          history[loop.setpointSource * rowLength + lead + k] = setpoint;
+      }
+    }
+  }
+
+  private setpointOf(i: number): number {
+    const outer = this.setup.network.outerOf[i] as number;
+    return outer >= 0 && this.automatic[outer] === 1
+      ? (this.bank[outer * SLOTS + OUTPUT] as number)
+      : (this.bank[i * SLOTS + OWN_SETPOINT] as number);
+  }
+
+  private record(source: number, k: number, pushed: number, upset: Upset, output: number): void {
+    const load = source === pushed ? upset.size : 0;
+    this.history[source * this.rowLength + this.lead + k] = load + output;
+  }
+
+  /** One long step of a quick loop; the mean of its output. At the horizon only one scan is left. */
+  private runQuick(
+    i: number,
+    response: OwnResponse,
+    from: number,
+    setpoint: number,
+    base: number,
+    load: number,
+    last: boolean,
+  ): number {
+    const { bank } = this;
+    const at = i * SLOTS;
+    const scans = last ? 1 : this.setup.stride;
+    const runs = this.automatic[i] === 1;
+    let sum = 0;
+    for (let j = 0; j < scans; j += 1) {
+      const measured = base + response.read();
+      if (runs) scanLoop(bank, at, -1, setpoint, measured);
+      countSample(bank, at, from + j, setpoint, measured, last);
+      const output = bank[at + OUTPUT] as number;
+      sum += output;
+      response.advance(from + j, output + load);
+    }
+    return sum / scans;
+  }
+
+  /** From long step k - 1 to k, and the PVs there. */
+  private advance(flat: FlatUnit, k: number): void {
+    const { values, states, history, bases } = this;
+    const { decay, measurement, inputSection, inputNow, inputBefore } = flat;
+    for (let m = 0; m < values.length; m += 1) values[m] = 0;
+    for (let s = 0; s < decay.length; s += 1)
+      states[s] = (states[s] as number) * (decay[s] as number);
+    for (let i = 0; i < inputSection.length; i += 1) {
+      const at = (bases[i] as number) + k;
+      const s = inputSection[i] as number;
+      states[s] =
+        (states[s] as number) +
+        (inputNow[i] as number) * (history[at] as number) +
+        (inputBefore[i] as number) * (history[at - 1] as number);
+    }
+    for (let s = 0; s < decay.length; s += 1) {
+      const m = measurement[s] as number;
+      values[m] = (values[m] as number) + (states[s] as number);
+    }
+    if (flat.wide.length > 0) {
+      const { wideStates, scratch, rowLength, lead } = this;
+      advanceWide(flat.wide, wideStates, scratch, history, rowLength, lead, k, values);
+    }
+  }
+
+  private report(upsetIndex: number, out: Float64Array, offset: number): void {
+    const { network, quick, stride, steps, upsets, early } = this.setup;
+    const upset = upsets[upsetIndex] as Upset;
+    for (let i = 0; i < network.loops.length; i += 1) {
+      const to = offset + i * figureCount;
+      const step = this.scanOf(i);
+      reportLoop(this.bank, i * SLOTS, out, to, step, quick[i] ? steps * stride : steps);
+      if (upset.kind === 'setpoint' && upset.loop === i && !quick[i]) {
+        out[to] = (out[to] as number) + (early[i] as number) * Math.abs(upset.size);
+      }
+    }
+  }
+}
+
+/** A quick loop's own response at the scan: first-order sections behind their dead times. */
+class OwnResponse {
+  readonly source: number;
+  private readonly decay: Float64Array;
+  private readonly now: Float64Array;
+  private readonly before: Float64Array;
+  private readonly delay: Int32Array;
+  private readonly states: Float64Array;
+  private readonly history: Float64Array;
+  private readonly lead: number;
+
+  constructor(unit: SampledUnit, loop: Loop, scans: number) {
+    this.source = 'source' in loop.drives ? loop.drives.source : -1;
+    const channels = unit.channels.filter(
+      (c) => c.source === this.source && c.measurement === loop.measurement,
+    );
+    this.decay = Float64Array.from(channels, (c) => c.transition[0] as number);
+    this.now = Float64Array.from(channels, (c) => (c.now[0] as number) * (c.output[0] as number));
+    this.before = Float64Array.from(
+      channels,
+      (c) => (c.before[0] as number) * (c.output[0] as number),
+    );
+    this.delay = Int32Array.from(channels, (c) => c.delay);
+    this.states = new Float64Array(channels.length);
+    this.lead = Math.max(1, ...this.delay) + 1;
+    this.history = new Float64Array(this.lead + scans + 1);
+  }
+
+  rest(): void {
+    this.states.fill(0);
+    this.history.fill(0);
+  }
+
+  read(): number {
+    let sum = 0;
+    for (let s = 0; s < this.states.length; s += 1) sum += this.states[s] as number;
+    return sum;
+  }
+
+  /** The input is held from scan k to the next. */
+  advance(k: number, input: number): void {
+    const { states, decay, now, before, delay, history, lead } = this;
+    history[lead + k] = input;
+    for (let s = 0; s < states.length; s += 1) {
+      const at = lead + k - (delay[s] as number);
+      states[s] =
+        (states[s] as number) * (decay[s] as number) +
+        (now[s] as number) * (history[at] as number) +
+        (before[s] as number) * (history[at - 1] as number);
+    }
+  }
+}

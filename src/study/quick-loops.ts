@@ -1,0 +1,99 @@
+import type { Loop } from '../controllers/index.js';
+import { isUnstableFactor, type UnitPath } from '../responses/index.js';
+import type { CompiledJob } from './compiled-job.js';
+import { lagsOf } from './horizon.js';
+
+/** A loop whose own response is over within this many long steps has to be simulated at its scan. */
+const quickSteps = 12;
+
+/** The source a loop moves in the end, through the loops it drives. */
+function baseSource(loops: readonly Loop[], index: number): number {
+  for (let at = index; ; ) {
+    const { drives } = loops[at] as Loop;
+    if ('source' in drives) return drives.source;
+    at = drives.loop;
+  }
+}
+
+const ownPaths = (paths: readonly UnitPath[], loop: Loop, source: number): UnitPath[] =>
+  paths.filter((p) => p.source === source && p.measurement === loop.measurement);
+
+/**
+ * True where a loop has to run at its own scan when the rest of the unit takes long steps: an inner
+ * loop, or one whose own response is over within a few of them.
+ */
+export function isQuick(compiled: CompiledJob, index: number, longStep: number): boolean {
+  const { network, paths } = compiled;
+  const loop = network.loops[index] as Loop;
+  if (!loop.automatic || !('source' in loop.drives)) return false;
+  const own = ownPaths(paths, loop, loop.drives.source);
+  if (own.some((p) => p.model.factors.some(isUnstableFactor))) return false;
+  const time = own.reduce((most, p) => Math.max(most, p.model.deadTime + lagsOf(p.model)), 0);
+  return (network.outerOf[index] as number) >= 0 || time < quickSteps * longStep;
+}
+
+/** True where a loop's own response can be simulated apart: real lags side by side, nothing direct. */
+export function standsApart(compiled: CompiledJob, index: number): boolean {
+  const loop = compiled.network.loops[index] as Loop;
+  if (!('source' in loop.drives)) return false;
+  return ownPaths(compiled.paths, loop, loop.drives.source).every(
+    ({ model }) =>
+      model.factors.every((f) => f.length === 2) &&
+      model.numerator.length <= model.factors.length &&
+      separated(model.factors),
+  );
+}
+
+/** Lags far enough apart to stand side by side, with room for what a spread does to them. */
+function separated(factors: readonly Float64Array[]): boolean {
+  const times = factors.map((f) => (f[1] as number) / (f[0] as number)).sort((a, b) => a - b);
+  return times.every((t, i) => i === 0 || t > 1.06 * (times[i - 1] as number));
+}
+
+/** A unit's paths dealt to the two rates. */
+export interface SplitPaths {
+  /** Quick loops' own responses. */
+  readonly own: UnitPath[];
+  /** Everything else; what loops move comes earlier by up to `shift`. */
+  readonly rest: UnitPath[];
+  /** s by which each loop's own response comes early; 0 for a quick one. */
+  readonly early: number[];
+}
+
+/**
+ * @param shift  s that a longer hold adds to every loop on average, taken off the dead times where
+ *   there is as much
+ */
+export function splitPaths(
+  paths: readonly UnitPath[],
+  loops: readonly Loop[],
+  quick: readonly boolean[],
+  shift: number,
+): SplitPaths {
+  const moved = new Set(
+    loops.flatMap((l) => (l.automatic && 'source' in l.drives ? [l.drives.source] : [])),
+  );
+  const isOwn = (p: UnitPath): boolean =>
+    loops.some(
+      (l, i) =>
+        quick[i] &&
+        'source' in l.drives &&
+        l.drives.source === p.source &&
+        l.measurement === p.measurement,
+    );
+  const shorten = (deadTime: number): number => Math.max(0, deadTime - shift);
+  const rest = paths
+    .filter((p) => !isOwn(p))
+    .map((p) =>
+      moved.has(p.source)
+        ? { ...p, model: { ...p.model, deadTime: shorten(p.model.deadTime) } }
+        : p,
+    );
+  const early = loops.map((loop, i) => {
+    if (quick[i]) return 0;
+    const own = ownPaths(paths, loop, baseSource(loops, i));
+    const least = own.reduce((m, p) => Math.min(m, p.model.deadTime), Number.POSITIVE_INFINITY);
+    return Number.isFinite(least) ? Math.min(shift, least) : 0;
+  });
+  return { own: paths.filter(isOwn), rest, early };
+}

@@ -1,0 +1,112 @@
+import { type ControllerSettings, discretizeForLongStep } from '../controllers/index.js';
+import { pathsOf, type Response, sampleUnit, type UnitPath } from '../responses/index.js';
+import {
+  type LoopCase,
+  settlingBands,
+  type TuningCase,
+  type UpsetFigures,
+} from '../scoring/index.js';
+import {
+  figureCount,
+  ScalarKernel,
+  type SimulationKernel,
+  TwoRateKernel,
+} from '../simulation/index.js';
+import type { CompiledJob } from './compiled-job.js';
+import { isQuick, splitPaths } from './quick-loops.js';
+
+/**
+ * The simulation a search runs on: at the true scan, or on two rates where every `stride` scans are
+ * enough for the slow part of the unit.
+ */
+export class SearchSimulation {
+  private readonly kernel: SimulationKernel;
+  /** s between scans of each loop, as simulated. */
+  private readonly scans: readonly number[];
+  private readonly upsetIndices: readonly number[];
+
+  /** @param variants  models of the unit, nominal first */
+  constructor(
+    compiled: CompiledJob,
+    private readonly tuning: TuningCase,
+    stride: number,
+    variants: readonly (readonly Response[])[],
+  ) {
+    const { sourceCount, measurementCount } = compiled;
+    const paths = variants.map((v) => pathsOf(v, measurementCount));
+    const sample = (p: readonly UnitPath[], step: number) =>
+      sampleUnit(p, sourceCount, measurementCount, step);
+    const shared = {
+      network: tuning.network,
+      upsets: tuning.upsets.map((u) => u.upset),
+      bands: tuning.upsets.map((u) => settlingBands(tuning, u.upset)),
+    };
+    this.upsetIndices = tuning.upsets.map((_, u) => u);
+    if (stride === 1) {
+      const { stepsPerScan, steps, scan } = tuning;
+      this.scans = tuning.loops.map(() => scan);
+      const units = paths.map((p) => sample(p, scan / stepsPerScan));
+      this.kernel = new ScalarKernel({ ...shared, units, stepsPerScan, steps });
+      return;
+    }
+    const long = tuning.scan * stride;
+    const quick = tuning.network.loops.map((_, i) => isQuick(compiled, i, long));
+    this.scans = quick.map((q) => (q ? tuning.scan : long));
+    const split = paths.map((p) =>
+      splitPaths(p, tuning.network.loops, quick, (long - tuning.scan) / 2),
+    );
+    this.kernel = new TwoRateKernel({
+      ...shared,
+      quick,
+      units: split.map((s) => sample(s.rest, long)),
+      ownUnits: split.map((s) => sample(s.own, tuning.scan)),
+      stride,
+      steps: Math.floor(tuning.steps / stride),
+      early: split[0]?.early ?? [],
+    });
+  }
+
+  /**
+   * Figures [model][upset][loop] of one tuning set.
+   * @param models  which of the models to run
+   */
+  simulate(settings: readonly ControllerSettings[], models: readonly number[]): UpsetFigures[][][] {
+    const { tuning, scans } = this;
+    const controllers = settings.map((s, i) =>
+      discretizeForLongStep(s, (tuning.loops[i] as LoopCase).algorithm, scans[i] as number),
+    );
+    const flat = this.kernel.simulate([controllers], models, this.upsetIndices);
+    const count = tuning.loops.length;
+    return models.map((_, k) =>
+      tuning.upsets.map(({ upset }, u) =>
+        tuning.loops.map((__, i) => {
+          const offset = ((k * tuning.upsets.length + u) * count + i) * figureCount;
+          const stepped = upset.kind === 'setpoint' && upset.loop === i;
+          return readKernelFigures(flat, offset, stepped, scans[i] as number);
+        }),
+      ),
+    );
+  }
+}
+
+/** Kernel figures of one loop in one upset, in the shape of the plain path. */
+function readKernelFigures(
+  flat: Float64Array,
+  offset: number,
+  stepped: boolean,
+  scan: number,
+): UpsetFigures {
+  const settlingTime = flat[offset + 4] as number;
+  const peakMove = flat[offset + 6] as number;
+  return {
+    iae: flat[offset] as number,
+    itae: flat[offset + 1] as number,
+    peakDeviation: flat[offset + 2] as number,
+    overshoot: stepped ? 100 * (flat[offset + 3] as number) : null,
+    settlingTime: settlingTime === Number.POSITIVE_INFINITY ? null : settlingTime,
+    travel: flat[offset + 5] as number,
+    peakMove,
+    peakRate: peakMove / scan,
+    limited: flat[offset + 7] === 1,
+  };
+}
