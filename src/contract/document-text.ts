@@ -19,9 +19,10 @@ export function documentSizeFault(bytes: number): Fault | undefined {
 /** The JSON value of a document's bytes or text, size and encoding judged first. */
 export function readDocumentText(source: string | Uint8Array): JsonReading {
   const size = documentSizeFault(typeof source === 'string' ? byteCount(source) : source.length);
-  if (size !== undefined) return { ok: false, faults: [size] };
+  if (size !== undefined) return { ok: false, faults: [size], more: 0 };
   const text = typeof source === 'string' ? source : decoded(source);
-  if (text === undefined || text.includes('\u0000')) return { ok: false, faults: [notText] };
+  if (text === undefined || text.includes('\u0000'))
+    return { ok: false, faults: [notText], more: 0 };
   return readJson(text.startsWith('\ufeff') ? text.slice(1) : text);
 }
 

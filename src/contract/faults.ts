@@ -54,6 +54,9 @@ export const faultCodes = {
   NOT_YET_AVAILABLE: 'a part of the format that this release cannot compute',
 } as const;
 
+/** How many faults one reading lists; the others are counted. */
+export const mostFaults = 200;
+
 export type FaultCode = keyof typeof faultCodes;
 
 /** One thing wrong with a document: where, the value found there, what is wrong, what is allowed. */

@@ -1,11 +1,8 @@
 import { excerpt, pathText, printable, shortened } from './excerpt.js';
-import type { Fault, FaultCode, Warning } from './faults.js';
+import { type Fault, type FaultCode, mostFaults, type Warning } from './faults.js';
 
 /** A place in a document, from its root. */
 export type Path = readonly PropertyKey[];
-
-/** How many faults one reading lists. */
-const mostFaults = 200;
 
 /**
  * What a reading of one document has found so far. Values and entry names in the messages are
@@ -14,7 +11,7 @@ const mostFaults = 200;
 export class Findings {
   readonly faults: Fault[] = [];
   readonly warnings: Warning[] = [];
-  /** Faults beyond those listed. */
+  /** Faults beyond those listed, as far as they were counted. */
   more = 0;
 
   constructor(private readonly written: unknown) {}

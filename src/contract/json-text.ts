@@ -1,5 +1,5 @@
 import { excerpt, pathText, shortened } from './excerpt.js';
-import type { Fault, FaultCode } from './faults.js';
+import { type Fault, type FaultCode, mostFaults } from './faults.js';
 
 /** Nesting beyond this is no document of ours. */
 const deepest = 32;
@@ -8,7 +8,12 @@ const mostValues = 1_000_000;
 
 export type JsonReading =
   | { readonly ok: true; readonly value: unknown }
-  | { readonly ok: false; readonly faults: readonly Fault[] };
+  | {
+      readonly ok: false;
+      readonly faults: readonly Fault[];
+      /** Faults beyond those listed. */
+      readonly more: number;
+    };
 
 /**
  * The value a JSON text stands for, or where and why it stands for none.
@@ -21,11 +26,12 @@ export function readJson(text: string): JsonReading {
   const reader = new JsonReader(text);
   try {
     const value = reader.document();
-    if (reader.faults.length > 0) return { ok: false, faults: reader.faults };
+    const { faults, more } = reader;
+    if (faults.length > 0) return { ok: false, faults, more };
     return { ok: true, value };
   } catch (error) {
     if (!(error instanceof Unreadable)) throw error;
-    return { ok: false, faults: [...reader.faults, error.fault] };
+    return { ok: false, faults: [...reader.faults, error.fault], more: reader.more };
   }
 }
 
@@ -50,9 +56,12 @@ const backslash = 0x5c;
 
 class JsonReader {
   readonly faults: Fault[] = [];
+  more = 0;
   private at = 0;
   private values = 0;
   private readonly path: (string | number)[] = [];
+  /** The line that the latest place asked for lies in, so that places cost one pass together. */
+  private line = { number: 1, start: 0 };
 
   constructor(private readonly text: string) {}
 
@@ -109,17 +118,20 @@ class JsonReader {
   }
 
   private judgeKey(object: object, key: string, start: number): void {
+    const again = key !== reserved && Object.hasOwn(object, key);
+    if (key !== reserved && !again) return;
+    if (this.faults.length >= mostFaults) {
+      this.more += 1;
+      return;
+    }
     const place = this.place(start);
-    if (key === reserved) {
-      const problem = `${place}: this key is reserved`;
-      this.faults.push(
-        this.fault('KEY_RESERVED', problem, { value: excerpt(key), allowed: 'any other key' }),
-      );
-    } else if (Object.hasOwn(object, key)) {
+    const value = excerpt(key);
+    if (again) {
       const problem = `${place}: the object has this key already`;
-      this.faults.push(
-        this.fault('KEY_DUPLICATE', problem, { value: excerpt(key), allowed: 'each key once' }),
-      );
+      this.faults.push(this.fault('KEY_DUPLICATE', problem, { value, allowed: 'each key once' }));
+    } else {
+      const problem = `${place}: this key is reserved`;
+      this.faults.push(this.fault('KEY_RESERVED', problem, { value, allowed: 'any other key' }));
     }
   }
 
@@ -224,8 +236,13 @@ class JsonReader {
   }
 
   private place(at = this.at): string {
-    const before = this.text.slice(0, at).split('\n');
-    return `line ${before.length}, column ${(before.at(-1)?.length ?? 0) + 1}`;
+    if (at < this.line.start) this.line = { number: 1, start: 0 };
+    for (;;) {
+      const end = this.text.indexOf('\n', this.line.start);
+      if (end === -1 || end >= at) break;
+      this.line = { number: this.line.number + 1, start: end + 1 };
+    }
+    return `line ${this.line.number}, column ${at - this.line.start + 1}`;
   }
 
   private invalid(problem: string, allowed: string): Unreadable {

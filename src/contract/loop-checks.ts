@@ -3,7 +3,7 @@ import type { Findings } from './findings.js';
 import { type LoopsByTag, loopsByTag, startsOf } from './loop-paths.js';
 import type { LoopAsWritten } from './loops.js';
 import { integratorsOf, isZero, sizeKey } from './model-facts.js';
-import { movingLinks, pointOfTag, ResponseGraph } from './response-graph.js';
+import { type Link, movingLinks, pointOfTag, ResponseGraph } from './response-graph.js';
 import { ringsOf } from './rings.js';
 
 type LoopEntry = Entry<LoopAsWritten>;
@@ -154,7 +154,7 @@ function isResolved(loop: LoopAsWritten, draft: Draft, loops: LoopsByTag): boole
 
 function checkUnmoved(
   loop: LoopEntry,
-  still: ResponseGraph['links'],
+  still: readonly Link[],
   nominal: boolean,
   findings: Findings,
 ): void {
@@ -173,7 +173,7 @@ function checkUnmoved(
   }
 }
 
-function checkProportional(loop: LoopEntry, own: ResponseGraph['links'], findings: Findings): void {
+function checkProportional(loop: LoopEntry, own: readonly Link[], findings: Findings): void {
   if (loop.value.controller.terms !== 'PD') return;
   if (own.some((link) => integratorsOf(link.value.model) > 0)) return;
   const place = [...loop.path, 'controller', 'terms'];

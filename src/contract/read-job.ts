@@ -13,7 +13,7 @@ import { checkScans, withSnappedScans } from './scan-checks.js';
 import { checkSettings } from './setting-checks.js';
 import { checkTags } from './tag-checks.js';
 
-/** A document refused: its faults, and how many more there are than listed. */
+/** A document refused: its faults, and how many more there are at least than listed. */
 export interface Refused {
   readonly ok: false;
   readonly faults: readonly Fault[];
@@ -46,7 +46,7 @@ const checks: readonly ((draft: Draft, findings: Findings) => void)[] = [
  */
 export function readJob(source: string | Uint8Array): JobRead | Refused {
   const reading = readDocumentText(source);
-  if (!reading.ok) return { ok: false, faults: reading.faults, more: 0 };
+  if (!reading.ok) return reading;
   return judgeJob(reading.value);
 }
 

@@ -24,7 +24,7 @@ export function readSettings(
   job: JobDocument,
 ): SettingsRead | Refused {
   const reading = readDocumentText(source);
-  if (!reading.ok) return { ok: false, faults: reading.faults, more: 0 };
+  if (!reading.ok) return reading;
   const written = reading.value;
   const findings = new Findings(written);
   const wrapped = isWrapped(written, job);

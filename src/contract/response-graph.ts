@@ -21,58 +21,63 @@ export function pairText(response: Pick<ResponseDocument, 'from' | 'to'>): strin
 
 export type Link = Entry<ResponseDocument>;
 
+/** One response with the points it joins. */
+interface Step {
+  readonly link: Link;
+  readonly start: Point;
+  readonly end: Point;
+}
+
 /** The responses of a unit as a graph of points. */
 export class ResponseGraph {
-  private readonly leaving = new Map<Point, Link[]>();
-  private readonly arriving = new Map<Point, Link[]>();
+  private readonly steps: readonly Step[];
+  private readonly ahead = new Map<Point, Point[]>();
+  private readonly behind = new Map<Point, Point[]>();
 
-  constructor(readonly links: readonly Link[]) {
-    for (const link of links) {
-      append(this.leaving, pointOf(link.value.from), link);
-      append(this.arriving, pointOfTag(link.value.to), link);
+  constructor(links: readonly Link[]) {
+    this.steps = links.map((link) => {
+      return { link, start: pointOf(link.value.from), end: pointOfTag(link.value.to) };
+    });
+    for (const { start, end } of this.steps) {
+      append(this.ahead, start, end);
+      append(this.behind, end, start);
     }
-  }
-
-  from(point: Point): readonly Link[] {
-    return this.leaving.get(point) ?? [];
-  }
-
-  to(point: Point): readonly Link[] {
-    return this.arriving.get(point) ?? [];
   }
 
   /** The responses that lie on some way from any of the starts to the goal. */
   between(starts: readonly Point[], goal: Point): readonly Link[] {
-    const ahead = this.reached(starts, (point) =>
-      this.from(point).map((l) => pointOfTag(l.value.to)),
-    );
-    const behind = this.reached([goal], (point) =>
-      this.to(point).map((l) => pointOf(l.value.from)),
-    );
-    return this.links.filter(
-      ({ value }) => ahead.has(pointOf(value.from)) && behind.has(pointOfTag(value.to)),
-    );
+    return this.stepsBetween(starts, goal).map(({ link }) => link);
   }
 
   /** The responses of the only way from start to goal; undefined where there is none or several. */
   onlyWay(start: Point, goal: Point): readonly Link[] | undefined {
-    const on = this.between([start], goal);
+    const on = this.stepsBetween([start], goal);
     const way: Link[] = [];
     for (let point = start; point !== goal; ) {
-      const steps = on.filter((link) => pointOf(link.value.from) === point);
+      const steps = on.filter((step) => step.start === point);
       const [step] = steps;
-      if (step === undefined || steps.length > 1 || way.includes(step)) return undefined;
-      way.push(step);
-      point = pointOfTag(step.value.to);
+      if (step === undefined || steps.length > 1 || way.includes(step.link)) return undefined;
+      way.push(step.link);
+      point = step.end;
     }
     return way;
   }
 
-  private reached(starts: readonly Point[], next: (point: Point) => Point[]): ReadonlySet<Point> {
-    const seen = new Set(starts);
-    for (const point of seen) for (const other of next(point)) seen.add(other);
-    return seen;
+  private stepsBetween(starts: readonly Point[], goal: Point): readonly Step[] {
+    const ahead = reached(starts, this.ahead);
+    const behind = reached([goal], this.behind);
+    return this.steps.filter(({ start, end }) => ahead.has(start) && behind.has(end));
   }
+}
+
+/** The starts and every point that steps lead to from them. */
+function reached(
+  starts: readonly Point[],
+  next: ReadonlyMap<Point, readonly Point[]>,
+): ReadonlySet<Point> {
+  const seen = new Set(starts);
+  for (const point of seen) for (const other of next.get(point) ?? []) seen.add(other);
+  return seen;
 }
 
 /** Responses that move what they lead to. */

@@ -32,9 +32,13 @@ export function keyed<const Shape extends z.core.$ZodLooseShape>(shape: Shape) {
   });
 }
 
+/** A list is judged no further once its entries have shown so many faults. */
+const mostFaultsOfList = 1000;
+
 /**
  * A list whose length is judged before its entries are, so that a list far too long costs one
- * fault and not one for each entry.
+ * fault and not one for each entry. A list of faulty entries is judged up to a point only, so that
+ * a hostile one costs no more than an honest one.
  */
 export function listOf<Item extends z.ZodType>(
   item: Item,
@@ -48,9 +52,19 @@ export function listOf<Item extends z.ZodType>(
       refuse(context, { code: 'LIST_LENGTH', problem, allowed });
       return z.NEVER;
     }
-    return value;
+    return Array.isArray(value) ? value.slice(0, judgedEntries(value, item)) : value;
   }, z.array(item).min(least).max(most));
   return judged as unknown as z.ZodType<z.output<Item>[], z.input<Item>[]>;
+}
+
+/** How many entries of a list to judge: all, or as many as show that it is refused anyway. */
+function judgedEntries(list: readonly unknown[], item: z.ZodType): number {
+  let faults = 0;
+  for (const [index, entry] of list.entries()) {
+    faults += item.safeParse(entry).error?.issues.length ?? 0;
+    if (faults > mostFaultsOfList) return index + 1;
+  }
+  return list.length;
 }
 
 const largest = 1e60;

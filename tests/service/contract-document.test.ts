@@ -230,6 +230,56 @@ describe('A job document', () => {
     expect(refusal.more).toBe(3 * 300 - 200);
   });
 
+  it.each([
+    ['of empty responses', () => ({})],
+    ['of responses that are numbers', () => 0],
+    ['of responses with a dozen unknown keys', () => ({ ...Array(12).fill(1) })],
+  ])('that holds operating points full %s is looked at only until it is refused', (_, entry) => {
+    const responses = Array.from({ length: 1000 }, entry);
+    const refusal = refusalOf(
+      exampleWith((job) => {
+        const points = Array.from({ length: 64 }, (__, index) => ({
+          name: `P${index}`,
+          responses,
+        }));
+        job.unit.operatingPoints = points;
+      }),
+    );
+    expect(refusal.faults).toHaveLength(200);
+    expect(refusal.more).toBeLessThan(20_000);
+  });
+
+  it('of many responses costs its size, not its square', () => {
+    const tags = Array.from({ length: 64 }, (_, index) => `${index}`);
+    const responses = tags.flatMap((u) =>
+      tags.map((y) => ({
+        from: `U${u}`,
+        to: `Y${y}`,
+        model: { kind: 'first-order', gain: 1, timeConstant: 2 },
+      })),
+    );
+    const job = acceptedJob(
+      exampleWith((document) => {
+        document.unit = {
+          name: 'a mesh',
+          timeUnit: 'min',
+          measurements: tags.map((y) => ({ tag: `Y${y}`, unit: '%', low: 0, high: 1 })),
+          actuators: tags.map((u) => ({ tag: `U${u}`, unit: '%', low: 0, high: 1, at: 0 })),
+          responses,
+          operatingPoints: ['summer', 'winter'].map((name) => ({ name, responses })),
+        };
+        document.loops = tags.map((tag) => ({
+          tag,
+          measurement: `Y${tag}`,
+          drives: `U${tag}`,
+          controller: { terms: 'PI', scan: 1 },
+          present: { gain: 1, integral: 1 },
+        }));
+      }),
+    );
+    expect(job.unit.responses).toHaveLength(4096);
+  });
+
   it('has a fault put in one printable line, however long and strange the value', () => {
     fc.assert(
       fc.property(fc.string({ unit: 'binary', maxLength: 500 }), (odd) => {

@@ -78,4 +78,23 @@ describe('A JSON text', () => {
     const reading = readJson('{"a": 1, "a": 2, "b": {"c": 1, "c": 2}}');
     expect(reading.ok ? [] : reading.faults.map((fault) => fault.path)).toEqual(['a', 'b.c']);
   });
+
+  it('has the places of its faults told by line and column, in texts of many lines too', () => {
+    const reading = readJson('{\n "a": 1,\n\n  "a": {"b": 1, "b": 2},\n "a": NaN}');
+    expect(reading.ok ? [] : reading.faults.map((fault) => fault.problem)).toEqual([
+      expect.stringMatching(/^line 4, column 3: /),
+      expect.stringMatching(/^line 4, column 17: /),
+      expect.stringMatching(/^line 5, column 2: /),
+      expect.stringMatching(/^line 5, column 7: /),
+    ]);
+  });
+
+  it('of hundreds of thousands of keys costs its size, not its square', () => {
+    const distinct = Array.from({ length: 300_000 }, (_, index) => `"k${index}":1`);
+    expect(readJson(`{${distinct.join(',\n')}}`).ok).toBe(true);
+    const same = distinct.map(() => '"a":1');
+    const reading = readJson(`{${same.join(',\n')}}`);
+    expect(reading).toMatchObject({ ok: false, more: 300_000 - 1 - 200 });
+    expect(reading.ok ? [] : reading.faults).toHaveLength(200);
+  });
 });
