@@ -12,6 +12,7 @@ export function advise(draft: Draft, findings: Findings): void {
   for (const loop of draft.loops.entries) {
     adviseOnSign(loop, processDirection(loop.value, loops, graph), findings);
     adviseOnFilter(loop, draft, findings);
+    adviseOnPresent(loop, findings);
   }
 }
 
@@ -22,8 +23,9 @@ function adviseOnSign(
   findings: Findings,
 ): void {
   const { present, action } = loop.value;
-  if (present === undefined || process === undefined || process === 0) return;
-  const acting = action === undefined ? Math.sign(present.gain) : action === 'reverse' ? 1 : -1;
+  if (process === undefined || process === 0) return;
+  const named = action === 'reverse' ? 1 : -1;
+  const acting = action === undefined ? Math.sign(present?.gain ?? 0) : named;
   if (acting * process >= 0) return;
   const way = process > 0 ? 'raises' : 'lowers';
   const key = action === undefined ? ['present', 'gain'] : ['action'];
@@ -41,4 +43,13 @@ function adviseOnFilter(loop: Entry<LoopAsWritten>, draft: Draft, findings: Find
   if (filter >= scan * (1 - 1e-9)) return;
   const problem = 'derivative acts on a filtered PV: the filter is taken as one scan';
   findings.warning([...loop.path, 'present', 'filter'], problem);
+}
+
+/** A retuned loop without present settings is one to be brought into service. */
+function adviseOnPresent({ path, value }: Entry<LoopAsWritten>, findings: Findings): void {
+  if (value.task !== 'retune' || value.present !== undefined) return;
+  const problem =
+    'without present settings the loop is taken to stand in manual and is to be brought into ' +
+    'service: the search starts from a published rule, and there is no present tuning to compare with';
+  findings.warning([...path, 'present'], problem);
 }

@@ -88,6 +88,7 @@ export const loopSchema = keyed({
   task: z.enum(['retune', 'keep', 'manual']).default('retune'),
   goal: z.enum(['tight', 'averaging']).default('tight'),
   controller: controllerSchema,
+  /** As dialled today; absent where the loop stands in manual, to stay so or to be brought in. */
   present: loopSettingsSchema.exactOptional(),
   /** Direct: the output rises as the PV rises. Gains are then written without sign. */
   action: z.enum(['direct', 'reverse']).exactOptional(),

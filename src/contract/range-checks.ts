@@ -13,7 +13,6 @@ export function checkRanges(draft: Draft, findings: Findings): void {
     checkSpan(entry, findings);
   }
   for (const loop of draft.loops.entries) {
-    checkBounds(loop, findings);
     checkOutputRange(loop, draft, findings);
   }
 }
@@ -31,15 +30,6 @@ function checkSpan(entry: Entry<Range & { readonly at?: number }>, findings: Fin
 
 const within = (value: number, range: Range): boolean => range.low <= value && value <= range.high;
 const rangeText = (range: Range): string => `${range.low} to ${range.high}`;
-
-function checkBounds(loop: Entry<LoopAsWritten>, findings: Findings): void {
-  for (const [setting, bounds] of Object.entries(loop.value.bounds)) {
-    const [low, high] = bounds;
-    if (low <= high) continue;
-    const place = [...loop.path, 'bounds', setting];
-    findings.fault('RANGE_ORDER', place, 'the low bound is above the high bound', '[low, high]');
-  }
-}
 
 /** What a loop drives, as a range: an actuator's, or the span of the inner loop's measurement. */
 function drivenRange(loop: LoopAsWritten, draft: Draft): (Range & { at?: number }) | undefined {

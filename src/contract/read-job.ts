@@ -1,4 +1,5 @@
 import { advise } from './advice.js';
+import { checkBounds } from './bound-checks.js';
 import { readDocumentText } from './document-text.js';
 import { type Draft, draftOf } from './draft.js';
 import type { Fault, Warning } from './faults.js';
@@ -33,6 +34,7 @@ const checks: readonly ((draft: Draft, findings: Findings) => void)[] = [
   checkResponses,
   checkLoops,
   checkSettings,
+  checkBounds,
   checkScans,
   checkAvailable,
 ];

@@ -3,7 +3,7 @@ import type { Findings, Path } from './findings.js';
 import type { LoopAsWritten } from './loops.js';
 import type { LoopSettingsDocument } from './settings.js';
 
-/** Settings, limits and objectives fit the controller, the goal and each other. */
+/** Present settings, level bands and objectives fit the controller, the goal and each other. */
 export function checkSettings(draft: Draft, findings: Findings): void {
   for (const loop of draft.loops.entries) {
     checkPresent(loop, findings);
@@ -17,8 +17,8 @@ function checkPresent(loop: Entry<LoopAsWritten>, findings: Findings): void {
   const path = [...loop.path, 'present'];
   if (value.present !== undefined) {
     checkLoopSettings(value, value.present, { path, certain: !lost.has('present') }, findings);
-  } else if (value.task !== 'manual' && !lost.has('present') && !lost.has('task')) {
-    const problem = `a loop whose task is ${value.task} needs its present settings`;
+  } else if (value.task === 'keep' && !lost.has('present')) {
+    const problem = 'a loop whose task is keep needs its present settings';
     findings.fault('PRESENT_MISSING', path, problem, 'the settings as they are dialled today');
   }
 }

@@ -110,6 +110,49 @@ describe('An accepted job', () => {
   });
 });
 
+describe('A loop to be brought into service', () => {
+  it('is one to retune without present settings: no fault, but said plainly', () => {
+    const [warning = '', ...others] = warningsOf((job) => delete job.loops[1].present);
+    expect(others).toEqual([]);
+    expect(warning).toMatch(/^loops\[1\]\.present: /);
+    for (const words of [
+      /manual/,
+      /starts from a published rule/,
+      /no present tuning to compare/,
+    ]) {
+      expect(warning).toMatch(words);
+    }
+  });
+
+  it('may have any bounds, for there is no present setting that they could lie apart from', () => {
+    const bounds = { gain: [1e-6, 2e-6], integral: [1e5, 2e5], filter: [7, 8] };
+    const told = warningsOf((job) => {
+      delete job.loops[1].present;
+      Object.assign(job.loops[1], { bounds, maxChange: 1 });
+    });
+    expect(told).toHaveLength(1);
+  });
+
+  it('has its action judged where it is named', () => {
+    const told = warningsOf((job) => {
+      delete job.loops[2].present;
+      job.loops[2].action = 'reverse';
+    });
+    expect(told).toEqual([
+      expect.stringMatching(/^loops\[2\]\.action: .*against its response/),
+      expect.stringMatching(/^loops\[2\]\.present: /),
+    ]);
+  });
+
+  it('is no matter of a loop that stays in manual', () => {
+    const told = warningsOf((job) => {
+      job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual' });
+      delete job.loops[4].present;
+    });
+    expect(told).toEqual([]);
+  });
+});
+
 describe('What a release can compute', () => {
   it.each([
     [
@@ -195,6 +238,30 @@ describe('What a release can compute', () => {
       (job: Loose) => {
         job.loops.push({ ...job.loops[2], tag: 'LC-121', task: 'manual', outputLow: 60 });
       },
+    ],
+    [
+      'bounds that touch the allowed change in one value, rounding aside',
+      (job: Loose) => {
+        job.loops[1].maxChange = 3;
+        job.loops[1].present = { gain: 0.7, integral: 0.3 };
+        job.loops[1].bounds = { gain: [2.1, 9], integral: [0.001, 0.1] };
+      },
+    ],
+    [
+      'any bounds on a setting that is zero today, and on a loop that is kept',
+      (job: Loose) => {
+        job.loops[0].present.derivative = 0;
+        job.loops[0].bounds = { derivative: [200, 300] };
+        job.loops[3].bounds = { gain: [1, 2] };
+      },
+    ],
+    [
+      'a bound of zero on a derivative that the controller does not have',
+      (job: Loose) => (job.loops[1].bounds = { derivative: [0, 0] }),
+    ],
+    [
+      'bounds on the filter of any controller',
+      (job: Loose) => (job.loops[1].bounds = { filter: [0, 1] }),
     ],
     ['a dead band of zero', (job: Loose) => (job.unit.actuators[0].deadband = 0)],
     [

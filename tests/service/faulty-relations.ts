@@ -212,10 +212,7 @@ export const faultyRelations = {
       for (const loop of job.loops) loop.task = 'keep';
     }),
   ],
-  PRESENT_MISSING: [
-    set('a retuned loop', 'loops[1].present', undefined, /retune/),
-    set('a kept loop', 'loops[3].present', undefined, /keep/),
-  ],
+  PRESENT_MISSING: [set('a kept loop', 'loops[3].present', undefined, /keep/)],
   SETTING_MISSING: [set('an integral', 'loops[1].present.integral', undefined, /PI controller/)],
   SETTING_SIGN: [
     set('a gain of zero', 'loops[1].present.gain', 0),
@@ -228,6 +225,60 @@ export const faultyRelations = {
       'an integral in P',
       'loops[1].present.integral',
       (job) => (job.loops[1].controller.terms = 'P'),
+    ),
+    change(
+      'a bound on a derivative in PI: it would silently do nothing where its author expects it to',
+      'loops[1].bounds.derivative',
+      (job) => (job.loops[1].bounds = { derivative: [0, 5] }),
+      /FC-111: a PI controller has no derivative to bound; found \[0, 5\]/,
+    ),
+    change(
+      'a bound on an integral in P, though the loop is kept and the bound idle for now',
+      'loops[3].bounds.integral',
+      (job) => {
+        job.loops[3].controller.terms = 'P';
+        job.loops[3].present.integral = 0;
+        job.loops[3].bounds = { integral: [1, 2] };
+      },
+    ),
+  ],
+  BOUNDS_APART: [
+    set(
+      'bounds above what may be reached',
+      'loops[0].bounds.gain',
+      [5, 10],
+      /5 to 10, lie apart from 0\.275 to 4\.4, which maxChange 4 leaves of today's gain of 1\.1/,
+    ),
+    set('bounds below what may be reached', 'loops[0].bounds.derivative', [0, 14]),
+    change(
+      'the size of a gain below zero',
+      'loops[3].bounds.gain',
+      (job) => {
+        job.unit.responses.splice(3, 1);
+        job.unit.operatingPoints = [];
+        job.loops[3] = {
+          ...job.loops[3],
+          task: 'retune',
+          maxChange: 2,
+          bounds: { gain: [10, 59] },
+        };
+      },
+      /60 to 240.*today's gain of 120/,
+    ),
+    change(
+      'no change at all',
+      'loops[1].bounds.integral',
+      (job) => Object.assign(job.loops[1], { maxChange: 1, bounds: { integral: [0.31, 1] } }),
+      /0\.3 to 0\.3/,
+    ),
+    change(
+      'a filter, taken as one scan beside derivative',
+      'loops[0].bounds.filter',
+      (job) => {
+        job.loops[0].present.filter = 0.1;
+        job.loops[0].bounds = { filter: [0.1, 0.2] };
+      },
+      /0\.25 to 4/,
     ),
   ],
   TERMS_UNSUITED: [

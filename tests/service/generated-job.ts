@@ -58,6 +58,8 @@ const limits = fc.record(
   optional,
 );
 
+const taskOf = (index: number, kept: boolean) => (kept && index > 0 ? 'keep' : 'retune');
+
 /** One loop on its own measurement and actuator; the number makes their tags. */
 const loopOf = (index: number, averaging: boolean): fc.Arbitrary<Loop> =>
   fc
@@ -69,20 +71,27 @@ const loopOf = (index: number, averaging: boolean): fc.Arbitrary<Loop> =>
       filter: size,
       limits,
       kept: fc.boolean(),
+      bound: fc.boolean(),
+      dialled: fc.boolean(),
     })
-    .map(({ terms: own, gain: kc, integral, derivative, filter, limits: held, kept }) => ({
+    .map(({ terms: own, gain: kc, integral, derivative, filter, limits: held, ...drawn }) => ({
       tag: `C${index}`,
       measurement: `Y${index}`,
       drives: `U${index}`,
-      task: kept && index > 0 ? 'keep' : 'retune',
+      task: taskOf(index, drawn.kept),
       goal: averaging ? 'averaging' : 'tight',
       controller: { terms: own, scan: 0.5, gainIn: 'engineering', filterOrder: 2 },
-      present: {
-        gain: kc,
-        filter,
-        ...(own === 'P' ? {} : { integral }),
-        ...(own === 'PID' ? { derivative } : {}),
-      },
+      ...(taskOf(index, drawn.kept) === 'retune' && !drawn.dialled
+        ? {}
+        : {
+            present: {
+              gain: kc,
+              filter,
+              ...(own === 'P' ? {} : { integral }),
+              ...(own === 'PID' ? { derivative } : {}),
+            },
+          }),
+      ...(drawn.bound ? { bounds: { gain: [Math.abs(kc) / 8, Math.abs(kc) / 3] } } : {}),
       limits: { ...held, ...(averaging ? { levelBand: 3 } : {}) },
     }));
 
