@@ -11,7 +11,7 @@ const count = z.number().int().min(0);
 const alternativeIdSchema = z.string().regex(/^A\d{2,3}$/);
 
 /** A published rule's settings, or today's, with where the rule stands. */
-const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });
+export const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });
 
 /** How an alternative fared on models that the search never saw. */
 const verificationSchema = keyed({
@@ -24,7 +24,7 @@ const verificationSchema = keyed({
 });
 
 /** One tuning set of the front. */
-const alternativeSchema = keyed({
+export const alternativeSchema = keyed({
   id: alternativeIdSchema,
   ...scoredShape,
   verified: verificationSchema,

@@ -13,7 +13,7 @@ import {
   type ScoredSettings,
   type Trend,
 } from '../../src/contract/index.js';
-import { acceptedJob, exampleJob } from '../documents.js';
+import { acceptedJob, exampleJob, exampleWith } from '../documents.js';
 
 const loop: LoopMetrics = {
   peakSensitivity: 1.6,
@@ -162,14 +162,71 @@ describe('A settings document', () => {
   const own = acceptedJob(exampleJob());
   const settings = { 'FC-111': { gain: 0.5, integral: 0.4 }, 'LC-120': { gain: 1, integral: 0.1 } };
   const faults = (document: unknown) => {
-    const read = readSettings(JSON.stringify(document), own);
-    return read.ok ? [] : read.faults.map((fault) => `${fault.code} ${fault.path}`);
+    const answer = readSettings(JSON.stringify(document), own);
+    return answer.ok ? [] : answer.faults.map((fault) => `${fault.code} ${fault.path}`);
   };
 
-  it('is read bare, and under the key settings as in a front', () => {
-    for (const document of [settings, { settings }]) {
-      expect(readSettings(JSON.stringify(document), own)).toEqual({ ok: true, settings });
-    }
+  const [alternative] = front.alternatives;
+  const [baseline] = front.baselines;
+  const read = (document: unknown, of = own) => readSettings(JSON.stringify(document), of);
+  const present = Object.fromEntries(exampleJob().loops.map((one) => [one.tag, one.present]));
+
+  it.each([
+    ['bare, by loop tag', settings],
+    ['under the key settings', { settings }],
+    ['in a whole alternative of a front', { ...alternative, settings }],
+    ['in a whole baseline of a front', { ...baseline, settings }],
+    ['in a scored set', { ...scored, settings }],
+    ['in an alternative of which a part was cut away', { id: 'A01', settings }],
+    ['in one whose other parts were written over', { settings, objectives: 'none', stable: 3 }],
+  ])('is read %s, and loops it does not name keep their present settings', (_, document) => {
+    const all = { ...present, ...settings };
+    expect(read(document)).toEqual({ ok: true, settings: all, warnings: [] });
+  });
+
+  it('is complete and in the order of the job, whatever it names first', () => {
+    const answer = read({ 'LC-120': settings['LC-120'], 'TC-110': present['TC-110'] });
+    const order = ['TC-110', 'FC-111', 'LC-120', 'PC-130'];
+    expect(Object.keys(answer.ok ? answer.settings : {})).toEqual(order);
+  });
+
+  it('must name a closed loop that has no present settings to keep', () => {
+    const job = acceptedJob(exampleWith((document) => delete document.loops[0].present));
+    expect(read({ settings }, job)).toMatchObject({
+      ok: false,
+      faults: [
+        {
+          code: 'PRESENT_MISSING',
+          path: 'settings.TC-110',
+          problem: expect.stringMatching(/^TC-110 has no present settings/),
+        },
+      ],
+    });
+    const named = { ...settings, 'TC-110': { gain: 2, integral: 600 } };
+    expect(read(named, job)).toMatchObject({ ok: true, settings: named });
+  });
+
+  it('may name a loop in manual, is told that this does nothing, and is read without it', () => {
+    const job = acceptedJob(
+      exampleWith((document) => {
+        document.loops.push({ ...document.loops[2], tag: 'LC-121', task: 'manual' });
+      }),
+    );
+    const answer = read({ settings: { ...settings, 'LC-121': settings['LC-120'] } }, job);
+    expect(answer).toMatchObject({ ok: true, warnings: [{ path: 'settings.LC-121' }] });
+    expect(answer.ok ? Object.keys(answer.settings) : []).not.toContain('LC-121');
+  });
+
+  it('may be of a job with a loop whose tag is one of the keys of a front', () => {
+    const job = acceptedJob(
+      exampleWith((document) => {
+        document.loops[1].tag = 'settings';
+        document.loops[0].drives = { loop: 'settings' };
+        document.loops[2].tag = 'format';
+      }),
+    );
+    const bare = { settings: settings['FC-111'], format: settings['LC-120'] };
+    expect(read(bare, job)).toMatchObject({ ok: true, settings: bare });
   });
 
   it.each([
@@ -182,6 +239,15 @@ describe('A settings document', () => {
     [{ 'FC-111': { Gain: 1, gain: 1, integral: 1 } }, 'KEY_UNKNOWN FC-111.Gain'],
     [{ ' FC-111': { gain: 1 } }, 'TAG_INVALID [" FC-111"]'],
     [[1], 'VALUE_TYPE '],
+    [{ settings: null }, 'VALUE_TYPE settings'],
+    [{ settings: { 'FC-111': null } }, 'VALUE_TYPE settings.FC-111'],
+    [{ settings, cost: 1 }, 'KEY_UNKNOWN cost'],
+    [{ settings, 'FC-111': { gain: 1, integral: 1 } }, 'KEY_UNKNOWN FC-111'],
+    [{ id: 'A01', objectives: { speed: 1 } }, 'KEY_MISSING settings'],
+    [front, 'FORMAT_UNKNOWN format'],
+    [evaluation, 'FORMAT_UNKNOWN format'],
+    [exampleJob(), 'FORMAT_UNKNOWN format'],
+    [Object.fromEntries(Array.from({ length: 65 }, (_, i) => [`L${i}`, 1])), 'LIST_LENGTH '],
   ])('is refused where it does not fit its job: %j', (document, fault) => {
     expect(faults(document)).toEqual([fault]);
   });
