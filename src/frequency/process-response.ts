@@ -177,6 +177,7 @@ export class ProcessResponse {
   /** output (z - transition)^-1 (now z^-delay + before z^-(delay + 1)) + direct part */
   private channelAt(c: SampledChannel, zr: number, zi: number, angle: number): [number, number] {
     const n = c.order;
+    if (n === 1) return firstOrderAt(c, zr, zi, angle);
     const direct = turn(c.feedthrough, 0, -angle * c.directDelay);
     if (n === 0) return direct;
     let nowRe = 0;
@@ -243,6 +244,22 @@ export class ProcessResponse {
     const size = Math.exp(matrix.determinantLog);
     return [size * Math.cos(matrix.determinantAngle), size * Math.sin(matrix.determinantAngle)];
   }
+}
+
+/** The same for a single state, without a matrix: most responses are sums of these. */
+function firstOrderAt(c: SampledChannel, zr: number, zi: number, angle: number): [number, number] {
+  const now = c.now[0] as number;
+  const before = c.before[0] as number;
+  // now + before / z
+  const ur = now + before * zr;
+  const ui = -before * zi;
+  const pr = zr - (c.transition[0] as number);
+  const weight = (c.output[0] as number) / (pr * pr + zi * zi);
+  const r = weight * (ur * pr + ui * zi);
+  const m = weight * (ui * pr - ur * zi);
+  const cosine = Math.cos(angle * c.delay);
+  const sine = -Math.sin(angle * c.delay);
+  return [r * cosine - m * sine, r * sine + m * cosine];
 }
 
 /** (re + i im) exp(i angle) */

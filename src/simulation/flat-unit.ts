@@ -4,23 +4,29 @@ import type { SampledInput, SampledUnit } from '../responses/index.js';
 /**
  * A sampled unit as flat arrays for one walk a step: what its loops do not see is left out.
  *
- * Sections are first-order channels and integrators, `x = decay x + now u[k-d] + before u[k-d-1]`
- * with the PV the sum of their states; wider ones hold a full transition.
+ * First-order sections, x = decay x + now u[k-d] + before u[k-d-1], stand in groups that share
+ * source, dead time and measurement; the PV is the sum of their states. An integrator with several
+ * inputs is several sections here: over a bounded run their sum is the same. Wider sections, and
+ * unstable ones, hold a full transition and all their inputs.
  */
 export interface FlatUnit {
   /** Steps of history kept before t = 0. */
   readonly lead: number;
-  /** First-order sections, states scaled so that the PV gains `x` itself. */
-  readonly decay: Float64Array;
-  readonly measurement: Int32Array;
-  /** Inputs of the first-order sections; several may feed one section. */
-  readonly inputSection: Int32Array;
-  readonly inputSource: Int32Array;
-  readonly inputDelay: Int32Array;
-  readonly inputNow: Float64Array;
-  readonly inputBefore: Float64Array;
+  readonly groups: SectionGroups;
   readonly wide: readonly WideSection[];
   readonly direct: readonly DirectTerm[];
+}
+
+/** Sections of group g are those from `start[g]` to `start[g + 1]`. */
+export interface SectionGroups {
+  readonly source: Int32Array;
+  readonly delay: Int32Array;
+  readonly measurement: Int32Array;
+  readonly start: Int32Array;
+  /** By section, inputs scaled so that the PV gains the state itself. */
+  readonly decay: Float64Array;
+  readonly now: Float64Array;
+  readonly before: Float64Array;
 }
 
 /** A section of order two or more. */
@@ -40,54 +46,114 @@ export interface DirectTerm {
   readonly gain: number;
 }
 
-/** @param seen  measurements that some loop controls */
+interface Section {
+  readonly input: SampledInput;
+  readonly measurement: number;
+  readonly decay: number;
+  readonly scale: number;
+}
+
 export function flattenUnit(unit: SampledUnit, network: LoopNetwork): FlatUnit {
   const seen = new Set(network.loops.map((loop) => loop.measurement));
-  const decay: number[] = [];
-  const measurement: number[] = [];
-  const inputs: { section: number; scale: number; input: SampledInput }[] = [];
+  const sections: Section[] = [];
   const wide: WideSection[] = [];
   const direct: DirectTerm[] = [];
   for (const channel of unit.channels) {
-    if (!seen.has(channel.measurement)) continue;
+    const { measurement } = channel;
+    if (!seen.has(measurement)) continue;
     if (channel.feedthrough !== 0) {
-      direct.push({
-        measurement: channel.measurement,
-        source: channel.source,
-        delay: channel.directDelay,
-        gain: channel.feedthrough,
-      });
+      const { source, directDelay: delay, feedthrough: gain } = channel;
+      direct.push({ measurement, source, delay, gain });
     }
     if (channel.order === 1) {
-      inputs.push({ section: decay.length, scale: channel.output[0] as number, input: channel });
-      decay.push(channel.transition[0] as number);
-      measurement.push(channel.measurement);
+      const decay = channel.transition[0] as number;
+      sections.push({ input: channel, measurement, decay, scale: channel.output[0] as number });
     } else if (channel.order > 1) wide.push({ ...channel, inputs: [channel] });
   }
   for (const block of unit.blocks) {
-    if (!seen.has(block.measurement)) continue;
-    if (block.order === 1) {
-      for (const input of block.inputs) inputs.push({ section: decay.length, scale: 1, input });
-      decay.push(block.transition[0] as number);
-      measurement.push(block.measurement);
+    const { measurement } = block;
+    if (!seen.has(measurement)) continue;
+    if (block.order === 1 && block.transition[0] === 1) {
+      for (const input of block.inputs) sections.push({ input, measurement, decay: 1, scale: 1 });
       continue;
     }
     const output = new Float64Array(block.order);
     output[0] = 1;
     wide.push({ ...block, output });
   }
+  return { lead: unit.longestDelay + 1, groups: groupSections(sections), wide, direct };
+}
+
+function groupSections(sections: readonly Section[]): SectionGroups {
+  const byKey = new Map<string, Section[]>();
+  for (const section of sections) {
+    const { input, measurement } = section;
+    const key = `${input.source} ${input.delay} ${measurement}`;
+    const group = byKey.get(key);
+    if (group === undefined) byKey.set(key, [section]);
+    else group.push(section);
+  }
+  const groups = [...byKey.values()];
+  const flat = groups.flat();
+  const starts = [0];
+  for (const group of groups) starts.push((starts[starts.length - 1] as number) + group.length);
+  const heads = groups.map((group) => group[0] as Section);
   return {
-    lead: unit.longestDelay + 1,
-    decay: Float64Array.from(decay),
-    measurement: Int32Array.from(measurement),
-    inputSection: Int32Array.from(inputs, (i) => i.section),
-    inputSource: Int32Array.from(inputs, (i) => i.input.source),
-    inputDelay: Int32Array.from(inputs, (i) => i.input.delay),
-    inputNow: Float64Array.from(inputs, (i) => i.scale * (i.input.now[0] as number)),
-    inputBefore: Float64Array.from(inputs, (i) => i.scale * (i.input.before[0] as number)),
-    wide,
-    direct,
+    source: Int32Array.from(heads, (s) => s.input.source),
+    delay: Int32Array.from(heads, (s) => s.input.delay),
+    measurement: Int32Array.from(heads, (s) => s.measurement),
+    start: Int32Array.from(starts),
+    decay: Float64Array.from(flat, (s) => s.decay),
+    now: Float64Array.from(flat, (s) => s.scale * (s.input.now[0] as number)),
+    before: Float64Array.from(flat, (s) => s.scale * (s.input.before[0] as number)),
   };
+}
+
+/**
+ * Advance the sections of some groups from step k - 1 to k and add them to the PVs.
+ * @param active  groups to walk, the first `count` entries
+ * @param bases  by group: place in the history of its input at step k = 0, less one step
+ */
+export function advanceGroups(
+  groups: SectionGroups,
+  active: Int32Array,
+  count: number,
+  bases: Int32Array,
+  states: Float64Array,
+  history: Float64Array,
+  k: number,
+  values: Float64Array,
+): void {
+  const { measurement, start, decay, now, before } = groups;
+  for (let a = 0; a < count; a += 1) {
+    const g = active[a] as number;
+    const at = (bases[g] as number) + k;
+    const u0 = history[at] as number;
+    const u1 = history[at - 1] as number;
+    const end = start[g + 1] as number;
+    let sum = 0;
+    for (let s = start[g] as number; s < end; s += 1) {
+      const x =
+        (states[s] as number) * (decay[s] as number) +
+        (now[s] as number) * u0 +
+        (before[s] as number) * u1;
+      states[s] = x;
+      sum += x;
+    }
+    const m = measurement[g] as number;
+    values[m] = (values[m] as number) + sum;
+  }
+}
+
+/** The groups whose source moves, packed into `active`; a source that stands still costs nothing. */
+export function gatherGroups(groups: SectionGroups, moves: Uint8Array, active: Int32Array): number {
+  let count = 0;
+  for (let g = 0; g < groups.source.length; g += 1) {
+    if (!moves[groups.source[g] as number]) continue;
+    active[count] = g;
+    count += 1;
+  }
+  return count;
 }
 
 /** States of all wide sections together. */

@@ -64,7 +64,7 @@ export function simulatePlainly(run: PlainRun): Trajectory {
   const limited = loops.map(() => false);
   const states = loops.map(rest);
   const held = Array.from({ length: unit.sourceCount }, fresh);
-  const process = startProcess(unit);
+  const process = new Process(unit, movingSources(run, automatic));
 
   for (let k = 0; k <= steps; k += 1) {
     if (k > 0) process.advance(held, k);
@@ -109,6 +109,18 @@ export function simulatePlainly(run: PlainRun): Trajectory {
   return { step: unit.step, pv, sp, op, limited };
 }
 
+/** Sources that something moves in this run; a disturbance that is not stepped stands still. */
+function movingSources(run: PlainRun, automatic: readonly boolean[]): boolean[] {
+  const moves = new Array<boolean>(run.unit.sourceCount).fill(false);
+  run.network.loops.forEach((loop, i) => {
+    if (!automatic[i]) return;
+    if ('source' in loop.drives) moves[loop.drives.source] = true;
+    if (loop.setpointSource >= 0) moves[loop.setpointSource] = true;
+  });
+  if (run.upset.kind !== 'setpoint') moves[run.upset.source] = true;
+  return moves;
+}
+
 /** One scan of the position algorithm; `blocked` is the direction in which the inner loop is stuck. */
 function scan(
   s: ControllerState,
@@ -140,71 +152,96 @@ function scan(
   s.output = delivered;
 }
 
-/** The sampled process with its states; inputs are read from the whole history of held values. */
-function startProcess(unit: SampledUnit): {
-  advance(held: readonly Float64Array[], k: number): void;
-  read(held: readonly Float64Array[], k: number): Float64Array;
-} {
-  const channelStates = unit.channels.map((c) => new Float64Array(c.order));
-  const blockStates = unit.blocks.map((b) => new Float64Array(b.order));
-  const at = (held: readonly Float64Array[], source: number, k: number): number =>
-    k >= 0 ? ((held[source] as Float64Array)[k] as number) : 0;
-  const drive = (
-    x: Float64Array,
-    input: SampledInput,
-    held: readonly Float64Array[],
-    k: number,
-  ): void => {
-    const now = at(held, input.source, k - input.delay);
-    const before = at(held, input.source, k - input.delay - 1);
-    for (let i = 0; i < x.length; i += 1) {
-      x[i] =
-        (x[i] as number) + (input.now[i] as number) * now + (input.before[i] as number) * before;
+/** The sampled process with its states; inputs are read from the history of held values. */
+class Process {
+  private readonly channels: readonly SampledChannel[];
+  private readonly blocks: readonly SharedBlock[];
+  private readonly channelStates: readonly Float64Array[];
+  private readonly blockStates: readonly Float64Array[];
+  private readonly values: Float64Array;
+  private readonly scratch: Float64Array;
+
+  /** @param moves  by source: false where it stands still, and what it drives with it */
+  constructor(unit: SampledUnit, moves: readonly boolean[]) {
+    this.channels = unit.channels.filter((c) => moves[c.source]);
+    this.blocks = unit.blocks;
+    this.channelStates = this.channels.map((c) => new Float64Array(c.order));
+    this.blockStates = this.blocks.map((b) => new Float64Array(b.order));
+    this.values = new Float64Array(unit.measurementCount);
+    const orders = [...this.channels, ...this.blocks].map((part) => part.order);
+    this.scratch = new Float64Array(Math.max(0, ...orders));
+  }
+
+  /** From sample k - 1 to sample k. */
+  advance(held: readonly Float64Array[], k: number): void {
+    for (let i = 0; i < this.channels.length; i += 1) {
+      const channel = this.channels[i] as SampledChannel;
+      const x = this.channelStates[i] as Float64Array;
+      this.turn(x, channel.transition);
+      drive(x, channel, held, k - 1);
     }
-  };
-  const scratch = new Float64Array(
-    Math.max(0, ...unit.channels.map((c) => c.order), ...unit.blocks.map((b) => b.order)),
-  );
-  const turn = (x: Float64Array, transition: Float64Array): void => {
+    for (let i = 0; i < this.blocks.length; i += 1) {
+      const block = this.blocks[i] as SharedBlock;
+      const x = this.blockStates[i] as Float64Array;
+      this.turn(x, block.transition);
+      for (const input of block.inputs) drive(x, input, held, k - 1);
+    }
+  }
+
+  /** The PVs at sample k. */
+  read(held: readonly Float64Array[], k: number): Float64Array {
+    const { values } = this;
+    values.fill(0);
+    for (let i = 0; i < this.channels.length; i += 1) {
+      const channel = this.channels[i] as SampledChannel;
+      const x = this.channelStates[i] as Float64Array;
+      let y = 0;
+      if (channel.feedthrough !== 0) {
+        y = channel.feedthrough * heldAt(held, channel.source, k - channel.directDelay);
+      }
+      for (let j = 0; j < x.length; j += 1) y += (channel.output[j] as number) * (x[j] as number);
+      values[channel.measurement] = (values[channel.measurement] as number) + y;
+    }
+    for (let i = 0; i < this.blocks.length; i += 1) {
+      const { measurement } = this.blocks[i] as SharedBlock;
+      values[measurement] =
+        (values[measurement] as number) + ((this.blockStates[i] as Float64Array)[0] as number);
+    }
+    return values;
+  }
+
+  private turn(x: Float64Array, transition: Float64Array): void {
     const n = x.length;
+    if (n === 1) {
+      x[0] = (transition[0] as number) * (x[0] as number);
+      return;
+    }
+    const { scratch } = this;
     for (let i = 0; i < n; i += 1) {
       let sum = 0;
       for (let j = 0; j < n; j += 1) sum += (transition[i * n + j] as number) * (x[j] as number);
       scratch[i] = sum;
     }
     for (let i = 0; i < n; i += 1) x[i] = scratch[i] as number;
-  };
-  const values = new Float64Array(unit.measurementCount);
-  return {
-    advance(held, k) {
-      for (let i = 0; i < unit.channels.length; i += 1) {
-        const channel = unit.channels[i] as SampledChannel;
-        const x = channelStates[i] as Float64Array;
-        turn(x, channel.transition);
-        drive(x, channel, held, k - 1);
-      }
-      for (let i = 0; i < unit.blocks.length; i += 1) {
-        const block = unit.blocks[i] as SharedBlock;
-        const x = blockStates[i] as Float64Array;
-        turn(x, block.transition);
-        for (const input of block.inputs) drive(x, input, held, k - 1);
-      }
-    },
-    read(held, k) {
-      values.fill(0);
-      for (let i = 0; i < unit.channels.length; i += 1) {
-        const channel = unit.channels[i] as SampledChannel;
-        const x = channelStates[i] as Float64Array;
-        let y = channel.feedthrough * at(held, channel.source, k - channel.directDelay);
-        for (let j = 0; j < x.length; j += 1) y += (channel.output[j] as number) * (x[j] as number);
-        values[channel.measurement] = (values[channel.measurement] as number) + y;
-      }
-      for (let i = 0; i < unit.blocks.length; i += 1) {
-        const block = unit.blocks[i] as SharedBlock;
-        values[block.measurement] =
-          (values[block.measurement] as number) + ((blockStates[i] as Float64Array)[0] as number);
-      }
-      return values;
-    },
-  };
+  }
+}
+
+/** Before t = 0 everything stood still. */
+const heldAt = (held: readonly Float64Array[], source: number, k: number): number =>
+  k >= 0 ? ((held[source] as Float64Array)[k] as number) : 0;
+
+function drive(
+  x: Float64Array,
+  input: SampledInput,
+  held: readonly Float64Array[],
+  k: number,
+): void {
+  const late = k - input.delay;
+  if (late < 0) return;
+  const u = held[input.source] as Float64Array;
+  const now = u[late] as number;
+  const before = late > 0 ? (u[late - 1] as number) : 0;
+  for (let i = 0; i < x.length; i += 1) {
+    x[i] = (x[i] as number) + (input.now[i] as number) * now + (input.before[i] as number) * before;
+  }
 }

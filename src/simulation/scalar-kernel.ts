@@ -1,5 +1,12 @@
 import type { DiscreteController, Loop } from '../controllers/index.js';
-import { advanceWide, type FlatUnit, flattenUnit, wideOrder } from './flat-unit.js';
+import {
+  advanceGroups,
+  advanceWide,
+  type FlatUnit,
+  flattenUnit,
+  gatherGroups,
+  wideOrder,
+} from './flat-unit.js';
 import { figureCount, type KernelSetup, type SimulationKernel } from './kernel.js';
 import {
   countSample,
@@ -34,10 +41,8 @@ export class ScalarKernel implements SimulationKernel {
   private readonly innerOf: Int32Array;
   private readonly automatic: Uint8Array;
   private readonly moves: Uint8Array;
-  private readonly inputSection: Int32Array;
+  private readonly active: Int32Array;
   private readonly bases: Int32Array;
-  private readonly inputNow: Float64Array;
-  private readonly inputBefore: Float64Array;
 
   constructor(private readonly setup: KernelSetup) {
     const { network, units, steps } = setup;
@@ -51,7 +56,7 @@ export class ScalarKernel implements SimulationKernel {
     this.stride = this.lead + steps + 1;
     this.history = new Float64Array(sources * this.stride);
     this.values = new Float64Array(first?.measurementCount ?? 0);
-    this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.decay.length)));
+    this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.groups.decay.length)));
     this.wideStates = new Float64Array(Math.max(1, ...this.flat.map(wideOrder)));
     this.scratch = new Float64Array(
       Math.max(1, ...this.flat.flatMap((f) => f.wide.map((w) => w.order))),
@@ -64,11 +69,9 @@ export class ScalarKernel implements SimulationKernel {
     this.outerOf = Int32Array.from(network.outerOf);
     this.automatic = new Uint8Array(loops.length);
     this.moves = new Uint8Array(sources);
-    const mostInputs = Math.max(1, ...this.flat.map((f) => f.inputSection.length));
-    this.inputSection = new Int32Array(mostInputs);
-    this.bases = new Int32Array(mostInputs);
-    this.inputNow = new Float64Array(mostInputs);
-    this.inputBefore = new Float64Array(mostInputs);
+    const mostGroups = Math.max(1, ...this.flat.map((f) => f.groups.source.length));
+    this.active = new Int32Array(mostGroups);
+    this.bases = new Int32Array(mostGroups);
   }
 
   simulate(
@@ -84,8 +87,8 @@ export class ScalarKernel implements SimulationKernel {
       for (const unit of units) {
         for (const upset of upsets) {
           const flat = this.flat[unit] as FlatUnit;
-          const inputs = this.loadUpset(flat, upset);
-          this.run(flat, inputs, this.setup.upsets[upset] as Upset);
+          const count = this.loadUpset(flat, upset);
+          this.run(flat, count, this.setup.upsets[upset] as Upset);
           this.report(out, offset);
           offset += width;
         }
@@ -106,7 +109,7 @@ export class ScalarKernel implements SimulationKernel {
     });
   }
 
-  /** Set everything to rest, apply the upset, and pack the inputs that move in it. */
+  /** Set everything to rest, apply the upset, and gather what moves in it. */
   private loadUpset(flat: FlatUnit, index: number): number {
     const { setup, bank, automatic, moves, stride, lead } = this;
     const upset = setup.upsets[index] as Upset;
@@ -123,27 +126,19 @@ export class ScalarKernel implements SimulationKernel {
       if (loop.setpointSource >= 0) moves[loop.setpointSource] = 1;
     });
     if (upset.kind !== 'setpoint') moves[upset.source] = 1;
-    let count = 0;
-    for (let i = 0; i < flat.inputSection.length; i += 1) {
-      const source = flat.inputSource[i] as number;
-      // A source that stands still costs nothing.
-      if (!moves[source]) continue;
-      this.inputSection[count] = flat.inputSection[i] as number;
-      this.bases[count] = source * stride + lead - 1 - (flat.inputDelay[i] as number);
-      this.inputNow[count] = flat.inputNow[i] as number;
-      this.inputBefore[count] = flat.inputBefore[i] as number;
-      count += 1;
+    const { source, delay } = flat.groups;
+    for (let g = 0; g < source.length; g += 1) {
+      this.bases[g] = (source[g] as number) * stride + lead - 1 - (delay[g] as number);
     }
-    return count;
+    return gatherGroups(flat.groups, moves, this.active);
   }
 
-  private run(flat: FlatUnit, inputs: number, upset: Upset): void {
+  private run(flat: FlatUnit, count: number, upset: Upset): void {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
-    const { inputSection, bases, inputNow, inputBefore } = this;
+    const { active, bases } = this;
     const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;
-    const { decay, measurement, wide, direct } = flat;
+    const { groups, wide, direct } = flat;
     const { steps, stepsPerScan } = this.setup;
-    const sections = decay.length;
     const loops = order.length;
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
     const push = upset.size;
@@ -151,20 +146,7 @@ export class ScalarKernel implements SimulationKernel {
 
     for (let k = 0; k <= steps; k += 1) {
       for (let m = 0; m < values.length; m += 1) values[m] = 0;
-      for (let s = 0; s < sections; s += 1)
-        states[s] = (states[s] as number) * (decay[s] as number);
-      for (let i = 0; i < inputs; i += 1) {
-        const at = (bases[i] as number) + k;
-        const s = inputSection[i] as number;
-        states[s] =
-          (states[s] as number) +
-          (inputNow[i] as number) * (history[at] as number) +
-          (inputBefore[i] as number) * (history[at - 1] as number);
-      }
-      for (let s = 0; s < sections; s += 1) {
-        const m = measurement[s] as number;
-        values[m] = (values[m] as number) + (states[s] as number);
-      }
+      advanceGroups(groups, active, count, bases, states, history, k, values);
       if (wide.length > 0)
         advanceWide(wide, this.wideStates, this.scratch, history, stride, lead, k, values);
       if (pushed >= 0) history[pushed * stride + lead + k] = push;

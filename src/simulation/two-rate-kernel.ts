@@ -1,6 +1,13 @@
 import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
 import type { SampledUnit } from '../responses/index.js';
-import { advanceWide, type FlatUnit, flattenUnit, wideOrder } from './flat-unit.js';
+import {
+  advanceGroups,
+  advanceWide,
+  type FlatUnit,
+  flattenUnit,
+  gatherGroups,
+  wideOrder,
+} from './flat-unit.js';
 import { figureCount, type SimulationKernel } from './kernel.js';
 import {
   countSample,
@@ -12,6 +19,7 @@ import {
   SLOTS,
   scanLoop,
 } from './loop-bank.js';
+import { OwnResponse, runQuickLoop } from './quick-loop.js';
 import type { Upset } from './upset.js';
 
 /** What the kernel is built for: a unit split into quick loops and all the rest. */
@@ -56,6 +64,8 @@ export class TwoRateKernel implements SimulationKernel {
   private readonly automatic: Uint8Array;
   private readonly slowOrder: readonly number[];
   private readonly quickLoops: readonly number[];
+  private readonly moves: Uint8Array;
+  private readonly active: Int32Array;
   private readonly bases: Int32Array;
 
   constructor(private readonly setup: TwoRateSetup) {
@@ -70,7 +80,7 @@ export class TwoRateKernel implements SimulationKernel {
     );
     this.bank = new Float64Array(count * SLOTS);
     this.values = new Float64Array(first?.measurementCount ?? 0);
-    this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.decay.length)));
+    this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.groups.decay.length)));
     this.wideStates = new Float64Array(Math.max(1, ...this.flat.map(wideOrder)));
     this.scratch = new Float64Array(
       Math.max(1, ...this.flat.flatMap((f) => f.wide.map((w) => w.order))),
@@ -79,7 +89,10 @@ export class TwoRateKernel implements SimulationKernel {
     this.rowLength = this.lead + steps + 1;
     this.history = new Float64Array((first?.sourceCount ?? 0) * this.rowLength);
     this.automatic = new Uint8Array(count);
-    this.bases = new Int32Array(Math.max(1, ...this.flat.map((f) => f.inputSection.length)));
+    this.moves = new Uint8Array(first?.sourceCount ?? 0);
+    const mostGroups = Math.max(1, ...this.flat.map((f) => f.groups.source.length));
+    this.active = new Int32Array(mostGroups);
+    this.bases = new Int32Array(mostGroups);
   }
 
   simulate(
@@ -130,14 +143,15 @@ export class TwoRateKernel implements SimulationKernel {
       restLoop(bank, i * SLOTS, i, upset, bands[upsetIndex]?.[i] as number);
       automatic[i] = loop.automatic && !upset.opened.includes(i) ? 1 : 0;
     });
-    for (let i = 0; i < flat.inputSection.length; i += 1) {
-      this.bases[i] =
-        (flat.inputSource[i] as number) * rowLength + lead - 1 - (flat.inputDelay[i] as number);
+    const { source, delay } = flat.groups;
+    for (let g = 0; g < source.length; g += 1) {
+      this.bases[g] = (source[g] as number) * rowLength + lead - 1 - (delay[g] as number);
     }
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
+    const count = this.gather(flat, pushed);
 
     for (let k = 0; k <= steps; k += 1) {
-      this.advance(flat, k);
+      this.advance(flat, count, k);
       if (pushed >= 0) history[pushed * rowLength + lead + k] = upset.size;
       for (let o = 0; o < this.slowOrder.length; o += 1) {
         const i = this.slowOrder[o] as number;
@@ -162,12 +176,32 @@ export class TwoRateKernel implements SimulationKernel {
         const setpoint = this.setpointOf(i);
         const load = response.source === pushed ? upset.size : 0;
         const base = values[loop.measurement] as number;
-        const mean = this.runQuick(i, response, k * stride, setpoint, base, load, k === steps);
+        const mean = runQuickLoop(bank, i * SLOTS, response, {
+          from: k * stride,
+          scans: k === steps ? 1 : stride,
+          last: k === steps,
+          setpoint,
+          base,
+          load,
+          automatic: automatic[i] === 1,
+        });
         this.record(response.source, k, pushed, upset, mean);
         if (loop.setpointSource >= 0)
           history[loop.setpointSource * rowLength + lead + k] = setpoint;
       }
     }
+  }
+
+  private gather(flat: FlatUnit, pushed: number): number {
+    const { moves, automatic } = this;
+    moves.fill(0);
+    this.setup.network.loops.forEach((loop, i) => {
+      if (automatic[i] !== 1) return;
+      if ('source' in loop.drives) moves[loop.drives.source] = 1;
+      if (loop.setpointSource >= 0) moves[loop.setpointSource] = 1;
+    });
+    if (pushed >= 0) moves[pushed] = 1;
+    return gatherGroups(flat.groups, moves, this.active);
   }
 
   private setpointOf(i: number): number {
@@ -182,51 +216,11 @@ export class TwoRateKernel implements SimulationKernel {
     this.history[source * this.rowLength + this.lead + k] = load + output;
   }
 
-  /** One long step of a quick loop; the mean of its output. At the horizon only one scan is left. */
-  private runQuick(
-    i: number,
-    response: OwnResponse,
-    from: number,
-    setpoint: number,
-    base: number,
-    load: number,
-    last: boolean,
-  ): number {
-    const { bank } = this;
-    const at = i * SLOTS;
-    const scans = last ? 1 : this.setup.stride;
-    const runs = this.automatic[i] === 1;
-    let sum = 0;
-    for (let j = 0; j < scans; j += 1) {
-      const measured = base + response.read();
-      if (runs) scanLoop(bank, at, -1, setpoint, measured);
-      countSample(bank, at, from + j, setpoint, measured, last);
-      const output = bank[at + OUTPUT] as number;
-      sum += output;
-      response.advance(from + j, output + load);
-    }
-    return sum / scans;
-  }
-
   /** From long step k - 1 to k, and the PVs there. */
-  private advance(flat: FlatUnit, k: number): void {
-    const { values, states, history, bases } = this;
-    const { decay, measurement, inputSection, inputNow, inputBefore } = flat;
+  private advance(flat: FlatUnit, count: number, k: number): void {
+    const { values, states, history, active, bases } = this;
     for (let m = 0; m < values.length; m += 1) values[m] = 0;
-    for (let s = 0; s < decay.length; s += 1)
-      states[s] = (states[s] as number) * (decay[s] as number);
-    for (let i = 0; i < inputSection.length; i += 1) {
-      const at = (bases[i] as number) + k;
-      const s = inputSection[i] as number;
-      states[s] =
-        (states[s] as number) +
-        (inputNow[i] as number) * (history[at] as number) +
-        (inputBefore[i] as number) * (history[at - 1] as number);
-    }
-    for (let s = 0; s < decay.length; s += 1) {
-      const m = measurement[s] as number;
-      values[m] = (values[m] as number) + (states[s] as number);
-    }
+    advanceGroups(flat.groups, active, count, bases, states, history, k, values);
     if (flat.wide.length > 0) {
       const { wideStates, scratch, rowLength, lead } = this;
       advanceWide(flat.wide, wideStates, scratch, history, rowLength, lead, k, values);
@@ -243,59 +237,6 @@ export class TwoRateKernel implements SimulationKernel {
       if (upset.kind === 'setpoint' && upset.loop === i && !quick[i]) {
         out[to] = (out[to] as number) + (early[i] as number) * Math.abs(upset.size);
       }
-    }
-  }
-}
-
-/** A quick loop's own response at the scan: first-order sections behind their dead times. */
-class OwnResponse {
-  readonly source: number;
-  private readonly decay: Float64Array;
-  private readonly now: Float64Array;
-  private readonly before: Float64Array;
-  private readonly delay: Int32Array;
-  private readonly states: Float64Array;
-  private readonly history: Float64Array;
-  private readonly lead: number;
-
-  constructor(unit: SampledUnit, loop: Loop, scans: number) {
-    this.source = 'source' in loop.drives ? loop.drives.source : -1;
-    const channels = unit.channels.filter(
-      (c) => c.source === this.source && c.measurement === loop.measurement,
-    );
-    this.decay = Float64Array.from(channels, (c) => c.transition[0] as number);
-    this.now = Float64Array.from(channels, (c) => (c.now[0] as number) * (c.output[0] as number));
-    this.before = Float64Array.from(
-      channels,
-      (c) => (c.before[0] as number) * (c.output[0] as number),
-    );
-    this.delay = Int32Array.from(channels, (c) => c.delay);
-    this.states = new Float64Array(channels.length);
-    this.lead = Math.max(1, ...this.delay) + 1;
-    this.history = new Float64Array(this.lead + scans + 1);
-  }
-
-  rest(): void {
-    this.states.fill(0);
-    this.history.fill(0);
-  }
-
-  read(): number {
-    let sum = 0;
-    for (let s = 0; s < this.states.length; s += 1) sum += this.states[s] as number;
-    return sum;
-  }
-
-  /** The input is held from scan k to the next. */
-  advance(k: number, input: number): void {
-    const { states, decay, now, before, delay, history, lead } = this;
-    history[lead + k] = input;
-    for (let s = 0; s < states.length; s += 1) {
-      const at = lead + k - (delay[s] as number);
-      states[s] =
-        (states[s] as number) * (decay[s] as number) +
-        (now[s] as number) * (history[at] as number) +
-        (before[s] as number) * (history[at - 1] as number);
     }
   }
 }
