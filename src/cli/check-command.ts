@@ -35,7 +35,7 @@ async function check(file: string, options: Options): Promise<ExitCode> {
 
 function describeJob(jobFile: JobFile, bench: Workbench, threads: number): CheckReport {
   const { job, provenance, warnings } = jobFile;
-  const { compiled, preparation, tuning, coarse } = bench;
+  const { compiled, preparation, tuning, steps } = bench;
   const inJobUnit = (seconds: number): number =>
     Number((seconds / compiled.timeUnit).toPrecision(12));
   const reference = preparation.reference.settings;
@@ -53,7 +53,7 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
     run: {
       scan: inJobUnit(tuning.scan),
       step: inJobUnit(tuning.scan / tuning.stepsPerScan),
-      searchStep: inJobUnit(coarse.scan / coarse.stepsPerScan),
+      searchStep: inJobUnit(steps.searching),
       horizon: inJobUnit((tuning.steps * tuning.scan) / tuning.stepsPerScan),
       models: bench.variants.length,
       limits: preparation.limits.length,

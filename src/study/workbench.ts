@@ -32,6 +32,14 @@ export class Workbench {
     return this.compiled.job.search.models === 1 && this.variants.length === 1;
   }
 
+  /** s between steps of the simulation that judges, and of the one that searches. */
+  get steps(): { readonly judging: number; readonly searching: number } {
+    const { scan, stepsPerScan } = this.tuning;
+    const judging = scan / stepsPerScan;
+    const { searchStride } = this.preparation;
+    return { judging, searching: searchStride === 1 ? judging : scan * searchStride };
+  }
+
   /** The search's models, sampled for judging; nominal first. */
   judgedModels(): readonly SampledModel[] {
     this.judging ??= this.variants.map((v) => sampleVariant(this.compiled, this.tuning, v));
