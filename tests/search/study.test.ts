@@ -1,0 +1,221 @@
+import { describe, expect, it } from 'vitest';
+import {
+  type FrontDocument,
+  frontSchema,
+  type JobInput,
+  readJob,
+} from '../../src/contract/index.js';
+import {
+  canonicalText,
+  hashOf,
+  runStudy,
+  type StudyContext,
+  type StudyOutcome,
+  type Task,
+  type TaskResult,
+  TaskRunner,
+} from '../../src/study/index.js';
+import { singleLoop } from '../service/single-loop.js';
+
+/** Two temperatures that each answer both valves, quick to solve; `change` makes the case at hand. */
+function pair(change: (job: JobInput) => void = () => undefined): JobInput {
+  const first = (gain: number, timeConstant: number, deadTime: number) =>
+    ({ kind: 'first-order', gain, timeConstant, deadTime }) as const;
+  const loop = (k: number, gain: number): JobInput['loops'][number] => ({
+    tag: `TC-${k}`,
+    measurement: `TI-${k}`,
+    drives: `FV-${k}`,
+    controller: { terms: 'PI', scan: 0.5, gainIn: 'engineering' },
+    present: { gain, integral: 12 },
+  });
+  const job: JobInput = {
+    format: 'heddle-job/1',
+    unit: {
+      name: 'Twin heater',
+      timeUnit: 'min',
+      horizon: 80,
+      measurements: [1, 2].map((k) => ({
+        tag: `TI-${k}`,
+        unit: 'degC',
+        low: 0,
+        high: 100,
+        noise: 0.05,
+      })),
+      actuators: [1, 2].map((k) => ({ tag: `FV-${k}`, unit: '%', low: 0, high: 100, at: 50 })),
+      responses: [
+        { from: 'FV-1', to: 'TI-1', model: first(0.9, 8, 2) },
+        { from: 'FV-2', to: 'TI-1', model: first(0.4, 11, 3) },
+        { from: 'FV-1', to: 'TI-2', model: first(0.3, 10, 4) },
+        { from: 'FV-2', to: 'TI-2', model: first(1.1, 7, 1.5) },
+      ],
+    },
+    loops: [loop(1, 0.8), loop(2, 0.7)],
+    search: { alternatives: 3, effort: 'quick', models: 2 },
+  };
+  change(job);
+  return job;
+}
+
+function contextOf(document: JobInput): StudyContext {
+  const read = readJob(JSON.stringify(document));
+  if (!read.ok) throw new TypeError(read.faults.map((f) => `${f.path}: ${f.problem}`).join('\n'));
+  return { job: read.job, provenance: { job: hashOf(document), compute: 'test' } };
+}
+
+async function solve(document: JobInput): Promise<StudyOutcome> {
+  const context = contextOf(document);
+  const runner = new TaskRunner();
+  return runStudy(context, async (task) => runner.run(context, task));
+}
+
+const loopOf = (front: FrontDocument, k: number, tag: string) =>
+  front.alternatives[k]?.settings[tag];
+
+describe('a study', () => {
+  it('gives the same bytes whoever runs its tasks, in whatever order they end', async () => {
+    const context = contextOf(pair());
+    const alone = await solve(pair());
+    // Two workers that share nothing, the last task of each stage answered first.
+    const workers = [new TaskRunner(), new TaskRunner()];
+    let waiting: (() => void)[] = [];
+    let count = 0;
+    const together = await runStudy(context, (task: Task) => {
+      const worker = workers[count % 2] as TaskRunner;
+      count += 1;
+      return new Promise<TaskResult>((resolve) => {
+        waiting.push(() => resolve(worker.run(context, task)));
+        queueMicrotask(() => {
+          const ready = waiting.toReversed();
+          waiting = [];
+          for (const answer of ready) answer();
+        });
+      });
+    });
+    expect(canonicalText(together.front)).toBe(canonicalText(alone.front));
+    expect(together.details.map(hashOf)).toEqual(alone.details.map(hashOf));
+  });
+
+  it('answers in the shape of its schema, with the hash of each alternative document', async () => {
+    const { front, details } = await solve(pair());
+    expect(frontSchema.safeParse(front).error).toBeUndefined();
+    expect(front.alternatives.length).toBeGreaterThan(0);
+    expect(front.alternatives.map((a) => a.detail)).toEqual(details.map(hashOf));
+  });
+
+  it('keeps every setting inside bounds, maxChange and the dial of its controller', async () => {
+    const { front } = await solve(
+      pair((job) => {
+        const [first, second] = job.loops as [JobInput['loops'][number], JobInput['loops'][number]];
+        first.maxChange = 1.5;
+        first.settingStep = { gain: 0.05, integral: 0.5 };
+        second.bounds = { gain: [0.65, 0.9] };
+      }),
+    );
+    expect(front.alternatives.length).toBeGreaterThan(0);
+    front.alternatives.forEach((_, k) => {
+      const one = loopOf(front, k, 'TC-1');
+      const two = loopOf(front, k, 'TC-2');
+      expect(one?.gain).toBeGreaterThanOrEqual(0.8 / 1.5);
+      expect(one?.gain).toBeLessThanOrEqual(0.8 * 1.5);
+      expect(one?.integral).toBeGreaterThanOrEqual(8);
+      expect(one?.integral).toBeLessThanOrEqual(18);
+      expect(Math.abs(((one?.gain ?? 0) / 0.05) % 1)).toBeOneOf([
+        expect.closeTo(0, 6),
+        expect.closeTo(1, 6),
+      ]);
+      expect(((one?.integral ?? 0.1) / 0.5) % 1).toBeCloseTo(0, 9);
+      expect(two?.gain).toBeGreaterThanOrEqual(0.65);
+      expect(two?.gain).toBeLessThanOrEqual(0.9);
+    });
+  });
+
+  it('leaves kept loops as they are and loops in manual out', async () => {
+    const kept = await solve(
+      pair((job) => Object.assign(job.loops[1] as object, { task: 'keep' })),
+    );
+    kept.front.alternatives.forEach((_, k) => {
+      expect(loopOf(kept.front, k, 'TC-2')).toEqual({ gain: 0.7, integral: 12 });
+    });
+    expect(kept.front.alternatives.length).toBeGreaterThan(0);
+    const manual = await solve(
+      pair((job) => Object.assign(job.loops[1] as object, { task: 'manual' })),
+    );
+    expect(manual.front.alternatives.length).toBeGreaterThan(0);
+    expect(Object.keys(manual.front.alternatives[0]?.settings ?? {})).toEqual(['TC-1']);
+  });
+
+  it('takes another reference where today is unstable, says which, and still finds a front', async () => {
+    const { front } = await solve(
+      pair((job) => {
+        for (const loop of job.loops) loop.present = { gain: 6, integral: 1 };
+        for (const loop of job.loops) loop.maxChange = 100;
+      }),
+    );
+    expect(front.present?.stable).toBe(false);
+    expect(front.present?.objectives).toEqual({ speed: null, robustness: null });
+    expect(front.present?.nominal.loops['TC-1']?.peakSensitivity).toBeNull();
+    expect(front.reference).toMatch(/^(BLT|SIMC)/);
+    expect(front.alternatives.length).toBeGreaterThan(0);
+  });
+
+  it('brings a loop into service that stands in manual today, bounded about a published rule', async () => {
+    const { front } = await solve(
+      pair((job) => {
+        delete (job.loops[1] as { present?: unknown }).present;
+      }),
+    );
+    expect(front.present).toBeNull();
+    expect(front.reference).toMatch(/^(BLT|SIMC)/);
+    expect(front.alternatives.length).toBeGreaterThan(0);
+    expect(loopOf(front, 0, 'TC-2')?.gain).toBeGreaterThan(0);
+  });
+
+  it('names what stands in the way where limits cannot be met together', async () => {
+    const { front } = await solve(
+      pair((job) => {
+        const loop = job.loops[0] as JobInput['loops'][number];
+        loop.limits = { settlingTime: 3, peakSensitivity: 1.1 };
+      }),
+    );
+    expect(front.alternatives).toEqual([]);
+    const { infeasible } = front;
+    expect(infeasible?.nearest.length).toBeGreaterThan(0);
+    const named = infeasible?.limits.map((l) => `${l.loop} ${l.limit}`) ?? [];
+    expect(named.length).toBeGreaterThan(0);
+    for (const name of named) expect(['TC-1 settlingTime', 'TC-1 peakSensitivity']).toContain(name);
+    expect(infeasible?.words.join(' ')).toContain('TC-1');
+  });
+
+  it('finds for one loop with dead time what a fine grid of settings finds', async () => {
+    const document = singleLoop();
+    document.search = { alternatives: 4, effort: 'standard', models: 1 };
+    const { front } = await solve(document);
+    const context = contextOf(document);
+    const { compileJob, prepareJob, Workbench } = await import('../../src/study/index.js');
+    const { judgeModel, speedOf } = await import('../../src/scoring/index.js');
+    const { internalSettings } = await import('../../src/study/variables.js');
+    const compiled = compileJob(context.job);
+    const bench = new Workbench(compiled, prepareJob(compiled));
+    const model = bench.judgedModels()[0];
+    if (model === undefined) throw new TypeError('no model');
+    const detail = { singularValues: false, manualCases: false };
+    // All settings on a grid of 2 % in each, by the path that judges.
+    const scored: { speed: number; peak: number }[] = [];
+    for (let gain = 0.3; gain <= 4.8; gain *= 1.04) {
+      for (let integral = 2; integral <= 32; integral *= 1.04) {
+        const settings = internalSettings(compiled.space, [{ gain, integral }]);
+        const { frequency } = judgeModel({ ...bench.tuning, upsets: [] }, model, settings, detail);
+        const peak = frequency.loops[0]?.peakSensitivity ?? 9;
+        if (peak > 2) continue;
+        const { upsets } = judgeModel(bench.tuning, model, settings, detail);
+        if (upsets === null) continue;
+        scored.push({ speed: speedOf(bench.tuning, upsets, bench.preparation.speed), peak });
+      }
+    }
+    for (const { objectives } of front.alternatives) {
+      const level = objectives.robustness as number;
+      const rivals = scored.filter((s) => s.peak <= level).map((s) => s.speed);
+      expect(objectives.speed as number).toBeLessThan(1.005 * Math.min(...rivals));
+    }
+  });
+});
