@@ -1,5 +1,5 @@
 import { Command } from 'commander';
-import { evaluateSettings, type Workbench } from '../study/index.js';
+import { countSignChanges, evaluateSettings, type Workbench } from '../study/index.js';
 import { estimateSeconds } from './estimate.js';
 import { type JobFile, openWorkbench, readJobFile } from './job-file.js';
 import { jsonOption, threadsOption, wantsJson } from './options.js';
@@ -49,7 +49,7 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
     loops: loopsOf(job),
     upsets: { setpoint: count('setpoint'), load: count('load'), disturbance: count('disturbance') },
     interaction: { rga, rgaLoops, niederlinski },
-    determinant: { models: bench.variants.length, signChanges: 0 },
+    determinant: countSignChanges(bench),
     run: {
       scan: inJobUnit(tuning.scan),
       step: inJobUnit(tuning.scan / tuning.stepsPerScan),
@@ -63,11 +63,16 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
       seed: job.search.seed,
     },
     reference: preparation.reference.method,
-    presentIsStable: preparation.presentIsStable,
+    present: presentOf(bench),
     assumed: preparation.assumed,
     warnings,
     estimate: { seconds: estimateSeconds(bench, threads), threads },
   };
+}
+
+function presentOf({ compiled, preparation }: Workbench): CheckReport['present'] {
+  if (!compiled.hasPresent) return 'incomplete';
+  return preparation.presentIsStable ? 'stable' : 'unstable';
 }
 
 function sizeOf({ unit }: JobFile['job']): CheckReport['unit'] {

@@ -1,7 +1,12 @@
 import { Command } from 'commander';
-import { readSettings, type SettingsDocument } from '../contract/index.js';
-import { evaluateSettings } from '../study/index.js';
-import { type JobFile, openWorkbench, readJobFile } from './job-file.js';
+import {
+  type JobDocument,
+  type LoopSettingsDocument,
+  readSettings,
+  type Warning,
+} from '../contract/index.js';
+import { evaluateSettings, type Workbench } from '../study/index.js';
+import { openWorkbench, readJobFile } from './job-file.js';
 import { judgeLimits } from './judged-limits.js';
 import { jsonOption, option, wantsJson } from './options.js';
 import { paperOf, writeJson } from './output.js';
@@ -33,28 +38,50 @@ async function evaluate(file: string, options: Options): Promise<ExitCode> {
     throw refuseOption('--settings', standardInput, problem, 'a file, where the job comes from -');
   }
   const jobFile = await readJobFile(file);
-  const other = options.settings === undefined ? null : await readOther(options.settings, jobFile);
+  const { job, warnings, provenance } = jobFile;
+  const other = options.settings === undefined ? null : await readOther(options.settings, job);
   const bench = openWorkbench(jobFile);
-  const today = bench.compiled.space.base;
-  const own = jobFile.job.loops.map(({ tag }, i) => other?.settings[tag] ?? today[i] ?? null);
-  const evaluation = evaluateSettings(bench, own, jobFile.provenance, jobFile.warnings);
+  const { own, subject, notices } = other ?? presentSubject(bench, job);
+  const evaluation = evaluateSettings(bench, own, provenance, [...warnings, ...notices]);
   if (json) {
     writeJson(evaluation);
     return exitCode.done;
   }
-  const verdicts = judgeLimits(bench.preparation.limits, jobFile.job, evaluation);
-  const subject = other === null ? "Today's settings" : `The settings of ${other.name}`;
-  const view = { evaluation, job: jobFile.job, subject, verdicts };
+  const verdicts = judgeLimits(bench.preparation.limits, job, evaluation);
+  const view = { evaluation, job, subject, verdicts };
   process.stdout.write(evaluationPage(view, paperOf(process.stdout)));
   return exitCode.done;
 }
 
-async function readOther(
-  file: string,
-  { job }: JobFile,
-): Promise<{ name: string; settings: SettingsDocument }> {
-  const document = await readDocument(file);
-  const read = readSettings(document.bytes, job);
-  if (!read.ok) throw refuseDocument(document.name, read);
-  return { name: document.name, settings: read.settings };
+/** Settings to score, by loop in the job's order, whose they are, and what to know of them. */
+interface Subject {
+  readonly own: readonly (LoopSettingsDocument | null)[];
+  readonly subject: string;
+  readonly notices: readonly Warning[];
+}
+
+/** Today's settings; where a closed loop has none, the reference that a speed of 1 means instead. */
+function presentSubject({ compiled, preparation }: Workbench, job: JobDocument): Subject {
+  if (compiled.hasPresent) {
+    return { own: compiled.space.base, subject: "Today's settings", notices: [] };
+  }
+  const { method, settings } = preparation.reference;
+  const bare = job.loops.filter(({ task, present }) => task !== 'manual' && present === undefined);
+  const problem = `there is no present tuning to score; what is scored are the settings of ${method}`;
+  return {
+    own: settings,
+    subject: `The settings of ${method}, since there is no present tuning`,
+    notices: [{ path: 'loops', value: bare.map(({ tag }) => tag).join(', '), problem }],
+  };
+}
+
+async function readOther(file: string, job: JobDocument): Promise<Subject> {
+  const { name, bytes } = await readDocument(file);
+  const read = readSettings(bytes, job);
+  if (!read.ok) throw refuseDocument(name, read);
+  return {
+    own: job.loops.map(({ tag }) => read.settings[tag] ?? null),
+    subject: `The settings of ${name}`,
+    notices: read.warnings.map((warning) => ({ ...warning, path: `${name}: ${warning.path}` })),
+  };
 }

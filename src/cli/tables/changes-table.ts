@@ -1,7 +1,7 @@
 import { stripVTControlCharacters } from 'node:util';
 import type { JobDocument, LoopDocument, SettingsDocument } from '../../contract/index.js';
-import { fixed, significant } from './figures.js';
-import { type Column, grid } from './grid.js';
+import { figure, fixed, significant } from './figures.js';
+import { grid } from './grid.js';
 import type { Paper } from './paper.js';
 import { type SettingName, settingNames, settingUnits } from './setting-units.js';
 
@@ -55,45 +55,68 @@ interface View {
   readonly shown: readonly SettingName[];
 }
 
+/** One setting of one loop as shown: what comes before it, the number, and what is said of it. */
+interface Cell {
+  readonly before: string;
+  readonly value: string;
+  readonly behind: string;
+}
+
 /** @param withToday  repeats today's number before every new one */
 function tableOf(view: View, withToday: boolean, paper: Paper): string {
   const { job, present, proposals, changing, shown } = view;
-  const { paint } = paper;
-  const columns: Column[] = [{ head: '' }, { head: 'loop' }];
-  for (const name of shown) {
-    if (withToday) columns.push({ head: '', lean: 'right' });
-    columns.push({ head: name, lean: 'right' }, { head: '' });
-  }
-  const rows: string[][] = changing.map((loop, at) => {
+  const today = changing.map((loop) => {
     const units = settingUnits(job, loop);
-    const cells = shown.flatMap((name) => {
+    return shown.map((name): Cell => {
       const value = present[loop.tag]?.[name];
-      const pair = value === undefined ? ['', ''] : [number(value), paint.faint(units[name])];
-      return withToday ? ['', ...pair] : pair;
+      const isSet = proposals.some(({ settings }) => settings[loop.tag]?.[name] !== undefined);
+      if (value === undefined && !isSet) return empty;
+      return { before: '', value: figure(value, 4), behind: units[name] };
     });
-    return [at === 0 ? paint.strong('today') : '', loop.tag, ...cells];
   });
-  for (const { name: title, settings } of proposals) {
-    changing.forEach(({ tag }, at) => {
-      const cells = shown.flatMap((name) =>
-        changeCells(present[tag]?.[name], settings[tag]?.[name], withToday, paper),
-      );
-      rows.push([at === 0 ? paint.strong(title) : '', tag, ...cells]);
-    });
-  }
-  return grid(columns, rows, paper);
+  const proposed = proposals.map(({ settings }) =>
+    changing.map(({ tag }) =>
+      shown.map((name) => changed(present[tag]?.[name], settings[tag]?.[name], withToday)),
+    ),
+  );
+  const all = [today, ...proposed];
+  const lines = shown.map((name, at) => {
+    const column = all.flat().map((cells) => cells[at] ?? empty);
+    const before = Math.max(...column.map((cell) => cell.before.length));
+    const value = Math.max(name.length - before, ...column.map((cell) => cell.value.length));
+    return { name, before, value };
+  });
+  const titles = ['today', ...proposals.map(({ name }) => name)];
+  const rows = all.flatMap((block, index) =>
+    block.map((cells, at) => [
+      at === 0 ? paper.paint.strong(titles[index] ?? '') : '',
+      changing[at]?.tag ?? '',
+      ...cells.map((cell, k) => aligned(cell, lines[k] as (typeof lines)[number], paper)),
+    ]),
+  );
+  const columns = lines.map(({ name, before, value }) => ({ head: name.padStart(before + value) }));
+  return grid([{ head: '' }, { head: 'loop' }, ...columns], rows, paper);
 }
 
-function changeCells(
-  before: number | undefined,
-  after: number | undefined,
-  withToday: boolean,
+const empty: Cell = { before: '', value: '', behind: '' };
+
+function changed(before: number | undefined, after: number | undefined, withToday: boolean): Cell {
+  if (after === undefined) return empty;
+  return {
+    before: withToday && before !== undefined ? `${number(before)} -> ` : '',
+    value: number(after),
+    behind: before === undefined || before === 0 ? '' : `x${fixed(after / before, 2)}`,
+  };
+}
+
+/** Numbers below each other end in one column; what is said of them begins in one. */
+function aligned(
+  { before, value, behind }: Cell,
+  room: { readonly before: number; readonly value: number },
   { paint }: Paper,
-): string[] {
-  const today = withToday ? [before === undefined ? '' : paint.faint(`${number(before)} ->`)] : [];
-  if (after === undefined) return [...today.map(() => ''), '', ''];
-  const ratio = before === undefined || before === 0 ? '' : `x${fixed(after / before, 2)}`;
-  return [...today, number(after), paint.faint(ratio)];
+): string {
+  const front = paint.faint(before.padStart(room.before));
+  return `${front}${value.padStart(room.value)} ${paint.faint(behind)}`;
 }
 
 const number = (value: number): string => significant(value, 4);

@@ -49,7 +49,8 @@ export interface CheckReport {
   };
   /** What a speed of 1 means. */
   readonly reference: string;
-  readonly presentIsStable: boolean;
+  /** Today's settings on the nominal unit; incomplete where a closed loop has none. */
+  readonly present: 'stable' | 'unstable' | 'incomplete';
   readonly assumed: readonly string[];
   readonly warnings: readonly Warning[];
   /** A rough guess. */
@@ -118,18 +119,17 @@ function determinantPart({ determinant }: CheckReport, paper: Paper): string | n
   return section('Sign of the determinant', remarks([paper.paint.warn(words)], paper), paper);
 }
 
-function runFacts(
-  { run, unit, reference, presentIsStable, estimate }: CheckReport,
-  paper: Paper,
-): string {
+function runFacts({ run, unit, reference, present, estimate }: CheckReport, paper: Paper): string {
   const time = (value: number): string => `${significant(value, 4)} ${unit.timeUnit}`;
   const steps =
     run.searchStep === run.step
       ? `${time(run.step)}, in the search too`
       : `${time(run.step)}; the search takes ${time(run.searchStep)}, shown to differ little`;
-  const speed = presentIsStable
-    ? "1.00 is as fast as today's settings"
-    : `today's settings are unstable, so 1.00 is as fast as ${reference}`;
+  const speed = {
+    stable: "1.00 is as fast as today's settings",
+    unstable: `today's settings are unstable, so 1.00 is as fast as ${reference}`,
+    incomplete: `not every loop has settings today, so 1.00 is as fast as ${reference}`,
+  }[present];
   const models =
     run.models === 1 ? 'one, taken as exact' : `${run.models} for the search, fresh ones to verify`;
   return facts(

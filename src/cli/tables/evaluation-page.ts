@@ -11,7 +11,7 @@ import { interactionTable } from './interaction-table.js';
 import type { LimitVerdict } from './limit-verdicts.js';
 import { limitInWords } from './limit-words.js';
 import type { Paper } from './paper.js';
-import { facts, page, remarks, section } from './prose.js';
+import { facts, page, remarks, section, wrapped } from './prose.js';
 import { loopUnits } from './setting-units.js';
 
 export interface EvaluationView {
@@ -27,7 +27,8 @@ export function evaluationPage(view: EvaluationView, paper: Paper): string {
   const { evaluation, job, subject } = view;
   const { scored } = evaluation;
   const { paint } = paper;
-  const heading = `${paint.strong(job.unit.name)}\n${subject}, ${conditions(evaluation, job)}`;
+  const scope = `${subject}, ${conditions(evaluation, job)}`;
+  const heading = `${paint.strong(job.unit.name)}\n${wrapped(scope, paper.width).join('\n')}`;
   if (!scored.nominal.unit.stable) {
     return page([heading, unstablePart(view, paper), noticesPart(evaluation, paper)]);
   }

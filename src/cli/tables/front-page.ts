@@ -3,6 +3,7 @@ import type {
   FrontDocument,
   Infeasibility,
   JobDocument,
+  SettingsDocument,
 } from '../../contract/index.js';
 import { changesTable, changingLoops } from './changes-table.js';
 import { counted, duration, noFigure, significant } from './figures.js';
@@ -74,16 +75,21 @@ function verificationWords({ alternatives }: FrontDocument): string[] {
 }
 
 function changesPart(front: FrontDocument, job: JobDocument, paper: Paper): string | null {
-  const { present, alternatives } = front;
-  if (present === null || alternatives.length === 0) return null;
+  const { alternatives } = front;
+  if (alternatives.length === 0) return null;
+  const present = presentSettings(job);
   const named = alternatives.map(({ id, settings }) => ({ name: id, settings }));
-  const loops = changingLoops(job, present.settings, named).length;
+  const loops = changingLoops(job, present, named).length;
   const shown = chooseShown(named.length, loops).map((index) => named[index] as (typeof named)[0]);
-  const table = changesTable(job, present.settings, shown, paper);
+  const table = changesTable(job, present, shown, paper);
   const rest = named.length - shown.length;
   const note = rest === 0 ? '' : `\n  ${rest} more are in the front document.`;
   return section("Settings, each with its ratio to today's", `${table}${note}`, paper);
 }
+
+/** Settings of the loops that have any today. */
+const presentSettings = (job: JobDocument): SettingsDocument =>
+  Object.fromEntries(job.loops.flatMap(({ tag, present }) => (present ? [[tag, present]] : [])));
 
 /** Which of the alternatives to print: all, or as many as fit, evenly over the front. */
 function chooseShown(count: number, rowsEach: number): number[] {
@@ -130,11 +136,8 @@ function infeasiblePart(infeasible: Infeasibility, job: JobDocument, paper: Pape
   }
   const nearest = infeasible.nearest[0];
   if (nearest !== undefined) {
-    const today = Object.fromEntries(
-      job.loops.flatMap(({ tag, present }) => (present ? [[tag, present]] : [])),
-    );
     const nearby = [{ name: 'nearest', settings: nearest.settings }];
-    const table = changesTable(job, today, nearby, paper);
+    const table = changesTable(job, presentSettings(job), nearby, paper);
     parts.push(section("The nearest tuning set, with its ratio to today's", table, paper));
   }
   return parts.join('\n\n');
