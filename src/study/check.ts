@@ -44,7 +44,7 @@ export function planWork(bench: Workbench): PlannedWork {
     evaluations:
       dimension === 0
         ? 0
-        : 2 * plan.attempts * total(plan.anchor) +
+        : (plan.attempts + 1) * total(plan.anchor) +
           levels * total(plan.sweep) +
           refined * total(plan.refine),
     judgements: Math.round(models * (sets + 1.15 * search.alternatives * roundsEach)),

@@ -9,7 +9,7 @@ export interface EffortPlan {
   /** Independent searches for each end of the front. */
   readonly attempts: number;
   readonly anchor: Plan;
-  /** A level met for the first time: a little exploring, then descent. */
+  /** A level met for the first time: in few dimensions a little exploring, then descent. */
   readonly sweep: Plan;
   /** A level started from its neighbours' optima. */
   readonly refine: Plan;
@@ -30,29 +30,31 @@ export function effortPlan(effort: SearchDocument['effort'], dimension: number):
     Math.max(gradients, Math.round(scale * evaluations));
   // The simplex loses its way beyond a handful of dimensions; descent has long converged by then.
   const polish = dimension <= 6 ? count(25 * dimension) : 0;
+  // In many dimensions the published rules are better starts than anything chance comes upon.
+  const few = dimension <= 6;
   return {
     attempts: effort === 'deep' ? 4 : 2,
     anchor: {
-      globalEvaluations: count(120 + 30 * dimension),
-      localEvaluations: count(25 * gradients),
+      globalEvaluations: count(few ? 120 + 30 * dimension : 60 + 6 * dimension),
+      localEvaluations: count(36 * gradients),
       polishEvaluations: polish,
     },
     sweep: {
-      globalEvaluations: count(10 * dimension),
-      localEvaluations: count(18 * gradients),
+      globalEvaluations: few ? count(10 * dimension) : 0,
+      localEvaluations: count(36 * gradients),
       polishEvaluations: polish,
     },
     refine: {
       globalEvaluations: 0,
-      localEvaluations: count(15 * gradients),
+      localEvaluations: count(14 * gradients),
       polishEvaluations: polish,
     },
     mend: {
       globalEvaluations: 0,
-      localEvaluations: count(12 * gradients),
+      localEvaluations: count(8 * gradients),
       polishEvaluations: 0,
     },
-    firstShare: 0.5,
+    firstShare: 0.3,
     gapShare: effort === 'quick' ? 0.1 : 0.25,
   };
 }

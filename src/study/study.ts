@@ -109,11 +109,11 @@ function endTasks(
 ): Task[] {
   const tasks: Task[] = [];
   if (dimension > 0) {
-    for (const aim of ['fastest', 'lowest'] as const) {
-      for (let attempt = 0; attempt < attempts; attempt += 1) {
-        tasks.push({ kind: 'anchor', preparation, aim, attempt });
-      }
+    for (let attempt = 0; attempt < attempts; attempt += 1) {
+      tasks.push({ kind: 'anchor', preparation, aim: 'fastest', attempt });
     }
+    // How robust the unit can be made only marks where the levels begin; once is enough.
+    tasks.push({ kind: 'anchor', preparation, aim: 'lowest', attempt: 0 });
   }
   if (hasPresent) tasks.push({ kind: 'score', preparation, which: 'present' });
   preparation.baselines.forEach((baseline, which) => {
@@ -200,6 +200,10 @@ function levelsInGaps(best: readonly FoundPoint[], count: number): number[] {
     .sort((a, b) => a - b);
 }
 
+/**
+ * Blocks of neighbouring levels, each from the highest down: the optimum under a level, a little
+ * over the next one, is a better start for that than a slow one well inside it.
+ */
 function levelTasks(
   preparation: Preparation,
   levels: readonly number[],
@@ -208,8 +212,9 @@ function levelTasks(
   explore: boolean,
 ): Task[] {
   const tasks: Task[] = [];
-  for (let k = 0; k < levels.length; k += blockSize) {
-    const block = levels.slice(k, k + blockSize);
+  const falling = levels.toSorted((a, b) => b - a);
+  for (let k = 0; k < falling.length; k += blockSize) {
+    const block = falling.slice(k, k + blockSize);
     tasks.push({
       kind: 'levels',
       preparation,

@@ -1,5 +1,11 @@
 import { Random } from '../base/index.js';
-import { lowestLevel, type Point, solveLevel } from '../search/index.js';
+import {
+  type LevelOutcome,
+  lowestLevel,
+  type Plan,
+  type Point,
+  solveLevel,
+} from '../search/index.js';
 import { type CompiledJob, compileJob } from './compiled-job.js';
 import { effortPlan, highestLevel } from './effort.js';
 import { scoreFully } from './evaluation.js';
@@ -77,10 +83,12 @@ export class TaskRunner {
     const plan = effortPlan(effort, problem.dimension).anchor;
     const starts = startingPoints(compiled, task.preparation);
     const random = new Random(seed, task.aim === 'lowest' ? 10 : 11, task.attempt);
-    const outcome =
+    problem.focusOn([]);
+    const outcome = solveFocused(problem, starts, plan, (from, budget) =>
       task.aim === 'lowest'
-        ? lowestLevel(problem, starts, plan, random)
-        : solveLevel(problem, highestLevel, starts, plan, random);
+        ? lowestLevel(problem, from, budget, random)
+        : solveLevel(problem, highestLevel, from, budget, random),
+    );
     return {
       kind: 'anchor',
       aim: task.aim,
@@ -100,21 +108,18 @@ export class TaskRunner {
     const points: FoundPoint[] = [];
     let evaluations = 0;
     let before: Float64Array<ArrayBufferLike> | undefined;
+    problem.focusOn([]);
     task.levels.forEach(({ level, starts }, k) => {
       const from: Float64Array[] = starts.map((x) => Float64Array.from(x));
       if (before !== undefined) from.push(before);
-      const outcome = solveLevel(
-        problem,
-        level,
-        from,
-        plan,
-        new Random(seed, 12, ...task.stream, k),
+      const random = new Random(seed, 12, ...task.stream, k);
+      const outcome = solveFocused(problem, from, plan, (start, budget) =>
+        solveLevel(problem, level, start, budget, random),
       );
       evaluations += outcome.evaluations;
       points.push(...selectPoints(undefined, outcome.points));
-      if (outcome.best === undefined) return;
-      before = outcome.best.x;
-      best.push(found(outcome.best));
+      before = outcome.nearest.x;
+      if (outcome.best !== undefined) best.push(found(outcome.best));
     });
     return { kind: 'levels', best, points, evaluations };
   }
@@ -128,6 +133,38 @@ export class TaskRunner {
     const { nominal, models } = scoreFully(bench, own, fresh);
     return { kind: 'score', scored: scoredSettings(bench, own, nominal, models, false) };
   }
+}
+
+/** How often a search is taken up again with models that its best point turned out to break. */
+const mostRefocusings = 3;
+
+/**
+ * Solve with the models in focus that decide at the starts, and again with every model that the best
+ * point breaks, until it breaks none. A best point that still breaks one is none.
+ */
+function solveFocused(
+  problem: TuningProblem,
+  starts: readonly Float64Array[],
+  plan: Plan,
+  solve: (starts: readonly Float64Array[], plan: Plan) => LevelOutcome,
+): LevelOutcome {
+  const focus = new Set(starts.flatMap((x) => problem.decidingModels(x)));
+  problem.focusOn([...focus]);
+  let outcome = solve(starts, plan);
+  let evaluations = outcome.evaluations + starts.length;
+  for (let round = 0; outcome.best !== undefined; round += 1) {
+    const breaking = problem.breakingModels(outcome.best.x);
+    evaluations += 1;
+    if (breaking.length === 0) return { ...outcome, evaluations };
+    if (round === mostRefocusings) break;
+    for (const model of breaking) focus.add(model);
+    problem.focusOn([...focus]);
+    const again = { ...plan, globalEvaluations: 0 };
+    outcome = solve([outcome.best.x], again);
+    evaluations += outcome.evaluations;
+  }
+  const { best: _, ...without } = outcome;
+  return { ...without, evaluations };
 }
 
 const found = (point: Point): FoundPoint => ({

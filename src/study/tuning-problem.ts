@@ -38,17 +38,22 @@ export interface SearchSetup {
 
 /**
  * A tuning job as the search sees it: a point is a tuning set, cost its speed on the nominal unit,
- * levelled the peak sensitivity of
- * every retuned loop on every model in every band of frequency, constraints all limits on all
- * models they hold for. A set that is unstable on any model lies outside the domain.
+ * levelled the peak sensitivity of every retuned loop on every model in every band of frequency,
+ * constraints all limits on all models they hold for. A set that is unstable on any model lies
+ * outside the domain.
+ *
+ * Few models decide a limit on simulated figures. A search may therefore simulate those in focus
+ * alone, as long as it asks in the end which others break a limit, and solves again with them.
  */
 export class TuningProblem implements Problem {
   readonly dimension: number;
   readonly levelledCount: number;
   readonly constraintCount: number;
   private readonly retuned: readonly number[];
-  /** Models that some limit on simulated figures holds for. */
+  /** Models that some limit on simulated figures holds for; nominal always. */
   private readonly simulated: readonly number[];
+  /** Those of them that are simulated now. */
+  private focus: readonly number[];
   private readonly tightened: readonly { readonly limit: Limit; readonly bound: number }[];
 
   constructor(private readonly setup: SearchSetup) {
@@ -63,6 +68,46 @@ export class TuningProblem implements Problem {
     this.constraintCount = tuning.limits.reduce((n, l) => n + (l.nominal ? 1 : models.length), 0);
     const everywhere = tuning.limits.some((l) => !l.nominal && needsSimulation(l.quantity));
     this.simulated = everywhere ? models.map((_, m) => m) : [0];
+    this.focus = this.simulated;
+  }
+
+  /** Simulate the nominal model and the given ones alone from now on. */
+  focusOn(models: readonly number[]): void {
+    this.focus = this.simulated.filter((m) => m === 0 || models.includes(m));
+  }
+
+  /** By limit on simulated figures, the model that comes nearest to it, or over it, at a point. */
+  decidingModels(x: Float64Array): number[] {
+    return [...new Set(this.rank(x).map(({ model }) => model))];
+  }
+
+  /** Models that break a limit at a point, of all models, whatever the focus. */
+  breakingModels(x: Float64Array): number[] {
+    return [...new Set(this.rank(x, 0).map(({ model }) => model))];
+  }
+
+  /** The worst model of each simulated limit whose excess is above `least`. */
+  private rank(x: Float64Array, least = Number.NEGATIVE_INFINITY): { model: number }[] {
+    if (this.simulated.length === 1) return [];
+    const { focus } = this;
+    this.focus = this.simulated;
+    const { defined, constraints } = this.evaluateOne(x);
+    this.focus = focus;
+    if (!defined) return [];
+    const ranked: { model: number }[] = [];
+    let at = 0;
+    for (const { limit } of this.tightened) {
+      const count = limit.nominal ? 1 : this.setup.loops.length;
+      if (count > 1 && needsSimulation(limit.quantity)) {
+        let model = 0;
+        for (let m = 1; m < count; m += 1) {
+          if ((constraints[at + m] as number) > (constraints[at + model] as number)) model = m;
+        }
+        if ((constraints[at + model] as number) > least) ranked.push({ model });
+      }
+      at += count;
+    }
+    return ranked;
   }
 
   evaluate(points: readonly Float64Array[]): readonly Evaluation[] {
@@ -85,9 +130,9 @@ export class TuningProblem implements Problem {
         at += bands;
       }
     }
-    const figures = simulation.simulate(settings, this.simulated);
+    const figures = simulation.simulate(settings, this.focus);
     const time = new Map<number, LoopTimeFigures[]>();
-    this.simulated.forEach((m, k) => {
+    this.focus.forEach((m, k) => {
       const own = figures[k] as UpsetFigures[][];
       time.set(
         m,

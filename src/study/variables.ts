@@ -27,11 +27,14 @@ export interface DecisionSpace {
   readonly gainSigns: readonly number[];
 }
 
-/** Value of a variable at a position in [0, 1]: logarithmic, or square where the range starts at 0. */
+/**
+ * Value of a variable at a position in [0, 1]: logarithmic, or linear where the range starts at 0, so
+ * that a descent feels its way off zero.
+ */
 export function valueAt(variable: Variable, position: number): number {
   const { low, high } = variable;
   const p = Math.min(1, Math.max(0, position));
-  return low > 0 ? low * (high / low) ** p : high * p * p;
+  return low > 0 ? low * (high / low) ** p : high * p;
 }
 
 /** Position of a value in its variable's range, clamped to it. */
@@ -42,7 +45,7 @@ export function positionOf(variable: Variable, value: number): number {
     if (high <= low || size <= low) return 0;
     return Math.min(1, Math.log(size / low) / Math.log(high / low));
   }
-  return high > 0 ? Math.min(1, Math.sqrt(size / high)) : 0;
+  return high > 0 ? Math.min(1, size / high) : 0;
 }
 
 /** Own settings of all loops at a point of the unit box. */
