@@ -46,11 +46,13 @@ export function bindingLimits(
   scores: readonly ModelScore[],
   share: number,
 ): Limit[] {
-  return tuning.limits.filter((limit) =>
-    scores.some((score, m) => {
+  return tuning.limits.filter((limit) => {
+    // A count of none is not near anything.
+    if (limit.quantity === 'anySingleLoopInManual') return false;
+    return scores.some((score, m) => {
       if (limit.nominal && m > 0) return false;
       const value = limitedValue(limit, score.frequency, score.time);
       return score.stable && value !== null && limitExcess(limit, value, limit.bound) > -share;
-    }),
-  );
+    });
+  });
 }
