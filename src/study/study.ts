@@ -153,7 +153,17 @@ function bestOf(stages: readonly (readonly TaskResult[])[]): FoundPoint[] {
         points.push(...r.points.slice(0, 1));
     }
   }
-  return frontOf(points.filter((p) => p.peak <= highestLevel * (1 + 1e-9)));
+  return worthwhile(frontOf(points.filter((p) => p.peak <= highestLevel * (1 + 1e-9))));
+}
+
+/** A gain in speed below this share is not worth any robustness. */
+const leastGain = 0.005;
+
+/** A front by peak, cut where what is left to gain is next to nothing. */
+function worthwhile(front: readonly FoundPoint[]): FoundPoint[] {
+  const fastest = front.reduce((best, p) => Math.min(best, p.cost), Number.POSITIVE_INFINITY);
+  const end = front.findIndex((p) => p.cost <= fastest * (1 + leastGain));
+  return front.slice(0, end + 1);
 }
 
 /** Worst peak sensitivity of today's settings; Infinity when they are unstable. */
@@ -170,11 +180,9 @@ const ampleRobustness = 1.2;
  * distance from an open loop.
  */
 function levelsBetween(archive: readonly FoundPoint[], present: number, count: number): number[] {
-  const first = archive[0] as FoundPoint;
-  const low = first.peak;
-  const high = archive
-    .filter((p) => p.peak <= highestLevel)
-    .reduce((best, p) => (p.cost < best.cost ? p : best), first).peak;
+  const inside = archive.filter((p) => p.peak <= highestLevel);
+  const low = (archive[0] as FoundPoint).peak;
+  const high = worthwhile(inside.length > 0 ? inside : archive).at(-1)?.peak ?? low;
   const ample = Math.min(ampleRobustness, Math.max(present, 1.05));
   const from = Math.min(high, Math.max(low + 0.02 * (high - low), ample));
   const ratio = (high - 1) / (from - 1);

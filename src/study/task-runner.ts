@@ -80,8 +80,11 @@ export class TaskRunner {
     const { compiled } = cache;
     const problem = this.problem(cache, task.preparation);
     const { seed, effort } = compiled.job.search;
-    const plan = effortPlan(effort, problem.dimension).anchor;
-    const starts = startingPoints(compiled, task.preparation);
+    const { anchor: plan, attempts } = effortPlan(effort, problem.dimension);
+    // Attempts at one end begin in different places, else they would all end in one.
+    const every = startingPoints(compiled, task.preparation);
+    const own = every.filter((_, i) => i % attempts === task.attempt);
+    const starts = task.aim === 'lowest' || own.length === 0 ? every : own;
     const random = new Random(seed, task.aim === 'lowest' ? 10 : 11, task.attempt);
     problem.focusOn([]);
     const outcome = solveFocused(problem, starts, plan, (from, budget) =>
