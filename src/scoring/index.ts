@@ -12,6 +12,8 @@ export {
   type ModelScore,
   type SampledModel,
   sampleModel,
+  simulateUpsets,
+  surveyModel,
 } from './judge.js';
 export type { Limit, LoopQuantity, UnitQuantity } from './limit.js';
 export {

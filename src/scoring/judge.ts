@@ -63,6 +63,58 @@ export function controllersOf(
   );
 }
 
+/** Stability, margins and noise of one tuning set on one model as read off the grid, nothing closed in on. */
+export function surveyModel(
+  tuning: TuningCase,
+  model: SampledModel,
+  settings: readonly ControllerSettings[],
+): FrequencyFigures {
+  return analyseLoops({
+    loops: model.loops,
+    controllers: controllersOf(tuning, settings, tuning.scan),
+    noise: tuning.loops.map((loop) => loop.noise),
+    spans: tuning.loops.map((loop) => loop.inputSpan),
+    refine: false,
+    singularValues: false,
+    manualCases: false,
+  });
+}
+
+/**
+ * Every upset of one tuning set on one model by the plain path; the set must be stable on it.
+ * @param watch  receives each upset's trajectory
+ * @returns figures [upset][loop]
+ */
+export function simulateUpsets(
+  tuning: TuningCase,
+  unit: SampledUnit,
+  settings: readonly ControllerSettings[],
+  watch?: (upset: number, trajectory: Trajectory) => void,
+): UpsetFigures[][] {
+  const controllers = controllersOf(tuning, settings, tuning.scan);
+  return tuning.upsets.map(({ upset }, u) => {
+    const trajectory = simulatePlainly({
+      unit,
+      network: tuning.network,
+      controllers,
+      stepsPerScan: tuning.stepsPerScan,
+      upset,
+      steps: tuning.steps,
+    });
+    watch?.(u, trajectory);
+    const bands = settlingBands(tuning, upset);
+    return tuning.loops.map((loop, i) =>
+      readUpsetFigures(
+        trajectory,
+        i,
+        upset.kind === 'setpoint' && upset.loop === i ? upset.size : 0,
+        bands[i] as number,
+        loop.algorithm.scan,
+      ),
+    );
+  });
+}
+
 /**
  * Score one tuning set on one model by the plain path: simulation at the finest step, every peak and
  * crossing closed in on.
@@ -87,27 +139,7 @@ export function judgeModel(
   });
   if (frequency.stability.unstable > 0)
     return { stable: false, frequency, upsets: null, time: null };
-  const upsets = tuning.upsets.map(({ upset }, u) => {
-    const trajectory = simulatePlainly({
-      unit: model.unit,
-      network: tuning.network,
-      controllers,
-      stepsPerScan: tuning.stepsPerScan,
-      upset,
-      steps: tuning.steps,
-    });
-    watch?.(u, trajectory);
-    const bands = settlingBands(tuning, upset);
-    return tuning.loops.map((loop, i) =>
-      readUpsetFigures(
-        trajectory,
-        i,
-        upset.kind === 'setpoint' && upset.loop === i ? upset.size : 0,
-        bands[i] as number,
-        loop.algorithm.scan,
-      ),
-    );
-  });
+  const upsets = simulateUpsets(tuning, model.unit, settings, watch);
   const time = tuning.loops.map((_, i) => summarizeLoop(tuning, upsets, i));
   return { stable: true, frequency, upsets, time };
 }

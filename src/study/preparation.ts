@@ -1,16 +1,18 @@
 import type { ControllerSettings, OwnSettings, SettingsForm } from '../controllers/index.js';
 import { toOwn } from '../controllers/index.js';
-import { pathsOf, type Response } from '../responses/index.js';
+import type { FrequencyFigures } from '../frequency/index.js';
+import { pathsOf, type Response, sampleUnit } from '../responses/index.js';
 import {
   gridDensity,
-  judgeModel,
   type Limit,
-  type ModelScore,
   referenceSpeed,
   type SampledModel,
   type SpeedReference,
   sampleModel,
+  simulateUpsets,
+  surveyModel,
   type TuningCase,
+  type UpsetFigures,
 } from '../scoring/index.js';
 import type { RuleSettings } from './baseline-settings.js';
 import type { CompiledJob } from './compiled-job.js';
@@ -94,7 +96,7 @@ export function tuningCaseOf(
   };
 }
 
-const plainDetail = { singularValues: false, manualCases: false } as const;
+const isStable = (figures: FrequencyFigures): boolean => figures.stability.unstable === 0;
 
 /**
  * Fix horizon, step, reference and limits of a job.
@@ -113,11 +115,19 @@ export function prepareJob(compiled: CompiledJob): Preparation {
   const nominal = compiled.uncertain.points[0] as readonly Response[];
   const provisional = (steps: number): TuningCase =>
     tuningCaseOf(compiled, { steps, stepsPerScan, limits: stated });
-  const judge = (settings: readonly ControllerSettings[], tuning: TuningCase): ModelScore =>
-    judgeModel(tuning, sampleVariant(compiled, tuning, nominal), settings, plainDetail);
+  const unit = sampleUnit(
+    compiled.paths,
+    compiled.sourceCount,
+    compiled.measurementCount,
+    compiled.scan / stepsPerScan,
+  );
+  const run = (settings: readonly ControllerSettings[], tuning: TuningCase): UpsetFigures[][] =>
+    simulateUpsets(tuning, unit, settings);
 
-  const short = provisional(stepsFor(compiled, stepsPerScan, 20 * compiled.scan));
-  const presentIsStable = present !== null && judge(present, short).stable;
+  // Enough for frequencies: the unit's own dynamics. How long to simulate depends on the reference.
+  const open = provisional(stepsFor(compiled, stepsPerScan, leastHorizon(compiled, [])));
+  const model = sampleVariant(compiled, open, nominal);
+  const presentIsStable = present !== null && isStable(surveyModel(open, model, present));
   const variants = searchModels(
     compiled.uncertain,
     compiled.job.search.models,
@@ -125,20 +135,19 @@ export function prepareJob(compiled: CompiledJob): Preparation {
   );
   const reference = presentIsStable
     ? { method: 'present', settings: compiled.space.base }
-    : firstStable(compiled, short, rules, variants);
+    : firstStable(compiled, open, rules, variants);
   const internal = internalSettings(compiled.space, reference.settings);
 
-  const steps = settleHorizon(compiled, stepsPerScan, internal, provisional, judge);
+  const steps = settleHorizon(compiled, stepsPerScan, internal, provisional, run);
   const tuning = provisional(steps);
-  const nominalScore = judge(internal, tuning);
-  const speed = referenceSpeed(tuning, nominalScore.upsets ?? []);
+  const speed = referenceSpeed(tuning, run(internal, tuning));
   const limits = [
     ...stated,
     ...assumedLimits(
       compiled,
       stated,
       presentIsStable && present !== null
-        ? worstOfPresent(compiled, short, present, variants)
+        ? worstOfPresent(compiled, open, present, variants)
         : null,
       assumed,
     ),
@@ -149,11 +158,10 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     ...livelier(compiled, internal, [0.5, 1.5, 2.5]),
     ...rulesInside(compiled, rules),
   ];
-  const model = sampleVariant(compiled, { ...final, upsets: [] }, nominal);
   const sane = trials.filter((settings, t) => {
-    const score = judgeModel({ ...final, upsets: [] }, model, settings, plainDetail);
-    const peaks = score.frequency.loops.map((f) => f?.peakSensitivity ?? 0);
-    return score.stable && (t === 0 || Math.max(...peaks) < trialPeak);
+    const survey = surveyModel(open, model, settings);
+    const peaks = survey.loops.map((f) => f?.peakSensitivity ?? 0);
+    return isStable(survey) && (t === 0 || Math.max(...peaks) < trialPeak);
   });
   const search = chooseSearchStep(compiled, final, nominal, sane);
   return {
@@ -210,7 +218,7 @@ function settleHorizon(
   stepsPerScan: number,
   reference: readonly ControllerSettings[],
   provisional: (steps: number) => TuningCase,
-  judge: (settings: readonly ControllerSettings[], tuning: TuningCase) => ModelScore,
+  run: (settings: readonly ControllerSettings[], tuning: TuningCase) => UpsetFigures[][],
 ): number {
   const { job, timeUnit } = compiled;
   if (job.unit.horizon !== undefined) {
@@ -219,20 +227,19 @@ function settleHorizon(
   let horizon = roundHorizon(leastHorizon(compiled, reference), timeUnit);
   for (let doubling = 0; doubling < 2; doubling += 1) {
     const tuning = provisional(stepsFor(compiled, stepsPerScan, horizon));
-    const score = judge(reference, tuning);
-    if (score.upsets === null || isAtRest(tuning, score)) break;
+    if (isAtRest(tuning, run(reference, tuning))) break;
     horizon = roundHorizon(2 * horizon, timeUnit);
   }
   return stepsFor(compiled, stepsPerScan, horizon);
 }
 
 /** True when every tight loop that counts has come back to its setpoint in every upset. */
-function isAtRest(tuning: TuningCase, score: ModelScore): boolean {
+function isAtRest(tuning: TuningCase, figures: readonly (readonly UpsetFigures[])[]): boolean {
   return tuning.upsets.every(({ counted }, u) =>
     counted.every((i) => {
       const loop = tuning.loops[i];
       if (loop === undefined || loop.goal !== 'tight' || loop.weight === 0) return true;
-      return score.upsets?.[u]?.[i]?.settlingTime !== null;
+      return figures[u]?.[i]?.settlingTime !== null;
     }),
   );
 }
@@ -247,9 +254,7 @@ function firstStable(
   const models = variants.map((v) => sampleVariant(compiled, tuning, v));
   const holds = (settings: readonly (OwnSettings | null)[]): boolean => {
     const internal = internalSettings(compiled.space, settings);
-    return models.every(
-      (m) => judgeModel({ ...tuning, upsets: [] }, m, internal, plainDetail).stable,
-    );
+    return models.every((m) => isStable(surveyModel(tuning, m, internal)));
   };
   for (const method of ['BLT', 'SIMC']) {
     const rule = rules.find((r) => r.method === method && r.settings !== null);
@@ -294,8 +299,7 @@ function worstOfPresent(
   const sensitivity: (number | null)[] = compiled.loops.map(() => null);
   for (const variant of variants) {
     const model = sampleVariant(compiled, tuning, variant);
-    const { frequency } = judgeModel({ ...tuning, upsets: [] }, model, present, plainDetail);
-    frequency.loops.forEach((f, i) => {
+    surveyModel(tuning, model, present).loops.forEach((f, i) => {
       if (f === null) return;
       noise[i] = Math.max(noise[i] ?? 0, f.outputNoise);
       sensitivity[i] = Math.max(sensitivity[i] ?? 0, f.peakSensitivity);
