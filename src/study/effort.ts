@@ -51,7 +51,8 @@ export function effortPlan(effort: SearchDocument['effort'], dimension: number):
     },
     mend: {
       globalEvaluations: 0,
-      localEvaluations: count(8 * gradients),
+      // An alternative that cannot be mended is lost, so this is not the place to save.
+      localEvaluations: 12 * gradients,
       polishEvaluations: 0,
     },
     firstShare: 0.3,

@@ -7,7 +7,7 @@ import { scoreFully } from './evaluation.js';
 import { scoredSettings } from './scored-settings.js';
 import { boundAsStated } from './stated-limits.js';
 import type { TaskResult } from './tasks.js';
-import { shareInHand, TuningProblem } from './tuning-problem.js';
+import { inHand, TuningProblem } from './tuning-problem.js';
 import { dialledSettings } from './variables.js';
 import { breachesOf } from './verdict.js';
 import type { Workbench } from './workbench.js';
@@ -58,7 +58,7 @@ export function describeInfeasibility(
   bench: Workbench,
   starts: readonly (readonly number[])[],
 ): TaskResult {
-  const { compiled, tuning } = bench;
+  const { compiled, tuning, preparation } = bench;
   const problem = new TuningProblem(bench.searchSetup());
   const { seed, effort } = compiled.job.search;
   const plan = effortPlan(effort, problem.dimension).anchor;
@@ -78,7 +78,9 @@ export function describeInfeasibility(
   if (!scored.stable) {
     const unstable = models.filter((m) => !m.stable).length;
     words.push(
-      `No settings within the bounds keep all ${models.length} models stable: the nearest set leaves ${unstable} unstable. Allow a larger maxChange or wider bounds, or narrow the spreads.`,
+      models.length === 1
+        ? 'No settings within the bounds keep the unit stable. Allow a larger maxChange or wider bounds.'
+        : `No settings within the bounds keep all ${models.length} models stable: the nearest set leaves ${unstable} unstable. Allow a larger maxChange or wider bounds, or narrow the spreads.`,
     );
   }
   const broken = brokenLimits(bench, models).slice(0, mostRelaxed);
@@ -96,7 +98,15 @@ export function describeInfeasibility(
     const loop = limit.loop === null ? null : (compiled.job.loops[limit.loop]?.tag as string);
     const stated = (value: number): number => boundAsStated(limit, value, compiled.timeUnit);
     const opened =
-      result.best === undefined ? null : stated(opening(limit, result.best.evaluation.cost - 1));
+      result.best === undefined
+        ? null
+        : stated(
+            opening(
+              limit,
+              result.best.evaluation.cost - 1,
+              inHand(limit, preparation.searchStride),
+            ),
+          );
     limits.push({ limit: limit.quantity, loop, asked: stated(limit.bound), reached: opened });
     words.push(
       inWords(limit, loop, stated(limit.bound), reached === null ? null : stated(reached), opened),
@@ -110,11 +120,11 @@ export function describeInfeasibility(
 }
 
 /** The bound at which a limit would be met with what the search keeps in hand. */
-function opening(limit: Limit, excess: number): number {
+function opening(limit: Limit, excess: number, share: number): number {
   const { bound } = limit;
   if (limit.quantity === 'anySingleLoopInManual') return bound + excess;
   if (limit.quantity === 'overshoot') {
-    return (bound * (1 - shareInHand) + excess * Math.max(bound, 10)) / (1 - shareInHand);
+    return (bound * (1 - share) + excess * Math.max(bound, 10)) / (1 - share);
   }
   // Lower limits are tightened by 1 + share and their excess counts as a share of that.
   return isLowerLimit(limit) ? bound * (1 - excess) : bound * (1 + excess);
@@ -159,6 +169,25 @@ function constraintsOf(bench: Workbench, limit: Limit, models: number): number[]
   return [];
 }
 
+/** Limits as one says them. */
+const limitWords: { readonly [quantity in Limit['quantity']]: string } = {
+  overshoot: 'an overshoot in percent',
+  settlingTime: 'a settling time',
+  peakDeviation: 'a peak deviation',
+  peakSensitivity: 'a peak sensitivity',
+  gainMargin: 'a gain margin',
+  phaseMargin: 'a phase margin in degrees',
+  outputNoise: 'an output noise',
+  outputRate: 'an output rate',
+  outputMove: 'an output move per scan',
+  travel: 'an output travel',
+  upsetToOthers: 'an upset to other loops in their tolerances',
+  levelBand: 'a level band',
+  peakSingularValueS: 'a peak singular value of S',
+  peakSingularValueT: 'a peak singular value of T',
+  anySingleLoopInManual: 'a count of loops that cannot stand in manual',
+};
+
 const short = (value: number): string => String(Number(value.toPrecision(3)));
 
 function inWords(
@@ -175,5 +204,5 @@ function inWords(
     opened === null
       ? 'relaxing it alone does not open the way'
       : `relaxed alone to ${side} ${short(opened)} it would open the way`;
-  return `${where}: ${limit.quantity} of ${side} ${short(asked)} is asked, the nearest set gives ${got}; ${way}.`;
+  return `${where}: ${limitWords[limit.quantity]} of ${side} ${short(asked)} is asked, the nearest set gives ${got}; ${way}.`;
 }

@@ -145,9 +145,10 @@ function worstMetrics(bench: Workbench, models: readonly ModelScore[], nominal: 
     loops[tag] = worst as unknown as LoopMetrics;
   });
   const peak = (key: 'peakSingularValueS' | 'peakSingularValueT'): number | null => {
-    if (unstableModels > 0 || nominal.unit[key] === null) return null;
-    const values = models.map((m) => m.frequency[key]).filter((v): v is number => v !== null);
-    return values.length === 0 ? null : Math.max(...values);
+    if (unstableModels > 0) return null;
+    const values = models.map((m) => m.frequency[key]);
+    // The worst of those that were looked at would not be the worst.
+    return values.every((v) => v !== null) ? Math.max(...values) : null;
   };
   return {
     loops,

@@ -19,7 +19,13 @@ import type { SearchSimulation } from './search-simulation.js';
 import { type DecisionSpace, internalSettings, settingsAt } from './variables.js';
 
 /** Share of every limit that the search keeps in hand, so that fresh models stay inside. */
-export const shareInHand = 0.02;
+const shareInHand = 0.02;
+/** What is kept in hand beyond that where longer steps blur a simulated figure. */
+const shareForSteps = 0.015;
+
+/** Share of a limit that a search at a stride keeps in hand. */
+export const inHand = (limit: Limit, stride: number): number =>
+  stride > 1 && needsSimulation(limit.quantity) ? shareInHand + shareForSteps : shareInHand;
 
 /** Stretches of frequency whose peaks the search follows one by one. */
 const bands = 8;
@@ -33,6 +39,8 @@ export interface SearchSetup {
   readonly loops: readonly SampledLoops[];
   /** Of the same models. */
   readonly simulation: SearchSimulation;
+  /** Scans a step of it. */
+  readonly stride: number;
   readonly speed: SpeedReference;
 }
 
@@ -63,7 +71,7 @@ export class TuningProblem implements Problem {
     this.levelledCount = this.retuned.length * models.length * bands;
     this.tightened = tuning.limits.map((limit) => ({
       limit,
-      bound: tightenLimit(limit, shareInHand),
+      bound: tightenLimit(limit, inHand(limit, setup.stride)),
     }));
     this.constraintCount = tuning.limits.reduce((n, l) => n + (l.nominal ? 1 : models.length), 0);
     const everywhere = tuning.limits.some((l) => !l.nominal && needsSimulation(l.quantity));

@@ -74,6 +74,7 @@ export class Workbench {
       tuning,
       loops: [...this.searching, ...extra.map(sample)],
       simulation: new SearchSimulation(compiled, tuning, searchStride, variants),
+      stride: searchStride,
       speed: searchSpeed,
     };
   }
