@@ -13,7 +13,7 @@ export interface Variable {
   readonly setting: SettingName;
   readonly low: number;
   readonly high: number;
-  /** Smallest step in which it can be dialled; 0 for four significant digits. */
+  /** Smallest step in which it can be dialled; 0 for three significant digits. */
   readonly dialStep: number;
 }
 
@@ -71,7 +71,7 @@ export function pointOf(
 }
 
 /**
- * A value as a person would dial it: on the controller's own step, else to four significant digits;
+ * A value as a person would dial it: on the controller's own step, else to three significant digits;
  * never outside the variable's range.
  */
 export function dialled(variable: Variable, value: number): number {
@@ -84,7 +84,7 @@ export function dialled(variable: Variable, value: number): number {
     const rounded = Number((steps * dialStep).toPrecision(12));
     return rounded >= low * (1 - 1e-9) && rounded <= high * (1 + 1e-9) ? rounded : value;
   }
-  const rounded = Number(value.toPrecision(4));
+  const rounded = Number(value.toPrecision(3));
   return rounded < low || rounded > high ? value : rounded;
 }
 

@@ -34,12 +34,6 @@ export function breachesOf(tuning: TuningCase, score: ModelScore, isNominal: boo
 export const isWithin = (tuning: TuningCase, score: ModelScore, isNominal: boolean): boolean =>
   score.stable && breachesOf(tuning, score, isNominal).length === 0;
 
-/** How far beyond its limits a model is; infinite when unstable. */
-export function badness(tuning: TuningCase, score: ModelScore, isNominal: boolean): number {
-  if (!score.stable) return Number.POSITIVE_INFINITY;
-  return breachesOf(tuning, score, isNominal).reduce((sum, b) => sum + b.excess, 0);
-}
-
 /** Limits that a set lies on: within `share` of the bound on some model it holds for. */
 export function bindingLimits(
   tuning: TuningCase,

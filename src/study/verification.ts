@@ -1,22 +1,23 @@
 import { Random } from '../base/index.js';
 import type { OwnSettings } from '../controllers/index.js';
 import type { Response } from '../responses/index.js';
-import { judgeModel, type ModelScore, type SampledModel } from '../scoring/index.js';
+import { judgeModel, type ModelScore } from '../scoring/index.js';
 import { solveLevel } from '../search/index.js';
 import { effortPlan } from './effort.js';
 import { scoreFully } from './evaluation.js';
+import { solveFocused } from './focused-search.js';
 import { sampleVariant } from './preparation.js';
 import { scoredSettings } from './scored-settings.js';
-import type { TaskResult } from './tasks.js';
+import type { TaskResult, Verified } from './tasks.js';
 import { TuningProblem } from './tuning-problem.js';
 import { dialledSettings, internalSettings } from './variables.js';
-import { badness, bindingLimits, isWithin } from './verdict.js';
+import { bindingLimits, isWithin } from './verdict.js';
 import { freshCount, type Workbench } from './workbench.js';
 
 /** How often an alternative may be solved again. */
 const mostMendings = 3;
-/** Broken models that join the search at a time: the worst ones. */
-const joining = 2;
+/** Models that join the search at a time: the first that break a limit. */
+const joining = 3;
 /** Share of fresh models that must be within every limit. */
 const neededShare = 0.95;
 /** Limits this close count as binding: the share the search keeps in hand and a little. */
@@ -28,7 +29,7 @@ const bindingShare = 0.03;
  * The search proposed x; it is judged as it would be dialled. In each round a set of models is drawn
  * that nothing searched for this alternative has seen:
  *   - all within every limit: that round's set is the judgement;
- *   - some outside, and not yet solved again three times: the worst of them join the search set, the
+ *   - some outside, and not yet solved again three times: the first of them join the search set, the
  *     alternative is solved again from where it stands, and the next round begins;
  *   - otherwise the round's set is the judgement: accepted when every model is stable and at least
  *     95 % are within every limit.
@@ -40,7 +41,7 @@ export function verifyAlternative(
   proposed: readonly number[],
   level: number,
 ): TaskResult {
-  const { compiled, tuning } = bench;
+  const { compiled } = bench;
   let x = Float64Array.from(proposed);
   let own = dialledSettings(compiled.space, x);
   const joined: Response[][] = [];
@@ -48,32 +49,13 @@ export function verifyAlternative(
   let mended = 0;
   let mayMend = compiled.space.variables.length > 0;
   for (let round = 0; ; round += 1) {
-    const verdict = judgeRound(bench, own, joined, round);
-    if (verdict.breaking.length === 0 || !mayMend || mended === mostMendings || bench.isExact) {
-      const scored = scoredSettings(bench, own, verdict.nominal, verdict.all, true);
-      const { upsets: _, ...nominal } = scored.nominal;
-      const accepted =
-        verdict.all.every((m) => m.stable) &&
-        verdict.searchSetHolds &&
-        verdict.failures <= Math.floor((1 - neededShare) * verdict.models);
-      return {
-        kind: 'verify',
-        evaluations,
-        verified: {
-          accepted,
-          scored: { ...scored, nominal },
-          models: verdict.models,
-          failures: verdict.failures,
-          mended,
-          binding: bindingLimits(tuning, verdict.all, bindingShare).map((limit) => ({
-            limit: limit.quantity,
-            loop: limit.loop === null ? null : (compiled.job.loops[limit.loop]?.tag as string),
-          })),
-          detail: { scored, responses: [...verdict.responses] },
-        },
-      };
+    const ends = !mayMend || mended === mostMendings || bench.isExact;
+    const examined = examine(bench, own, round, ends ? Number.POSITIVE_INFINITY : joining);
+    if (ends || examined.breaking.length === 0) {
+      const verified = judge(bench, own, joined, examined.scores, mended);
+      return { kind: 'verify', evaluations, verified };
     }
-    joined.push(...verdict.breaking.slice(0, joining));
+    joined.push(...examined.breaking);
     mended += 1;
     const problem = new TuningProblem(bench.searchSetup(joined));
     const plan = effortPlan(compiled.job.search.effort, problem.dimension).mend;
@@ -81,7 +63,9 @@ export function verifyAlternative(
     const here = problem.evaluate([x])[0];
     const reached = here?.defined ? here.levelled.reduce((a, b) => Math.max(a, b), 0) : level;
     const random = new Random(compiled.job.search.seed, 13, index, round);
-    const outcome = solveLevel(problem, Math.max(level, reached), [x], plan, random);
+    const outcome = solveFocused(problem, [x], plan, (starts, budget) =>
+      solveLevel(problem, Math.max(level, reached), starts, budget, random),
+    );
     evaluations += outcome.evaluations + 1;
     if (outcome.best === undefined) {
       // Not to be mended: it stays as it is, and the next round's set is its judgement.
@@ -93,61 +77,67 @@ export function verifyAlternative(
   }
 }
 
-interface Verdict {
-  readonly nominal: ModelScore;
-  /** Search set, joined and fresh models. */
-  readonly all: readonly ModelScore[];
-  readonly responses: ReturnType<typeof scoreFully>['responses'];
-  readonly searchSetHolds: boolean;
-  /** Fresh models judged, and how many of them fell outside. */
-  readonly models: number;
-  readonly failures: number;
-  /** Models outside their limits, worst first: of the search set too, should the coarser path have erred. */
-  readonly breaking: readonly Response[][];
+const quickly = { singularValues: false, manualCases: false } as const;
+
+/** A round's fresh models one after the other, until so many of them break a limit. */
+function examine(
+  bench: Workbench,
+  own: readonly (OwnSettings | null)[],
+  round: number,
+  enough: number,
+): { readonly scores: ModelScore[]; readonly breaking: Response[][] } {
+  const scores: ModelScore[] = [];
+  const breaking: Response[][] = [];
+  if (bench.isExact) return { scores, breaking };
+  const { tuning, compiled } = bench;
+  const settings = internalSettings(compiled.space, own);
+  const variants = bench.freshVariants(round);
+  for (const [k, model] of bench.freshModels(round).entries()) {
+    const score = judgeModel(tuning, model, settings, quickly);
+    scores.push(score);
+    if (!isWithin(tuning, score, false)) breaking.push(variants[k] as Response[]);
+    if (breaking.length >= enough) break;
+  }
+  return { scores, breaking };
 }
 
-function judgeRound(
+/**
+ * The final judgement on the search set, the models that joined it, and a round's fresh models.
+ * @param fresh  scores of all models of the round; none with a unit taken as exact
+ */
+function judge(
   bench: Workbench,
   own: readonly (OwnSettings | null)[],
   joined: readonly (readonly Response[])[],
-  round: number,
-): Verdict {
+  fresh: readonly ModelScore[],
+  mended: number,
+): Verified {
   const { tuning, compiled } = bench;
-  const settings = internalSettings(compiled.space, own);
   const sampled = joined.map((v) => sampleVariant(compiled, tuning, v));
   const { nominal, models: searched, responses } = scoreFully(bench, own, sampled);
-  const quick = { singularValues: false, manualCases: false };
-  const fresh: ModelScore[] = bench.isExact
-    ? []
-    : bench.freshModels(round).map((m: SampledModel) => judgeModel(tuning, m, settings, quick));
-  const freshVariants = bench.isExact ? [] : bench.freshVariants(round);
-  const breaking = fresh
-    .map((score, k) => ({ badness: badness(tuning, score, false), k }))
-    .filter(({ k }) => !isWithin(tuning, fresh[k] as ModelScore, false))
-    .sort((a, b) => b.badness - a.badness || a.k - b.k)
-    .map(({ k }) => freshVariants[k] as Response[]);
   // A model that joined may stay outside a limit; it is then one of the few in a hundred that may.
   const searchSetHolds = searched
     .slice(0, bench.variants.length)
     .every((score, m) => isWithin(tuning, score, m === 0));
-  if (bench.isExact) {
-    return {
-      nominal,
-      all: searched,
-      responses,
-      searchSetHolds,
-      models: 1,
-      failures: searchSetHolds ? 0 : 1,
-      breaking: [],
-    };
-  }
+  const outside = fresh.filter((score) => !isWithin(tuning, score, false)).length;
+  const models = bench.isExact ? 1 : freshCount;
+  const failures = bench.isExact ? Number(!searchSetHolds) : outside;
+  const all = [...searched, ...fresh];
+  const scored = scoredSettings(bench, own, nominal, all, true);
+  const { upsets: _, ...withoutUpsets } = scored.nominal;
   return {
-    nominal,
-    all: [...searched, ...fresh],
-    responses,
-    searchSetHolds,
-    models: freshCount,
-    failures: breaking.length,
-    breaking,
+    accepted:
+      all.every((m) => m.stable) &&
+      searchSetHolds &&
+      failures <= Math.floor((1 - neededShare) * models),
+    scored: { ...scored, nominal: withoutUpsets },
+    models,
+    failures,
+    mended,
+    binding: bindingLimits(tuning, all, bindingShare).map((limit) => ({
+      limit: limit.quantity,
+      loop: limit.loop === null ? null : (compiled.job.loops[limit.loop]?.tag as string),
+    })),
+    detail: { scored, responses: [...responses] },
   };
 }

@@ -1,0 +1,151 @@
+import {
+  type Alternative,
+  type AlternativeDetail,
+  alternativeFormat,
+  type Baseline,
+  type FrontDocument,
+  frontFormat,
+  type Infeasibility,
+  type ScoredSettings,
+  secondsPer,
+} from '../contract/index.js';
+import { passingShare } from '../scoring/index.js';
+import { nonDominated, selectEvenly } from '../search/index.js';
+import { hashOf } from './canonical.js';
+import { commonScan } from './compiled-job.js';
+import type { Preparation } from './preparation.js';
+import { only, presentIsComplete, type ResultOf } from './stage-results.js';
+import type { StudyOutcome } from './study-outcome.js';
+import type { StudyContext, TaskResult, Verified } from './tasks.js';
+
+/** The front of a study whose stages are all done. */
+export function assembleFront(
+  context: StudyContext,
+  stages: readonly (readonly TaskResult[])[],
+): StudyOutcome {
+  const { job, provenance } = context;
+  const { preparation } = only(stages[0] as TaskResult[], 'prepare')[0] as ResultOf<'prepare'>;
+  const scores = only((stages[1] ?? []) as TaskResult[], 'score').map((s) => s.scored);
+  const infeasible = only((stages[2] ?? []) as TaskResult[], 'nearest')[0]?.infeasible ?? null;
+  const verified = only((stages[5] ?? []) as TaskResult[], 'verify').map((v) => v.verified);
+  const chosen = chooseAlternatives(verified, job.search.alternatives);
+  const details: AlternativeDetail[] = [];
+  const alternatives = chosen.map((v, k): Alternative => {
+    const id = `A${String(k + 1).padStart(2, '0')}`;
+    const detail: AlternativeDetail = {
+      format: alternativeFormat,
+      job: provenance.job,
+      id,
+      scored: v.detail.scored,
+      responses: v.detail.responses,
+    };
+    details.push(detail);
+    return {
+      id,
+      ...v.scored,
+      verified: {
+        models: v.models,
+        failures: v.failures,
+        confidence:
+          job.search.models === 1 && v.models === 1 ? 1 : passingShare(v.failures, v.models),
+        mended: v.mended,
+      },
+      detail: hashOf(detail),
+    };
+  });
+  const hasPresent = presentIsComplete(context);
+  const scan = commonScan(job) / secondsPer[job.unit.timeUnit];
+  const step = scan / preparation.stepsPerScan;
+  const front: FrontDocument = {
+    format: frontFormat,
+    ...provenance,
+    unitName: job.unit.name,
+    timeUnit: job.unit.timeUnit,
+    horizon: tidy(preparation.steps * step),
+    step: tidy(step),
+    searchStep: tidy(preparation.searchStride === 1 ? step : scan * preparation.searchStride),
+    seed: job.search.seed,
+    reference: preparation.reference.method,
+    assumed: [...preparation.assumed],
+    present: hasPresent ? (scores[0] ?? null) : null,
+    baselines: baselinesOf(preparation, hasPresent ? scores.slice(1) : scores),
+    alternatives,
+    binding: countBinding(chosen),
+    infeasible: infeasible ?? (chosen.length === 0 ? nothingVerified(verified) : null),
+  };
+  const evaluations = stages
+    .flat()
+    .reduce((sum, r) => sum + ('evaluations' in r ? r.evaluations : 0), 0);
+  return { front, details, evaluations };
+}
+
+/** Twelve digits: a step is a scan divided, not a measurement. */
+const tidy = (value: number): number => Number(value.toPrecision(12));
+
+/** Accepted alternatives that no other beats in verified figures, as many as asked for, most robust first. */
+function chooseAlternatives(verified: readonly Verified[], count: number): Verified[] {
+  const accepted = verified.filter((v) => v.accepted);
+  const objectives = accepted.map((v) => [speedOf(v), robustnessOf(v)]);
+  const front = withoutDearEnd(nonDominated(objectives).map((k) => accepted[k] as Verified));
+  const chosen = selectEvenly(
+    front.map((v) => [speedOf(v), robustnessOf(v)]),
+    count,
+  );
+  return chosen.map((k) => front[k] as Verified).sort((a, b) => robustnessOf(a) - robustnessOf(b));
+}
+
+/** A gain in robustness below this share of Ms ... */
+const slightRobustness = 0.01;
+/** ... is not worth a loss in speed above this share. */
+const dearSpeed = 0.1;
+
+/** A front without a most robust end that buys next to no robustness with a lot of speed. */
+function withoutDearEnd(front: readonly Verified[]): Verified[] {
+  const byPeak = front.toSorted((a, b) => robustnessOf(a) - robustnessOf(b));
+  let from = 0;
+  for (; from + 1 < byPeak.length; from += 1) {
+    const [first, second] = [byPeak[from] as Verified, byPeak[from + 1] as Verified];
+    const slight = robustnessOf(second) <= robustnessOf(first) * (1 + slightRobustness);
+    if (!slight || speedOf(first) <= speedOf(second) * (1 + dearSpeed)) break;
+  }
+  return byPeak.slice(from);
+}
+
+const robustnessOf = (v: Verified): number => v.scored.objectives.robustness as number;
+const speedOf = (v: Verified): number => v.scored.objectives.speed as number;
+
+function baselinesOf(preparation: Preparation, scores: readonly ScoredSettings[]): Baseline[] {
+  const rules = preparation.baselines.filter((b) => b.settings !== null);
+  return rules.flatMap(({ method, source }, k) => {
+    const scored = scores[k];
+    return scored === undefined ? [] : [{ method, source, ...scored }];
+  });
+}
+
+function countBinding(chosen: readonly Verified[]): FrontDocument['binding'] {
+  const counts = new Map<string, FrontDocument['binding'][number]>();
+  for (const { binding } of chosen) {
+    for (const { limit, loop } of binding) {
+      const key = `${loop ?? ''} ${limit}`;
+      const before = counts.get(key);
+      counts.set(key, { limit, loop, alternatives: (before?.alternatives ?? 0) + 1 });
+    }
+  }
+  return [...counts.values()].sort((a, b) => b.alternatives - a.alternatives);
+}
+
+/** Something was found, but none of it held on fresh models. */
+function nothingVerified(verified: readonly Verified[]): Infeasibility {
+  const nearest = verified
+    .filter((v) => v.scored.stable)
+    .sort((a, b) => a.failures - b.failures)
+    .slice(0, 3)
+    .map((v) => v.scored);
+  return {
+    nearest,
+    limits: [],
+    words: [
+      'Settings that meet every limit on the search models exist, but none of them holds on at least 95 % of fresh models. Relax the limits that bind, or narrow the spreads.',
+    ],
+  };
+}
