@@ -1,6 +1,7 @@
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
 import { Random } from '../../src/base/index.js';
+import { discretizeHeld } from '../../src/numerics/index.js';
 import {
   denominatorOf,
   firstOrder,
@@ -180,6 +181,47 @@ describe('a sampled response', () => {
       const wanted = sampled(closed, 3.3, step, steps);
       expect(largestGap(stepOf(model, step, steps), wanted)).toBeLessThan(1e-12 * rate * slow);
     }
+  });
+
+  it('of an integrator or an unstable pole behind up to four lags is that of the whole chain at once', () => {
+    fc.assert(
+      fc.property(fc.integer(), (seed) => {
+        const random = new Random(seed);
+        const count = 1 + random.integer(4);
+        const lags = Array.from({ length: count }, () => between(random, 0.1, 3000));
+        if (count > 1 && chance(random, 0.3)) lags[1] = at(lags, 0) * (1 + 1e-6);
+        const unstable = chance(random, 0.3);
+        const last = unstable ? Float64Array.of(1, -100) : Float64Array.of(0, 1);
+        const model: ProcessModel = {
+          numerator: Float64Array.of(1),
+          factors: [...lags.map((t) => Float64Array.of(1, t)), last],
+          deadTime: 0,
+        };
+        // x' = A x + B u of the chain as it is written down, lag by lag, in one matrix.
+        const n = count + 1;
+        const a = new Float64Array(n * n);
+        const b = new Float64Array(n);
+        lags.forEach((t, i) => {
+          a[i * n + i] = -1 / t;
+          if (i > 0) a[i * n + i - 1] = 1 / t;
+          else b[0] = 1 / t;
+        });
+        a[n * n - 2] = unstable ? -0.01 : 1;
+        a[n * n - 1] = unstable ? 0.01 : 0;
+        const { transition, input } = discretizeHeld(a, b, n, 1, 1);
+        let x = new Float64Array(n);
+        const wanted = new Float64Array(steps + 1);
+        for (let k = 1; k <= steps; k += 1) {
+          x = Float64Array.from({ length: n }, (_, i) =>
+            x.reduce((sum, v, j) => sum + at(transition, i * n + j) * v, at(input, i)),
+          );
+          wanted[k] = at(x, n - 1);
+        }
+        // What the lags hold back cancels down from the ramp, to which rounding is relative.
+        const scale = steps + lags.reduce((sum, t) => sum + t, 0);
+        expect(largestGap(stepOf(model, 1, steps), wanted)).toBeLessThan(1e-9 * scale);
+      }),
+    );
   });
 
   it('of several integrators ramps, bends and keeps its dead time', () => {

@@ -153,7 +153,7 @@ describe('the figures of an upset', () => {
         fc.double({ min: 30, max: 80, noNaN: true }),
         (kc, ti) => {
           // Well damped: the error keeps its sign, and the integral term ends at minus the load.
-          const score = judgeSingle(firstOrder(1, 20, 0), { kc, ti }, 1, 4000);
+          const score = judgeSingle(firstOrder(1, 20, 0), { kc, ti }, 1, 10_000);
           const loaded = at(at(score.upsets ?? [], 1), 0);
           expect((loaded.iae * kc) / ti).toBeCloseTo(1, 5);
         },
