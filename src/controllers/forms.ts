@@ -74,7 +74,9 @@ export function toInternal(own: OwnSettings, form: SettingsForm): ControllerSett
 export function toOwn(internal: ControllerSettings, form: SettingsForm): OwnSettings {
   let { kc, ti, td } = internal;
   if (form.form === 'series' && td > 0 && ti !== Number.POSITIVE_INFINITY) {
-    const ratio = 1 - (4 * td) / ti;
+    // Equal series times give a ratio of zero, rounding aside.
+    const exact = 1 - (4 * td) / ti;
+    const ratio = Math.abs(exact) < 1e-12 ? 0 : exact;
     if (ratio < 0) {
       throw new CodedError(
         'SETTINGS_NOT_CONVERTIBLE',

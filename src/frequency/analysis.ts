@@ -1,4 +1,4 @@
-import type { DiscreteController } from '../controllers/index.js';
+import { type DiscreteController, openedBy } from '../controllers/index.js';
 import { LoopTraces } from './loop-traces.js';
 import { type LoopMargins, readMargins } from './margins.js';
 import { findBandPeaks, findPeak } from './peaks.js';
@@ -79,7 +79,14 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
   const stability = whole as PoleCount;
   const withLoopInManual: (PoleCount | null)[] = equations.network.loops.map(() => null);
   rows.forEach((loop, i) => {
-    if (request.manualCases) withLoopInManual[loop] = manual[i] as PoleCount;
+    if (!request.manualCases) return;
+    // The integrators of an opened loop are set aside; a pole that grows by itself is not.
+    const own = openedBy(equations.network, loop).reduce(
+      (sum, opened) => sum + equations.process.unstablePoles(opened),
+      0,
+    );
+    const rest = manual[i] as PoleCount;
+    withLoopInManual[loop] = { ...rest, unstable: rest.unstable + own };
   });
   const figures: (LoopFrequencyFigures | null)[] = equations.network.loops.map(() => null);
   if (stability.unstable > 0) {

@@ -104,7 +104,6 @@ export class LoopEquations {
     const { response, poles } = this.process.respondAtRest();
     const n = rows.length;
     const matrix = new Float64Array(n * n);
-    let scaled = 0;
     for (let a = 0; a < n; a += 1) {
       const row = rows[a] as number;
       const loop = this.loops[row] as number;
@@ -113,7 +112,6 @@ export class LoopEquations {
       const gain = integrating ? c.ki : c.kp;
       const setpointGain = integrating ? c.ki : c.setpointWeight * c.kp;
       const own = integrating ? 0 : (poles[loop] as number);
-      let largest = 0;
       for (let b = 0; b < n; b += 1) {
         const other = rows[b] as number;
         let value =
@@ -121,15 +119,37 @@ export class LoopEquations {
         if (other === row) value += own;
         if (other === this.outerRow[row]) value -= setpointGain * (poles[loop] as number);
         matrix[a * n + b] = value;
-        largest = Math.max(largest, Math.abs(value));
       }
-      // Rows are scaled to one so that a vanishing determinant can be told from a small gain.
-      if (!(largest > 0)) return { sign: 0, log: Number.NEGATIVE_INFINITY };
-      for (let b = 0; b < n; b += 1) matrix[a * n + b] = (matrix[a * n + b] as number) / largest;
-      scaled += Math.log(largest);
     }
+    const scaled = equilibrate(matrix, n);
+    if (scaled === Number.NEGATIVE_INFINITY) return { sign: 0, log: scaled };
     const { determinant } = eliminate(matrix, new Float64Array(0), n, 0);
     if (Math.abs(determinant) < 1e-13) return { sign: 0, log: Number.NEGATIVE_INFINITY };
     return { sign: Math.sign(determinant), log: scaled + Math.log(Math.abs(determinant)) };
   }
+}
+
+/**
+ * Scale rows and columns, in turn, towards one, so that a vanishing determinant can be told from
+ * small units.
+ * @returns log of what the determinant lost by it; -Infinity when a row or column is empty
+ */
+function equilibrate(matrix: Float64Array, n: number): number {
+  let log = 0;
+  for (let pass = 0; pass < 6; pass += 1) {
+    const byRow = pass % 2 === 0;
+    for (let a = 0; a < n; a += 1) {
+      let largest = 0;
+      for (let b = 0; b < n; b += 1) {
+        largest = Math.max(largest, Math.abs(matrix[byRow ? a * n + b : b * n + a] as number));
+      }
+      if (!(largest > 0)) return Number.NEGATIVE_INFINITY;
+      log += Math.log(largest);
+      for (let b = 0; b < n; b += 1) {
+        const at = byRow ? a * n + b : b * n + a;
+        matrix[at] = (matrix[at] as number) / largest;
+      }
+    }
+  }
+  return log;
 }

@@ -54,6 +54,11 @@ export function readMargins(
     return openLoop(traces.re[index] as number, traces.im[index] as number);
   };
   let before = at(0);
+  // Where L is finite and real at rest, more gain may bring drift before it brings oscillation.
+  const rest = probe === undefined ? before : openLoopAt(probe, nearRest);
+  if (Math.abs(rest.im) < realShare * Math.abs(rest.re) && Math.abs(rest.re) < 1 / nearRest) {
+    takeReal(rest.re);
+  }
   for (let k = 1; k < traces.count; k += 1) {
     const now = at(k);
     const from = angles[k - 1] as number;
@@ -75,6 +80,15 @@ export function readMargins(
   // At the last angle the response is real.
   takeReal(before.re);
   return { gainMargin, gainReduction, phaseMargin, delayMargin };
+}
+
+/** An angle close enough to zero for the value there, and how real a value counts as real. */
+const nearRest = 1e-6;
+const realShare = 1e-2;
+
+function openLoopAt(probe: Probe, angle: number): Point {
+  const s = probe(angle);
+  return openLoop(s.re, s.im);
 }
 
 interface Point {

@@ -37,14 +37,9 @@ export class ProcessResponse {
     );
   }
 
-  /** Poles at or outside the unit circle that the loop's measurement carries. */
-  unstableOrder(loop: number): number {
-    return this.blockOf[loop]?.order ?? 0;
-  }
-
-  /** True when all those poles are integrators. */
-  integratorsOnly(loop: number): boolean {
-    return this.blockOf[loop]?.integratorsOnly ?? true;
+  /** Poles of the loop's measurement that grow by themselves when the loop is opened. */
+  unstablePoles(loop: number): number {
+    return this.blockOf[loop]?.unstablePoles ?? 0;
   }
 
   /**

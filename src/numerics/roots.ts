@@ -1,3 +1,4 @@
+import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import { degree, type Polynomial } from './polynomial.js';
 
 export interface ComplexNumber {
@@ -35,6 +36,7 @@ export function findRoots(p: Polynomial): ComplexNumber[] {
   const im = new Float64Array(n);
   startOnNewtonPolygon(c, re, im);
   for (let sweep = 0; sweep < 500; sweep += 1) if (aberthSweep(c, re, im) < 1e-16) break;
+  refit(c, re, im);
   return roots.concat(pairConjugates(re, im).map((r) => ({ re: r.re * scale, im: r.im * scale })));
 }
 
@@ -106,6 +108,56 @@ function aberthSweep(c: Float64Array, re: Float64Array, im: Float64Array): numbe
     largest = Math.max(largest, Math.hypot(mx, my) / Math.max(Math.hypot(x, y), 1e-300));
   }
   return largest;
+}
+
+/** Largest coefficient error of the product of (s - root), against a polynomial. */
+function productError(c: Float64Array, re: Float64Array, im: Float64Array): number {
+  const n = c.length - 1;
+  const productRe = new Float64Array(n + 1);
+  const productIm = new Float64Array(n + 1);
+  productRe[0] = c[n] as number;
+  for (let k = 0; k < n; k += 1) {
+    const x = re[k] as number;
+    const y = im[k] as number;
+    for (let i = k + 1; i >= 0; i -= 1) {
+      const below = i > 0 ? (productRe[i - 1] as number) : 0;
+      const belowIm = i > 0 ? (productIm[i - 1] as number) : 0;
+      const r = productRe[i] as number;
+      const m = productIm[i] as number;
+      productRe[i] = below - (r * x - m * y);
+      productIm[i] = belowIm - (r * y + m * x);
+    }
+  }
+  let error = 0;
+  for (let i = 0; i <= n; i += 1) {
+    const size = Math.abs(c[i] as number) || Number.POSITIVE_INFINITY;
+    error = Math.max(error, Math.abs((productRe[i] as number) - (c[i] as number)) / size);
+  }
+  return error;
+}
+
+/** Product errors below this are rounding. */
+const roundingError = 1e-12;
+
+/**
+ * Repeated roots are each lost in rounding error, but as eigenvalues of the companion matrix they are
+ * found together and still multiply back to the polynomial. Taken where that fits it better.
+ */
+function refit(c: Float64Array, re: Float64Array, im: Float64Array): void {
+  const error = productError(c, re, im);
+  if (error < roundingError) return;
+  const n = c.length - 1;
+  const companion = Matrix.zeros(n, n);
+  for (let i = 0; i < n; i += 1) {
+    companion.set(0, i, -(c[n - 1 - i] as number) / (c[n] as number));
+    if (i > 0) companion.set(i, i - 1, 1);
+  }
+  const { realEigenvalues, imaginaryEigenvalues } = new EigenvalueDecomposition(companion);
+  const otherRe = Float64Array.from(realEigenvalues);
+  const otherIm = Float64Array.from(imaginaryEigenvalues);
+  if (!(productError(c, otherRe, otherIm) < error)) return;
+  re.set(otherRe);
+  im.set(otherIm);
 }
 
 /** Replace near-conjugate pairs by exact ones and near-real roots by real ones. */

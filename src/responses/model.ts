@@ -97,10 +97,9 @@ export function rational(
     );
   }
   const factors = factorize(findRoots(denominator));
-  // The product of the factors carries another leading coefficient than the denominator.
-  let lead = 1;
-  for (const factor of factors) lead *= factor[factor.length - 1] as number;
-  const scale = lead / (denominator[bottom] as number);
+  // All factors but integrators begin with one, so the long-run gain is exact whatever the roots are.
+  const lowest = denominator.find((c) => c !== 0) as number;
+  const scale = 1 / lowest;
   return { numerator: trimPolynomial(numerator).map((c) => c * scale), factors, deadTime };
 }
 

@@ -4,7 +4,7 @@ import {
   multiplyPolynomials,
   type Polynomial,
 } from '../numerics/index.js';
-import type { ProcessModel } from './model.js';
+import { isIntegrator, type ProcessModel } from './model.js';
 import { type SplitModel, splitModel } from './state-space.js';
 
 /** One path from a held source to a measurement: a response in continuous time. */
@@ -42,8 +42,8 @@ export interface SharedBlock {
   readonly order: number;
   readonly transition: Float64Array;
   readonly inputs: readonly SampledInput[];
-  /** True when every pole of the block is an integrator. */
-  readonly integratorsOnly: boolean;
+  /** Poles that grow by themselves: all but the integrators. */
+  readonly unstablePoles: number;
 }
 
 /** A unit sampled at one step: minimal in its unstable poles, exact for held inputs. */
@@ -199,7 +199,9 @@ function sampleBlock(
     order,
     transition,
     inputs,
-    integratorsOnly: factors.every((f) => f.length === 2 && f[0] === 0),
+    unstablePoles: factors
+      .filter((f) => !isIntegrator(f))
+      .reduce((count, f) => count + f.length - 1, 0),
   };
 }
 

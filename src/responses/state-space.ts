@@ -6,7 +6,7 @@ import {
   solveLinear,
   trimPolynomial,
 } from '../numerics/index.js';
-import { isUnstableFactor, type ProcessModel } from './model.js';
+import { isIntegrator, isUnstableFactor, type ProcessModel } from './model.js';
 
 /** Single-input single-output x' = a x + b u, y = c x + feedthrough u; a is [order][order]. */
 export interface StateSpace {
@@ -31,12 +31,13 @@ const product = (factors: readonly Polynomial[]): Polynomial =>
 
 /** Partial fractions of a response into stable, unstable and direct parts; dead time aside. */
 export function splitModel(model: ProcessModel): SplitModel {
-  const stableFactors = model.factors.filter((f) => !isUnstableFactor(f));
-  const unstableFactors = model.factors.filter((f) => isUnstableFactor(f));
+  const { numerator: reduced, factors } = withoutCancelledIntegrators(model);
+  const stableFactors = factors.filter((f) => !isUnstableFactor(f));
+  const unstableFactors = factors.filter((f) => isUnstableFactor(f));
   const ds = product(stableFactors);
   const du = product(unstableFactors);
   const denominator = multiplyPolynomials(ds, du);
-  let numerator = trimPolynomial(model.numerator);
+  let numerator = trimPolynomial(reduced);
   let feedthrough = 0;
   if (numerator.length === denominator.length) {
     const { quotient, remainder } = dividePolynomials(numerator, denominator);
@@ -58,6 +59,22 @@ export function splitModel(model: ProcessModel): SplitModel {
     unstableFactors,
     feedthrough,
   };
+}
+
+/** A zero at the origin takes an integrator with it: what is left has no false pole there. */
+function withoutCancelledIntegrators(
+  model: ProcessModel,
+): Pick<ProcessModel, 'numerator' | 'factors'> {
+  let { numerator } = model;
+  const factors = [...model.factors];
+  while (numerator.length > 1 && numerator[0] === 0) {
+    const at = factors.findIndex(isIntegrator);
+    if (at < 0) break;
+    const scale = (factors[at] as Polynomial)[1] as number;
+    factors.splice(at, 1);
+    numerator = numerator.slice(1).map((c) => c / scale);
+  }
+  return { numerator, factors };
 }
 
 /**

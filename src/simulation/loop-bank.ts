@@ -99,13 +99,13 @@ export function scanLoop(
     b[at + DERIVATIVE_INPUT] = input;
     fixed += derivative;
   }
+  // While the loops it drives are stuck, more output that way is of no use.
+  const stuck =
+    innerAt < 0 ? 0 : Math.sign((b[innerAt + SATURATION] as number) * (b[innerAt + KP] as number));
   let integral = b[at + INTEGRAL] as number;
   const ki = b[at + KI] as number;
   if (ki !== 0) {
     const step = ki * (setpoint - filtered);
-    // While the inner loop is stuck the outer one does not push it further.
-    const stuck =
-      innerAt < 0 ? 0 : (b[innerAt + SATURATION] as number) * (b[innerAt + KP] as number);
     if (step * stuck <= 0) integral += step;
   }
   const wanted = fixed + integral;
@@ -127,7 +127,7 @@ export function scanLoop(
     // The integral follows what was delivered, so that it is ready the moment the limit lets go.
     if (ki !== 0) integral = delivered - fixed;
   }
-  b[at + SATURATION] = saturation;
+  b[at + SATURATION] = saturation !== 0 ? saturation : stuck;
   b[at + INTEGRAL] = integral;
   b[at + OUTPUT] = delivered;
   const move = Math.abs(delivered - before);

@@ -33,8 +33,10 @@ interface ControllerState {
   derivative: number;
   integral: number;
   output: number;
-  /** +1 or -1 while the output is held down by its range or rate, else 0. */
+  /** Direction in which more output is of no use: its own limit, or the loops it drives are stuck. */
   saturation: number;
+  /** The output met its own range or rate in the last scan. */
+  limited: boolean;
 }
 
 const rest = (): ControllerState => ({
@@ -45,6 +47,7 @@ const rest = (): ControllerState => ({
   integral: 0,
   output: 0,
   saturation: 0,
+  limited: false,
 });
 
 /**
@@ -68,6 +71,8 @@ export function simulatePlainly(run: PlainRun): Trajectory {
 
   for (let k = 0; k <= steps; k += 1) {
     if (k > 0) process.advance(held, k);
+    // What is pushed is there before anything is measured: a direct response shows it at once.
+    if (upset.kind !== 'setpoint') (held[upset.source] as Float64Array)[k] = upset.size;
     const values = process.read(held, k);
     for (const i of order) {
       const loop = loops[i] as Loop;
@@ -93,17 +98,17 @@ export function simulatePlainly(run: PlainRun): Trajectory {
           stepsPerScan * unit.step,
           blocked,
         );
-        if (state.saturation !== 0) limited[i] = true;
+        if (state.limited) limited[i] = true;
       }
       (pv[i] as Float64Array)[k] = measured;
       (sp[i] as Float64Array)[k] = setpoint;
       (op[i] as Float64Array)[k] = state.output;
-      if ('source' in loop.drives) (held[loop.drives.source] as Float64Array)[k] = state.output;
+      if ('source' in loop.drives) {
+        const { source } = loop.drives;
+        const load = upset.kind !== 'setpoint' && upset.source === source ? upset.size : 0;
+        (held[source] as Float64Array)[k] = state.output + load;
+      }
       if (loop.setpointSource >= 0) (held[loop.setpointSource] as Float64Array)[k] = setpoint;
-    }
-    if (upset.kind !== 'setpoint') {
-      const source = held[upset.source] as Float64Array;
-      source[k] = (source[k] as number) + upset.size;
     }
   }
   return { step: unit.step, pv, sp, op, limited };
@@ -146,7 +151,8 @@ function scan(
   const low = Math.max(loop.outputLow, s.output - reach);
   const high = Math.min(loop.outputHigh, s.output + reach);
   const delivered = Math.min(Math.max(wanted, low), high);
-  s.saturation = wanted > high ? 1 : wanted < low ? -1 : 0;
+  s.limited = delivered !== wanted;
+  s.saturation = wanted > high ? 1 : wanted < low ? -1 : Math.sign(blocked);
   // The integral follows what was delivered, so that it is ready the moment the limit lets go.
   if (delivered !== wanted && c.ki !== 0) s.integral = delivered - proportional - s.derivative;
   s.output = delivered;

@@ -37,8 +37,6 @@ export interface TwoRateSetup {
   readonly upsets: readonly Upset[];
   /** PV deviation that counts as settled, [upset][loop]. */
   readonly bands: readonly (readonly number[])[];
-  /** s by which a loop's response to its own setpoint comes early, to be made good in its IAE. */
-  readonly early: readonly number[];
 }
 
 /**
@@ -108,7 +106,7 @@ export class TwoRateKernel implements SimulationKernel {
       for (const unit of units) {
         for (const upset of upsets) {
           this.run(unit, upset);
-          this.report(upset, out, offset);
+          this.report(out, offset);
           offset += width;
         }
       }
@@ -227,16 +225,12 @@ export class TwoRateKernel implements SimulationKernel {
     }
   }
 
-  private report(upsetIndex: number, out: Float64Array, offset: number): void {
-    const { network, quick, stride, steps, upsets, early } = this.setup;
-    const upset = upsets[upsetIndex] as Upset;
+  private report(out: Float64Array, offset: number): void {
+    const { network, quick, stride, steps } = this.setup;
     for (let i = 0; i < network.loops.length; i += 1) {
       const to = offset + i * figureCount;
       const step = this.scanOf(i);
       reportLoop(this.bank, i * SLOTS, out, to, step, quick[i] ? steps * stride : steps);
-      if (upset.kind === 'setpoint' && upset.loop === i && !quick[i]) {
-        out[to] = (out[to] as number) + (early[i] as number) * Math.abs(upset.size);
-      }
     }
   }
 }

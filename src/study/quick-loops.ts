@@ -6,15 +6,6 @@ import { lagsOf } from './horizon.js';
 /** A loop whose own response is over within this many long steps has to be simulated at its scan. */
 const quickSteps = 12;
 
-/** The source a loop moves in the end, through the loops it drives. */
-function baseSource(loops: readonly Loop[], index: number): number {
-  for (let at = index; ; ) {
-    const { drives } = loops[at] as Loop;
-    if ('source' in drives) return drives.source;
-    at = drives.loop;
-  }
-}
-
 const ownPaths = (paths: readonly UnitPath[], loop: Loop, source: number): UnitPath[] =>
   paths.filter((p) => p.source === source && p.measurement === loop.measurement);
 
@@ -56,8 +47,6 @@ export interface SplitPaths {
   readonly own: UnitPath[];
   /** Everything else; what loops move comes earlier by up to `shift`. */
   readonly rest: UnitPath[];
-  /** s by which each loop's own response comes early; 0 for a quick one. */
-  readonly early: number[];
 }
 
 /**
@@ -89,11 +78,5 @@ export function splitPaths(
         ? { ...p, model: { ...p.model, deadTime: shorten(p.model.deadTime) } }
         : p,
     );
-  const early = loops.map((loop, i) => {
-    if (quick[i]) return 0;
-    const own = ownPaths(paths, loop, baseSource(loops, i));
-    const least = own.reduce((m, p) => Math.min(m, p.model.deadTime), Number.POSITIVE_INFINITY);
-    return Number.isFinite(least) ? Math.min(shift, least) : 0;
-  });
-  return { own: paths.filter(isOwn), rest, early };
+  return { own: paths.filter(isOwn), rest };
 }

@@ -62,7 +62,6 @@ export class SearchSimulation {
       ownUnits: split.map((s) => sample(s.own, tuning.scan)),
       stride,
       steps: Math.floor(tuning.steps / stride),
-      early: split[0]?.early ?? [],
     });
   }
 

@@ -409,7 +409,7 @@ describe('a measurement with several inputs', () => {
         );
         const paths = models.map((model, source) => ({ source, measurement: 0, model }));
         const unit = sampleUnit(paths, paths.length, 1, 1);
-        expect(unit.blocks.map((b) => [b.order, b.integratorsOnly])).toEqual([[1, true]]);
+        expect(unit.blocks.map((b) => [b.order, b.unstablePoles])).toEqual([[1, 0]]);
         const together = at(
           respond(unit, (s, k) => (k >= 3 * s ? 1 + s : 0), steps),
           0,
@@ -439,7 +439,7 @@ describe('a measurement with several inputs', () => {
     ];
     const paths = models.map((model, source) => ({ source, measurement: 0, model }));
     const unit = sampleUnit(paths, 4, 1, 1);
-    expect(unit.blocks.map((b) => [b.order, b.integratorsOnly])).toEqual([[3, false]]);
+    expect(unit.blocks.map((b) => [b.order, b.unstablePoles])).toEqual([[3, 2]]);
     const together = at(
       respond(unit, () => 1, steps),
       0,

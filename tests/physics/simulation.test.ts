@@ -227,7 +227,6 @@ function twoRates(stride: number, upset: Upset, horizon: number): Float64Array {
     steps: horizon / stride,
     upsets: [upset],
     bands: [[0, 1, 2].map((i) => bandOf(upset, i))],
-    early: [0, shift, shift],
   });
   const controllers = settings.map((own, i) =>
     discretizeForLongStep(own, algorithm, quick[i] ? 1 : stride),
