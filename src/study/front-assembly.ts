@@ -86,7 +86,8 @@ const tidy = (value: number): number => Number(value.toPrecision(12));
 function chooseAlternatives(verified: readonly Verified[], count: number): Verified[] {
   const accepted = verified.filter((v) => v.accepted);
   const objectives = accepted.map((v) => [speedOf(v), robustnessOf(v)]);
-  const front = withoutDearEnd(nonDominated(objectives).map((k) => accepted[k] as Verified));
+  const undominated = nonDominated(objectives).map((k) => accepted[k] as Verified);
+  const front = withoutTwins(withoutDearEnd(undominated));
   const chosen = selectEvenly(
     front.map((v) => [speedOf(v), robustnessOf(v)]),
     count,
@@ -109,6 +110,23 @@ function withoutDearEnd(front: readonly Verified[]): Verified[] {
     if (!slight || speedOf(first) <= speedOf(second) * (1 + dearSpeed)) break;
   }
   return byPeak.slice(from);
+}
+
+/** Alternatives nearer to each other than this, in both objectives, are one. */
+const twinShare = 0.005;
+
+/** A front by rising Ms in which no two stand next to each other that nobody could tell apart. */
+function withoutTwins(front: readonly Verified[]): Verified[] {
+  const kept: Verified[] = [];
+  for (const v of front) {
+    const before = kept.at(-1);
+    const isTwin =
+      before !== undefined &&
+      robustnessOf(v) <= robustnessOf(before) * (1 + twinShare) &&
+      speedOf(v) >= speedOf(before) * (1 - twinShare);
+    if (!isTwin) kept.push(v);
+  }
+  return kept;
 }
 
 const robustnessOf = (v: Verified): number => v.scored.objectives.robustness as number;
