@@ -24,7 +24,10 @@ export function assembleFront(
   stages: readonly (readonly TaskResult[])[],
 ): StudyOutcome {
   const { job, provenance } = context;
-  const { preparation } = only(stages[0] as TaskResult[], 'prepare')[0] as ResultOf<'prepare'>;
+  const { preparation, dimension } = only(
+    stages[0] as TaskResult[],
+    'prepare',
+  )[0] as ResultOf<'prepare'>;
   const scores = only((stages[1] ?? []) as TaskResult[], 'score').map((s) => s.scored);
   const infeasible = only((stages[2] ?? []) as TaskResult[], 'nearest')[0]?.infeasible ?? null;
   const verified = only((stages[5] ?? []) as TaskResult[], 'verify').map((v) => v.verified);
@@ -71,7 +74,7 @@ export function assembleFront(
     baselines: baselinesOf(preparation, hasPresent ? scores.slice(1) : scores),
     alternatives,
     binding: countBinding(chosen),
-    infeasible: infeasible ?? (chosen.length === 0 ? nothingVerified(verified) : null),
+    infeasible: infeasible ?? (chosen.length === 0 ? nothingFound(verified, dimension) : null),
   };
   const evaluations = stages
     .flat()
@@ -152,8 +155,12 @@ function countBinding(chosen: readonly Verified[]): FrontDocument['binding'] {
   return [...counts.values()].sort((a, b) => b.alternatives - a.alternatives);
 }
 
-/** Something was found, but none of it held on fresh models. */
-function nothingVerified(verified: readonly Verified[]): Infeasibility {
+/** Nothing was there to search, or something was found and none of it held on fresh models. */
+function nothingFound(verified: readonly Verified[], dimension: number): Infeasibility {
+  if (dimension === 0) {
+    const words = ['Bounds and maxChange leave nothing to search: no setting may move from today.'];
+    return { nearest: [], limits: [], words };
+  }
   const nearest = verified
     .filter((v) => v.scored.stable)
     .sort((a, b) => a.failures - b.failures)

@@ -29,7 +29,8 @@ const spareShare = 0.15;
  * The next stage of a study, from the results of all stages before, or null when it is done.
  *
  *   0 prepare; 1 both ends of the front, and the scores of today's settings and the published rules;
- *   2 levels between the ends, started from stage 1 alone; 3 all levels again from the merged archive;
+ *   2 levels between the ends, started from stage 1 alone, their optima tried on models of their own;
+ *   3 all levels again from the merged archive, with the trial models that broke a limit;
  *   4 new levels in the widest gaps; 5 verification, a task an alternative.
  *
  * Where stage 1 finds nothing feasible the study ends with the nearest sets instead.
@@ -51,29 +52,31 @@ export function nextStage(
   if (stages.length === 1)
     return { name, tasks: endTasks(preparation, dimension, plan.attempts, hasPresent) };
   const anchors = only(stages[1] as TaskResult[], 'anchor');
+  if (dimension === 0) return null;
   if (!anchors.some((a) => a.feasible)) {
     if (stages.length > 2) return null;
     const starts = anchors.map((a) => a.nearest);
     return { name: 'nearest sets', tasks: [{ kind: 'nearest', preparation, starts }] };
   }
   const archive = archiveOf(stages);
+  const joined = joinedBy(stages);
   const present = hasPresent ? presentPeak(stages[1] as TaskResult[]) : Number.POSITIVE_INFINITY;
   switch (stages.length) {
     case 2: {
       const count = Math.max(4, Math.ceil(alternatives * plan.firstShare));
       const levels = levelsBetween(archive, present, count);
-      return { name, tasks: levelTasks(preparation, levels, archive, 2, true) };
+      return { name, tasks: levelTasks(preparation, levels, archive, 2, []) };
     }
     case 3: {
       const levels = levelsBetween(archive, present, alternatives);
-      return { name, tasks: levelTasks(preparation, levels, archive, 3, false) };
+      return { name, tasks: levelTasks(preparation, levels, archive, 3, joined) };
     }
     case 4: {
       const levels = levelsInGaps(bestOf(stages), Math.ceil(alternatives * plan.gapShare));
-      return { name, tasks: levelTasks(preparation, levels, archive, 4, false) };
+      return { name, tasks: levelTasks(preparation, levels, archive, 4, joined) };
     }
     default:
-      return { name, tasks: verifyTasks(preparation, bestOf(stages), alternatives) };
+      return { name, tasks: verifyTasks(preparation, bestOf(stages), alternatives, joined) };
   }
 }
 
@@ -116,6 +119,15 @@ function frontOf(points: readonly FoundPoint[]): FoundPoint[] {
   return kept
     .map((k) => points[k] as FoundPoint)
     .sort((a, b) => a.peak - b.peak || a.cost - b.cost);
+}
+
+/** Most trial models that join the search. */
+const mostJoined = 6;
+
+/** Trial models that the optima of the first sweep break limits on. */
+function joinedBy(stages: readonly (readonly TaskResult[])[]): number[] {
+  const numbers = only((stages[2] ?? []) as TaskResult[], 'levels').flatMap((r) => r.breaking);
+  return [...new Set(numbers)].slice(0, mostJoined).sort((a, b) => a - b);
 }
 
 /** The optima of levels, non-dominated, by peak: what alternatives are made of. */
@@ -193,7 +205,7 @@ function levelTasks(
   levels: readonly number[],
   archive: readonly FoundPoint[],
   stage: number,
-  explore: boolean,
+  joined: readonly number[],
 ): Task[] {
   const tasks: Task[] = [];
   const falling = levels.toSorted((a, b) => b - a);
@@ -203,7 +215,8 @@ function levelTasks(
       kind: 'levels',
       preparation,
       stream: [stage, tasks.length],
-      explore,
+      explore: stage === 2,
+      joined,
       levels: block.map((level) => ({ level, starts: startsFor(level, archive) })),
     });
   }
@@ -225,6 +238,7 @@ function verifyTasks(
   preparation: Preparation,
   best: readonly FoundPoint[],
   alternatives: number,
+  joined: readonly number[],
 ): Task[] {
   const count = Math.ceil(alternatives * (1 + spareShare));
   const chosen = selectEvenly(
@@ -233,5 +247,5 @@ function verifyTasks(
   ).map((k) => best[k] as FoundPoint);
   return chosen
     .sort((a, b) => a.peak - b.peak)
-    .map((p, index) => ({ kind: 'verify', preparation, index, x: p.x, level: p.peak }));
+    .map((p, index) => ({ kind: 'verify', preparation, index, x: p.x, level: p.peak, joined }));
 }

@@ -10,7 +10,7 @@ import { scoredSettings } from './scored-settings.js';
 import type { FoundPoint, StudyContext, Task, TaskResult } from './tasks.js';
 import { TuningProblem } from './tuning-problem.js';
 import { pointOf } from './variables.js';
-import { verifyAlternative } from './verification.js';
+import { tryOut, verifyAlternative } from './verification.js';
 import { Workbench } from './workbench.js';
 
 /** Points a task hands on beside the optima of its levels. */
@@ -20,7 +20,7 @@ interface Cache {
   readonly key: string;
   readonly compiled: CompiledJob;
   bench?: Workbench;
-  problem?: TuningProblem;
+  problem?: { readonly key: string; readonly problem: TuningProblem };
 }
 
 /**
@@ -48,7 +48,7 @@ export class TaskRunner {
         return this.score(this.bench(cache, task.preparation), task.which);
       case 'verify': {
         const bench = this.bench(cache, task.preparation);
-        return verifyAlternative(bench, task.index, task.x, task.level);
+        return verifyAlternative(bench, task);
       }
       case 'nearest':
         return describeInfeasibility(this.bench(cache, task.preparation), task.starts);
@@ -66,14 +66,23 @@ export class TaskRunner {
     return cache.bench;
   }
 
-  private problem(cache: Cache, preparation: Preparation): TuningProblem {
-    cache.problem ??= new TuningProblem(this.bench(cache, preparation).searchSetup());
-    return cache.problem;
+  private problem(
+    cache: Cache,
+    preparation: Preparation,
+    joined: readonly number[],
+  ): TuningProblem {
+    const key = joined.join();
+    if (cache.problem?.key !== key) {
+      const bench = this.bench(cache, preparation);
+      const problem = new TuningProblem(bench.searchSetup(bench.trialVariants(joined)));
+      cache.problem = { key, problem };
+    }
+    return cache.problem.problem;
   }
 
   private anchor(cache: Cache, task: Extract<Task, { kind: 'anchor' }>): TaskResult {
     const { compiled } = cache;
-    const problem = this.problem(cache, task.preparation);
+    const problem = this.problem(cache, task.preparation, []);
     const { seed, effort } = compiled.job.search;
     const { anchor: plan, attempts } = effortPlan(effort, problem.dimension);
     // Attempts at one end begin in different places, else they would all end in one.
@@ -98,12 +107,14 @@ export class TaskRunner {
   }
 
   private levels(cache: Cache, task: Extract<Task, { kind: 'levels' }>): TaskResult {
-    const problem = this.problem(cache, task.preparation);
+    const problem = this.problem(cache, task.preparation, task.joined);
     const { seed, effort } = cache.compiled.job.search;
     const efforts = effortPlan(effort, problem.dimension);
     const plan = task.explore ? efforts.sweep : efforts.refine;
     const best: FoundPoint[] = [];
     const points: FoundPoint[] = [];
+    const breaking = new Set<number>();
+    const bench = this.bench(cache, task.preparation);
     let evaluations = 0;
     let before: Float64Array<ArrayBufferLike> | undefined;
     problem.focusOn([]);
@@ -117,9 +128,11 @@ export class TaskRunner {
       evaluations += outcome.evaluations;
       points.push(...selectPoints(undefined, outcome.points));
       before = outcome.nearest.x;
-      if (outcome.best !== undefined) best.push(found(outcome.best));
+      if (outcome.best === undefined) return;
+      best.push(found(outcome.best));
+      if (task.explore) for (const k of tryOut(bench, outcome.best.x)) breaking.add(k);
     });
-    return { kind: 'levels', best, points, evaluations };
+    return { kind: 'levels', best, points, breaking: [...breaking], evaluations };
   }
 
   private score(bench: Workbench, which: 'present' | number): TaskResult {

@@ -43,6 +43,8 @@ export type Task =
       /** Numbers the task among all of its stage, for its random stream. */
       readonly stream: readonly [stage: number, index: number];
       readonly explore: boolean;
+      /** Trial models, by number, that have joined the search. */
+      readonly joined: readonly number[];
     }
   | {
       readonly kind: 'score';
@@ -57,6 +59,7 @@ export type Task =
       readonly x: readonly number[];
       /** Level under which it is solved again when a fresh model breaks a limit. */
       readonly level: number;
+      readonly joined: readonly number[];
     }
   | {
       readonly kind: 'nearest';
@@ -93,6 +96,8 @@ export type TaskResult =
       readonly best: readonly FoundPoint[];
       /** Further points worth starting from. */
       readonly points: readonly FoundPoint[];
+      /** Trial models, by number, that break a limit at one of the optima. */
+      readonly breaking: readonly number[];
       readonly evaluations: number;
     }
   | { readonly kind: 'score'; readonly scored: ScoredSettings }

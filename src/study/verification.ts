@@ -8,11 +8,11 @@ import { scoreFully } from './evaluation.js';
 import { solveFocused } from './focused-search.js';
 import { sampleVariant } from './preparation.js';
 import { scoredSettings } from './scored-settings.js';
-import type { TaskResult, Verified } from './tasks.js';
+import type { Task, TaskResult, Verified } from './tasks.js';
 import { TuningProblem } from './tuning-problem.js';
 import { dialledSettings, internalSettings } from './variables.js';
 import { bindingLimits, isWithin } from './verdict.js';
-import { freshCount, type Workbench } from './workbench.js';
+import { freshCount, trialRound, type Workbench } from './workbench.js';
 
 /** How often an alternative may be solved again. */
 const mostMendings = 3;
@@ -37,14 +37,12 @@ const bindingShare = 0.03;
  */
 export function verifyAlternative(
   bench: Workbench,
-  index: number,
-  proposed: readonly number[],
-  level: number,
+  { index, x: proposed, level, joined: trials }: Extract<Task, { kind: 'verify' }>,
 ): TaskResult {
   const { compiled } = bench;
   let x = Float64Array.from(proposed);
   let own = dialledSettings(compiled.space, x);
-  const joined: Response[][] = [];
+  const joined: Response[][] = bench.trialVariants(trials);
   let evaluations = 0;
   let mended = 0;
   let mayMend = compiled.space.variables.length > 0;
@@ -55,7 +53,8 @@ export function verifyAlternative(
       const verified = judge(bench, own, joined, examined.scores, mended);
       return { kind: 'verify', evaluations, verified };
     }
-    joined.push(...examined.breaking);
+    const variants = bench.freshVariants(round);
+    joined.push(...examined.breaking.map((k) => variants[k] as Response[]));
     mended += 1;
     const problem = new TuningProblem(bench.searchSetup(joined));
     const plan = effortPlan(compiled.job.search.effort, problem.dimension).mend;
@@ -85,20 +84,25 @@ function examine(
   own: readonly (OwnSettings | null)[],
   round: number,
   enough: number,
-): { readonly scores: ModelScore[]; readonly breaking: Response[][] } {
+): { readonly scores: ModelScore[]; readonly breaking: number[] } {
   const scores: ModelScore[] = [];
-  const breaking: Response[][] = [];
+  const breaking: number[] = [];
   if (bench.isExact) return { scores, breaking };
   const { tuning, compiled } = bench;
   const settings = internalSettings(compiled.space, own);
-  const variants = bench.freshVariants(round);
   for (const [k, model] of bench.freshModels(round).entries()) {
     const score = judgeModel(tuning, model, settings, quickly);
     scores.push(score);
-    if (!isWithin(tuning, score, false)) breaking.push(variants[k] as Response[]);
+    if (!isWithin(tuning, score, false)) breaking.push(k);
     if (breaking.length >= enough) break;
   }
   return { scores, breaking };
+}
+
+/** Trial models, by number, that a proposed set breaks a limit on: the first few. */
+export function tryOut(bench: Workbench, x: Float64Array): number[] {
+  const own = dialledSettings(bench.compiled.space, x);
+  return examine(bench, own, trialRound, joining).breaking;
 }
 
 /**

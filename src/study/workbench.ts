@@ -10,6 +10,9 @@ import { freshModels, searchModels } from './uncertainty.js';
 /** Fresh models a verification draws: without a failure they say 95 % with 95 % confidence. */
 export const freshCount = 59;
 
+/** Round whose fresh models are trials: what breaks there joins the search before it goes on. */
+export const trialRound = 1000;
+
 /** Everything one process keeps at hand while it works on one job; built from document and preparation. */
 export class Workbench {
   readonly tuning: TuningCase;
@@ -59,6 +62,13 @@ export class Workbench {
       this.fresh.set(round, models);
     }
     return models;
+  }
+
+  /** Trial models by their numbers. */
+  trialVariants(numbers: readonly number[]): Response[][] {
+    if (numbers.length === 0) return [];
+    const variants = this.freshVariants(trialRound);
+    return numbers.map((k) => variants[k] as Response[]);
   }
 
   /** @param extra  models that broke a limit in verification and join the search */
