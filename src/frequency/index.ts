@@ -8,4 +8,4 @@ export { frequencyGrid } from './grid.js';
 export { describeInteraction, type Interaction } from './interaction.js';
 export type { LoopMargins } from './margins.js';
 export { SampledLoops } from './sampled-loops.js';
-export { countUnstablePoles, type PoleCount, rowsOpenedBy } from './stability.js';
+export { countUnstablePoles, type PoleCount } from './stability.js';

@@ -2,7 +2,6 @@ export { ComplexMatrix, largestSingularValue } from './complex-matrix.js';
 export { eliminate, identity, multiplyMatrices, solveLinear } from './matrix.js';
 export { discretizeHeld, exponentiate } from './matrix-exponential.js';
 export {
-  addPolynomials,
   degree,
   dividePolynomials,
   evaluatePolynomial,

@@ -14,13 +14,6 @@ export function multiplyPolynomials(a: Polynomial, b: Polynomial): Polynomial {
   return product;
 }
 
-/** Sum of two polynomials; the result has the longer length. */
-export function addPolynomials(a: Polynomial, b: Polynomial): Polynomial {
-  const sum = new Float64Array(Math.max(a.length, b.length));
-  for (let i = 0; i < sum.length; i += 1) sum[i] = (a[i] ?? 0) + (b[i] ?? 0);
-  return sum;
-}
-
 /** Highest power with a coefficient other than zero; -1 for the zero polynomial. */
 export function degree(p: Polynomial): number {
   for (let i = p.length - 1; i >= 0; i -= 1) if (p[i] !== 0) return i;

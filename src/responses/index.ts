@@ -2,7 +2,6 @@ export { pathsOf, type Response } from './chains.js';
 export {
   denominatorOf,
   firstOrder,
-  inSeries,
   integrating,
   isIntegrator,
   isUnstableFactor,
@@ -19,6 +18,5 @@ export {
   type SampledUnit,
   type SharedBlock,
   sampleUnit,
-  splitDeadTime,
   type UnitPath,
 } from './sampling.js';

@@ -60,7 +60,7 @@ export interface SampledUnit {
 }
 
 /** Whole steps and the remaining fraction of a dead time; rounding error is not a fraction. */
-export function splitDeadTime(deadTime: number, step: number): { steps: number; rest: number } {
+function splitDeadTime(deadTime: number, step: number): { steps: number; rest: number } {
   const ratio = deadTime / step;
   const nearest = Math.round(ratio);
   if (Math.abs(ratio - nearest) < 1e-9 * Math.max(1, ratio)) return { steps: nearest, rest: 0 };

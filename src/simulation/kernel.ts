@@ -3,7 +3,7 @@ import type { SampledUnit } from '../responses/index.js';
 import type { Upset } from './upset.js';
 
 /** What a kernel counts for each loop in each upset, in this order. */
-export const kernelFigures = [
+const kernelFigures = [
   'iae',
   'itae',
   'peakDeviation',

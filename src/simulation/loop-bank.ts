@@ -30,7 +30,6 @@ export const LAST_OUTSIDE = 24;
 export const TRAVEL = 25;
 export const PEAK_MOVE = 26;
 export const LIMITED = 27;
-export const FIRST_STATE = FILTERED_1;
 export const SLOTS = 28;
 
 /** Coefficients and limits of one loop into its slots. */
@@ -62,7 +61,7 @@ export function restLoop(
   upset: Upset,
   band: number,
 ): void {
-  bank.fill(0, at + FIRST_STATE, at + SLOTS);
+  bank.fill(0, at + FILTERED_1, at + SLOTS);
   bank[at + BAND] = band;
   bank[at + OWN_SETPOINT] = upset.kind === 'setpoint' && upset.loop === loop ? upset.size : 0;
 }

@@ -23,7 +23,7 @@ const over = (value: number | null | undefined, by: number): number | null => {
 };
 
 /** Settings as a document, by tag; loops without settings are left out. */
-export function settingsDocument(
+function settingsDocument(
   bench: Workbench,
   settings: readonly (OwnSettings | null)[],
 ): SettingsDocument {
@@ -164,7 +164,7 @@ function worstMetrics(bench: Workbench, models: readonly ModelScore[], nominal: 
 }
 
 /** Speed on one model, and the largest peak sensitivity of the retuned loops over all of them. */
-export function objectivesOf(
+function objectivesOf(
   bench: Workbench,
   nominal: ModelScore,
   models: readonly ModelScore[],

@@ -161,7 +161,7 @@ function selectPoints(best: Point | undefined, points: readonly Point[]): FoundP
 }
 
 /** Where a search may begin: the reference, today's settings and the published rules, as far as allowed. */
-export function startingPoints(compiled: CompiledJob, preparation: Preparation): Float64Array[] {
+function startingPoints(compiled: CompiledJob, preparation: Preparation): Float64Array[] {
   const sets = [preparation.reference.settings, compiled.space.base];
   for (const { settings } of preparation.baselines) if (settings !== null) sets.push(settings);
   const points = sets.map((own) => pointOf(compiled.space, own));

@@ -31,14 +31,14 @@ export interface DecisionSpace {
  * Value of a variable at a position in [0, 1]: logarithmic, or linear where the range starts at 0, so
  * that a descent feels its way off zero.
  */
-export function valueAt(variable: Variable, position: number): number {
+function valueAt(variable: Variable, position: number): number {
   const { low, high } = variable;
   const p = Math.min(1, Math.max(0, position));
   return low > 0 ? low * (high / low) ** p : high * p;
 }
 
 /** Position of a value in its variable's range, clamped to it. */
-export function positionOf(variable: Variable, value: number): number {
+function positionOf(variable: Variable, value: number): number {
   const { low, high } = variable;
   const size = Math.abs(value);
   if (low > 0) {
@@ -74,7 +74,7 @@ export function pointOf(
  * A value as a person would dial it: on the controller's own step, else to three significant digits;
  * never outside the variable's range.
  */
-export function dialled(variable: Variable, value: number): number {
+function dialled(variable: Variable, value: number): number {
   const { low, high, dialStep } = variable;
   if (dialStep > 0) {
     let steps = Math.round(value / dialStep);

@@ -178,7 +178,7 @@ function baseOf(loops: readonly Loop[], i: number): number {
 }
 
 /** The loops above a loop in its cascade. */
-export function outersOf(network: LoopNetwork, loop: number): number[] {
+function outersOf(network: LoopNetwork, loop: number): number[] {
   const outer = at(network.outerOf, loop);
   return outer < 0 ? [] : [outer, ...outersOf(network, outer)];
 }
