@@ -8,7 +8,7 @@ import {
   type OwnSettings,
   type SettingsForm,
 } from '../controllers/index.js';
-import { pathsOf, type UnitPath } from '../responses/index.js';
+import { isUnstableFactor, pathsOf, type UnitPath } from '../responses/index.js';
 import type { LoopCase } from '../scoring/index.js';
 import { type RuleSettings, ruleSettings } from './baseline-settings.js';
 import { compileSpace } from './compiled-space.js';
@@ -62,6 +62,7 @@ export function compileJob(job: JobDocument): CompiledJob {
   const forms = job.loops.map((loop, i) => compileForm(loop, loops[i] as LoopCase));
   sayAssumptions(job, assumed);
   const paths = pathsOf(nominal, job.unit.measurements.length);
+  refuseUnheld(job, paths, network);
   const rules = ruleSettings(job, paths, network, loops, forms);
   return {
     job,
@@ -80,6 +81,33 @@ export function compileJob(job: JobDocument): CompiledJob {
     scan: commonScan(job),
     assumed,
   };
+}
+
+/**
+ * A PV that drifts or runs away on an input no closed loop answers cannot be held by any settings.
+ * @throws {CodedError} DOCUMENT_INVALID
+ */
+function refuseUnheld(job: JobDocument, paths: readonly UnitPath[], network: LoopNetwork): void {
+  const driven = new Set(
+    network.loops.flatMap((l) => (l.automatic && 'source' in l.drives ? [l.drives.source] : [])),
+  );
+  const setpoints = new Set(network.loops.map((l) => l.setpointSource));
+  const unstableCount = (path: UnitPath): number =>
+    path.model.factors.filter(isUnstableFactor).length;
+  network.loops.forEach((loop, i) => {
+    if (!loop.automatic) return;
+    const into = paths.filter((p) => p.measurement === loop.measurement);
+    const isHeld = (p: UnitPath): boolean => driven.has(p.source) || setpoints.has(p.source);
+    const held = into.filter(isHeld).reduce((most, p) => Math.max(most, unstableCount(p)), 0);
+    const free = into.find((p) => !isHeld(p) && unstableCount(p) > held);
+    if (free === undefined) return;
+    const inputs = [...job.unit.actuators, ...job.unit.disturbances];
+    const { tag, measurement } = job.loops[i] as LoopDocument;
+    throw new CodedError(
+      'DOCUMENT_INVALID',
+      `unit.responses (${inputs[free.source]?.tag} -> ${measurement}): this response integrates or is unstable and no actuator's is, so ${tag} cannot hold ${measurement}; allowed: the same integrator in the response of an actuator that a closed loop drives`,
+    );
+  });
 }
 
 /**

@@ -186,6 +186,29 @@ describe('a study', () => {
     expect(infeasible?.words.join(' ')).toContain('TC-1');
   });
 
+  it('refuses a disturbance that integrates into a PV no actuator can hold', async () => {
+    const document = pair((job) => {
+      job.unit.disturbances = [{ tag: 'LEAK', unit: 't/h', step: 1 }];
+      job.unit.responses.push({
+        from: 'LEAK',
+        to: 'TI-1',
+        model: { kind: 'integrating', rate: 0.1 },
+      });
+    });
+    await expect(solve(document)).rejects.toThrow(/LEAK -> TI-1.*TC-1 cannot hold TI-1/);
+  });
+
+  it('says so where bounds and maxChange leave nothing to search', async () => {
+    const { front } = await solve(
+      pair((job) => {
+        for (const loop of job.loops) loop.maxChange = 1;
+      }),
+    );
+    expect(front.alternatives).toEqual([]);
+    expect(front.infeasible?.words.join()).toContain('nothing to search');
+    expect(front.present?.objectives.speed).toBeCloseTo(1, 12);
+  });
+
   it('finds for one loop with dead time what a fine grid of settings finds', async () => {
     const document = singleLoop();
     document.search = { alternatives: 4, effort: 'standard', models: 1 };
