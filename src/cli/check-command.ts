@@ -54,6 +54,7 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
       scan: inJobUnit(tuning.scan),
       step: inJobUnit(tuning.scan / tuning.stepsPerScan),
       searchStep: inJobUnit(steps.searching),
+      searchError: preparation.searchError,
       horizon: inJobUnit((tuning.steps * tuning.scan) / tuning.stepsPerScan),
       models: bench.variants.length,
       limits: preparation.limits.length,

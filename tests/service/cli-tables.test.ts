@@ -272,6 +272,7 @@ describe('the page of a check', () => {
       scan: 0.1,
       step: 0.05,
       searchStep: 0.2,
+      searchError: 0.012,
       horizon: 90,
       models: 8,
       limits: 4,

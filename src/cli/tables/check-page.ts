@@ -38,6 +38,8 @@ export interface CheckReport {
     readonly scan: number;
     readonly step: number;
     readonly searchStep: number;
+    /** Largest error of speed at that step, seen on settings from slack to brisk; a share. */
+    readonly searchError: number;
     readonly horizon: number;
     readonly models: number;
     readonly limits: number;
@@ -124,7 +126,7 @@ function runFacts({ run, unit, reference, present, estimate }: CheckReport, pape
   const steps =
     run.searchStep === run.step
       ? `${time(run.step)}, in the search too`
-      : `${time(run.step)}; the search takes ${time(run.searchStep)}, shown to differ little`;
+      : `${time(run.step)}; the search takes ${time(run.searchStep)}, its speeds within ${percent(run.searchError)} of these`;
   const speed = {
     stable: "1.00 is as fast as today's settings",
     unstable: `today's settings are unstable, so 1.00 is as fast as ${reference}`,
@@ -157,3 +159,6 @@ function roughly(seconds: number): string {
   if (seconds < 5400) return `${Math.max(2, Math.round(seconds / 60))} min`;
   return duration(Math.round(seconds / 600) * 600);
 }
+
+/** A share in percent, to two digits. */
+const percent = (share: number): string => `${Number((100 * share).toPrecision(2))} %`;
