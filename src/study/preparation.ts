@@ -1,32 +1,28 @@
-import type { ControllerSettings, OwnSettings, SettingsForm } from '../controllers/index.js';
-import { toOwn } from '../controllers/index.js';
-import type { FrequencyFigures } from '../frequency/index.js';
-import { pathsOf, type Response, sampleUnit } from '../responses/index.js';
 import {
-  gridDensity,
+  type ControllerSettings,
+  type OwnSettings,
+  type SettingsForm,
+  toOwn,
+} from '../controllers/index.js';
+import type { FrequencyFigures } from '../frequency/index.js';
+import { type Response, sampleUnit } from '../responses/index.js';
+import {
   type Limit,
   referenceSpeed,
-  type SampledModel,
   type SpeedReference,
-  sampleModel,
   simulateUpsets,
   surveyModel,
   type TuningCase,
   type UpsetFigures,
 } from '../scoring/index.js';
+import { assumedLimits, worstOfPresent } from './assumed-limits.js';
 import type { RuleSettings } from './baseline-settings.js';
 import type { CompiledJob } from './compiled-job.js';
-import {
-  leastHorizon,
-  longestDeadTime,
-  mostSteps,
-  roundHorizon,
-  stepsBetweenScans,
-} from './horizon.js';
+import { leastHorizon, mostSteps, roundHorizon, stepsBetweenScans } from './horizon.js';
 import { chooseSearchStep } from './search-step.js';
 import { statedLimits } from './stated-limits.js';
+import { sampleVariant, tuningCaseOf } from './tuning-cases.js';
 import { searchModels } from './uncertainty.js';
-import { upsetsOf } from './upsets.js';
 import { internalSettings, pointOf, settingsAt } from './variables.js';
 
 /** What is fixed once for a job, before anything is searched; plain data, the same in every process. */
@@ -53,48 +49,8 @@ export interface Preparation {
   readonly assumed: readonly string[];
 }
 
-/** Share of the actuator's span that is taken as noise budget where none is stated. */
-const assumedNoiseShare = 0.005;
 /** Settings that peak higher than this say nothing of where the search will be. */
 const trialPeak = 3;
-/** How much a kept loop's peak sensitivity may grow. */
-const keptGrowth = 1.05;
-
-/** A unit variant sampled for judging. */
-export function sampleVariant(
-  compiled: CompiledJob,
-  tuning: TuningCase,
-  responses: readonly Response[],
-  perDecade: number = gridDensity.judging,
-): SampledModel {
-  return sampleModel(
-    tuning,
-    pathsOf(responses, compiled.measurementCount),
-    compiled.sourceCount,
-    compiled.measurementCount,
-    perDecade,
-  );
-}
-
-/** The case a compiled job is judged by, with a horizon and limits. */
-export function tuningCaseOf(
-  compiled: CompiledJob,
-  fixed: Pick<Preparation, 'steps' | 'stepsPerScan' | 'limits'>,
-): TuningCase {
-  const { limits } = fixed;
-  return {
-    network: compiled.network,
-    loops: compiled.loops,
-    upsets: upsetsOf(compiled),
-    limits,
-    scan: compiled.scan,
-    stepsPerScan: fixed.stepsPerScan,
-    steps: fixed.steps,
-    longestDeadTime: longestDeadTime(compiled),
-    limitsSingularValues: limits.some((l) => l.quantity.startsWith('peakSingularValue')),
-    limitsManual: limits.some((l) => l.quantity === 'anySingleLoopInManual'),
-  };
-}
 
 const isStable = (figures: FrequencyFigures): boolean => figures.stability.unstable === 0;
 
@@ -280,65 +236,4 @@ function halved(
     const s = internal[i] as ControllerSettings;
     return toOwn({ ...s, kc: s.kc / 2 }, compiled.forms[i] as SettingsForm);
   });
-}
-
-interface PresentWorst {
-  /** By loop; null in manual. */
-  readonly noise: readonly (number | null)[];
-  readonly sensitivity: readonly (number | null)[];
-}
-
-/** Noise and peak sensitivity of today's settings, the worst over the models on which they are stable. */
-function worstOfPresent(
-  compiled: CompiledJob,
-  tuning: TuningCase,
-  present: readonly ControllerSettings[],
-  variants: readonly (readonly Response[])[],
-): PresentWorst {
-  const noise: (number | null)[] = compiled.loops.map(() => null);
-  const sensitivity: (number | null)[] = compiled.loops.map(() => null);
-  for (const variant of variants) {
-    const model = sampleVariant(compiled, tuning, variant);
-    surveyModel(tuning, model, present).loops.forEach((f, i) => {
-      if (f === null) return;
-      noise[i] = Math.max(noise[i] ?? 0, f.outputNoise);
-      sensitivity[i] = Math.max(sensitivity[i] ?? 0, f.peakSensitivity);
-    });
-  }
-  return { noise, sensitivity };
-}
-
-/** Limits taken where the document states none, and said. */
-function assumedLimits(
-  compiled: CompiledJob,
-  stated: readonly Limit[],
-  present: PresentWorst | null,
-  assumed: string[],
-): Limit[] {
-  const limits: Limit[] = [];
-  const budgets: string[] = [];
-  compiled.loops.forEach((loop, i) => {
-    const has = (quantity: Limit['quantity']): boolean =>
-      stated.some((l) => l.loop === i && l.quantity === quantity);
-    if (loop.role === 'retune' && !has('outputNoise')) {
-      const bound = Math.max(present?.noise[i] ?? 0, assumedNoiseShare * loop.outputSpan);
-      limits.push({ loop: i, quantity: 'outputNoise', bound, nominal: false });
-      budgets.push(compiled.job.loops[i]?.tag as string);
-    }
-    const before = present?.sensitivity[i] ?? null;
-    if (loop.role === 'keep' && before !== null && !has('peakSensitivity')) {
-      limits.push({
-        loop: i,
-        quantity: 'peakSensitivity',
-        bound: keptGrowth * before,
-        nominal: false,
-      });
-    }
-  });
-  if (budgets.length > 0) {
-    assumed.push(
-      `no outputNoise limit for ${budgets.join(', ')}: the larger of today's noise and 0.5 % of the output's span is taken`,
-    );
-  }
-  return limits;
 }

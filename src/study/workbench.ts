@@ -2,8 +2,9 @@ import type { SampledLoops } from '../frequency/index.js';
 import type { Response } from '../responses/index.js';
 import { gridDensity, type SampledModel, type TuningCase } from '../scoring/index.js';
 import type { CompiledJob } from './compiled-job.js';
-import { type Preparation, sampleVariant, tuningCaseOf } from './preparation.js';
+import type { Preparation } from './preparation.js';
 import { SearchSimulation } from './search-simulation.js';
+import { sampleVariant, tuningCaseOf } from './tuning-cases.js';
 import type { SearchSetup } from './tuning-problem.js';
 import { freshModels, searchModels } from './uncertainty.js';
 
