@@ -25,6 +25,7 @@ export {
 } from './limits.js';
 export { type LoopTimeFigures, summarizeLoop } from './loop-figures.js';
 export {
+  plainSpeed,
   referenceSpeed,
   type SpeedParts,
   type SpeedReference,

@@ -60,14 +60,23 @@ function unitValue(quantity: UnitQuantity, frequency: FrequencyFigures): number 
   }
 }
 
+/** The lesser of the factors by which the gain may be raised and lowered; null when neither is bounded. */
+function leastGainMargin(frequency: LoopFrequencyFigures | null): number | null {
+  const up = frequency?.gainMargin ?? null;
+  const down = frequency?.gainReduction ?? null;
+  if (down === null) return up;
+  return Math.min(up ?? Number.POSITIVE_INFINITY, 1 / down);
+}
+
 function loopValue(
   quantity: LoopQuantity,
   frequency: LoopFrequencyFigures | null,
   time: LoopTimeFigures | null,
 ): number | null {
   switch (quantity) {
-    case 'peakSensitivity':
     case 'gainMargin':
+      return leastGainMargin(frequency);
+    case 'peakSensitivity':
     case 'phaseMargin':
     case 'outputNoise':
       return frequency?.[quantity] ?? null;

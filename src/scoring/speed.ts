@@ -38,6 +38,13 @@ function termsOf(tuning: TuningCase, figures: readonly (readonly UpsetFigures[])
   return { tight, rates };
 }
 
+/** What speed is measured against where nothing stable is known: E itself. */
+export const plainSpeed = (tuning: TuningCase): SpeedReference => ({
+  total: 1,
+  meanTight: 1,
+  rates: tuning.loops.map(() => 1),
+});
+
 /** The reference's own terms. */
 export function referenceSpeed(
   tuning: TuningCase,

@@ -54,7 +54,9 @@ export function evaluateSettings(
   warnings: readonly Warning[],
 ): EvaluationDocument {
   const { compiled, tuning, preparation } = bench;
-  const { nominal, models, responses } = scoreFully(bench, own);
+  // The models that verify, too, so that `worst` here and in a front is the worst of the same kind.
+  const further = bench.isExact ? [] : bench.freshModels(0);
+  const { nominal, models, responses } = scoreFully(bench, own, further);
   const step = tuning.scan / tuning.stepsPerScan;
   return {
     format: evaluationFormat,

@@ -50,7 +50,7 @@ export function assembleFront(
         models: v.models,
         failures: v.failures,
         confidence:
-          job.search.models === 1 && v.models === 1 ? 1 : passingShare(v.failures, v.models),
+          job.search.models === 1 ? Number(v.failures === 0) : passingShare(v.failures, v.models),
         mended: v.mended,
       },
       detail: hashOf(detail),

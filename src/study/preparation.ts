@@ -1,28 +1,27 @@
-import {
-  type ControllerSettings,
-  type OwnSettings,
-  type SettingsForm,
-  toOwn,
-} from '../controllers/index.js';
-import type { FrequencyFigures } from '../frequency/index.js';
+import { CodedError } from '../base/index.js';
+import type { ControllerSettings } from '../controllers/index.js';
 import { type Response, sampleUnit } from '../responses/index.js';
 import {
   type Limit,
+  plainSpeed,
   referenceSpeed,
+  type SampledModel,
   type SpeedReference,
   simulateUpsets,
   surveyModel,
   type TuningCase,
-  type UpsetFigures,
 } from '../scoring/index.js';
 import { assumedLimits, worstOfPresent } from './assumed-limits.js';
 import type { RuleSettings } from './baseline-settings.js';
 import type { CompiledJob } from './compiled-job.js';
-import { leastHorizon, mostSteps, roundHorizon, stepsBetweenScans } from './horizon.js';
+import { leastHorizon, stepsBetweenScans } from './horizon.js';
+import { findReference, isStable, type ReferenceTuning } from './reference-tuning.js';
 import { chooseSearchStep } from './search-step.js';
+import { settleHorizon, stepsFor } from './settled-horizon.js';
 import { statedLimits } from './stated-limits.js';
 import { sampleVariant, tuningCaseOf } from './tuning-cases.js';
 import { searchModels } from './uncertainty.js';
+import { upsetsOf } from './upsets.js';
 import { internalSettings, pointOf, settingsAt } from './variables.js';
 
 /** What is fixed once for a job, before anything is searched; plain data, the same in every process. */
@@ -32,10 +31,7 @@ export interface Preparation {
   /** All limits: stated, and those taken because the document states none. */
   readonly limits: readonly Limit[];
   /** What a speed of 1 means. */
-  readonly reference: {
-    readonly method: string;
-    readonly settings: readonly (OwnSettings | null)[];
-  };
+  readonly reference: ReferenceTuning;
   readonly speed: SpeedReference;
   /** Scans in one step of the search, and what a speed of 1 means at that step. */
   readonly searchStride: number;
@@ -52,8 +48,6 @@ export interface Preparation {
 /** Settings that peak higher than this say nothing of where the search will be. */
 const trialPeak = 3;
 
-const isStable = (figures: FrequencyFigures): boolean => figures.stability.unstable === 0;
-
 /**
  * Fix horizon, step, reference and limits of a job.
  *
@@ -61,6 +55,12 @@ const isStable = (figures: FrequencyFigures): boolean => figures.stability.unsta
  */
 export function prepareJob(compiled: CompiledJob): Preparation {
   const assumed = [...compiled.assumed];
+  if (upsetsOf(compiled).length === 0) {
+    throw new CodedError(
+      'DOCUMENT_INVALID',
+      'loops: every setpoint, load and disturbance step is 0, so nothing would be simulated; allowed: at least one step that is not 0',
+    );
+  }
   const stepsPerScan = stepsBetweenScans(compiled);
   const stated = statedLimits(compiled);
   const { rules } = compiled;
@@ -77,9 +77,6 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     compiled.measurementCount,
     compiled.scan / stepsPerScan,
   );
-  const run = (settings: readonly ControllerSettings[], tuning: TuningCase): UpsetFigures[][] =>
-    simulateUpsets(tuning, unit, settings);
-
   // Enough for frequencies: the unit's own dynamics. How long to simulate depends on the reference.
   const open = provisional(stepsFor(compiled, stepsPerScan, leastHorizon(compiled, [])));
   const model = sampleVariant(compiled, open, nominal);
@@ -91,12 +88,21 @@ export function prepareJob(compiled: CompiledJob): Preparation {
   );
   const reference = presentIsStable
     ? { method: 'present', settings: compiled.space.base }
-    : firstStable(compiled, open, rules, variants);
+    : findReference(compiled, open, rules, variants);
   const internal = internalSettings(compiled.space, reference.settings);
 
-  const steps = settleHorizon(compiled, stepsPerScan, internal, provisional, run);
+  const isKnown = reference.method !== 'none';
+  const steps = settleHorizon(
+    compiled,
+    stepsPerScan,
+    unit,
+    isKnown ? slowAndReference(compiled, open, model, internal) : [],
+    provisional,
+  );
   const tuning = provisional(steps);
-  const speed = referenceSpeed(tuning, run(internal, tuning));
+  const speed = isKnown
+    ? referenceSpeed(tuning, simulateUpsets(tuning, unit, internal))
+    : plainSpeed(tuning);
   const limits = [
     ...stated,
     ...assumedLimits(
@@ -119,7 +125,9 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     const peaks = survey.loops.map((f) => f?.peakSensitivity ?? 0);
     return isStable(survey) && (t === 0 || Math.max(...peaks) < trialPeak);
   });
-  const search = chooseSearchStep(compiled, final, nominal, sane);
+  const search = isKnown
+    ? chooseSearchStep(compiled, final, nominal, sane)
+    : { stride: 1, speed, error: 0 };
   return {
     steps,
     stepsPerScan,
@@ -133,6 +141,25 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     baselines: rules,
     assumed,
   };
+}
+
+/**
+ * The reference, and the same with averaging levels as slow as the search may make them, where that
+ * is stable: what a horizon has to show.
+ */
+function slowAndReference(
+  compiled: CompiledJob,
+  tuning: TuningCase,
+  model: SampledModel,
+  reference: readonly ControllerSettings[],
+): (readonly ControllerSettings[])[] {
+  const slow = reference.map((s, i) => {
+    const loop = compiled.loops[i];
+    if (loop?.role !== 'retune' || loop.goal !== 'averaging') return s;
+    const by = Math.sqrt(compiled.job.loops[i]?.maxChange ?? 1);
+    return { ...s, kc: s.kc / by, ti: s.ti * by };
+  });
+  return isStable(surveyModel(tuning, model, slow)) ? [reference, slow] : [reference];
 }
 
 /** The reference with all retuned gains multiplied and integral times divided. */
@@ -159,81 +186,5 @@ function rulesInside(
     if (settings === null) return [];
     const x = pointOf(compiled.space, settings);
     return [internalSettings(compiled.space, settingsAt(compiled.space, x))];
-  });
-}
-
-const stepsFor = (compiled: CompiledJob, stepsPerScan: number, horizon: number): number =>
-  Math.min(
-    mostSteps,
-    Math.max(10 * stepsPerScan, Math.round((horizon * stepsPerScan) / compiled.scan)),
-  );
-
-/** The stated horizon, or one in which the reference tuning comes to rest, doubled twice at most. */
-function settleHorizon(
-  compiled: CompiledJob,
-  stepsPerScan: number,
-  reference: readonly ControllerSettings[],
-  provisional: (steps: number) => TuningCase,
-  run: (settings: readonly ControllerSettings[], tuning: TuningCase) => UpsetFigures[][],
-): number {
-  const { job, timeUnit } = compiled;
-  if (job.unit.horizon !== undefined) {
-    return stepsFor(compiled, stepsPerScan, job.unit.horizon * timeUnit);
-  }
-  let horizon = roundHorizon(leastHorizon(compiled, reference), timeUnit);
-  for (let doubling = 0; doubling < 2; doubling += 1) {
-    const tuning = provisional(stepsFor(compiled, stepsPerScan, horizon));
-    if (isAtRest(tuning, run(reference, tuning))) break;
-    horizon = roundHorizon(2 * horizon, timeUnit);
-  }
-  return stepsFor(compiled, stepsPerScan, horizon);
-}
-
-/** True when every tight loop that counts has come back to its setpoint in every upset. */
-function isAtRest(tuning: TuningCase, figures: readonly (readonly UpsetFigures[])[]): boolean {
-  return tuning.upsets.every(({ counted }, u) =>
-    counted.every((i) => {
-      const loop = tuning.loops[i];
-      if (loop === undefined || loop.goal !== 'tight' || loop.weight === 0) return true;
-      return figures[u]?.[i]?.settlingTime !== null;
-    }),
-  );
-}
-
-/** BLT, SIMC, or SIMC with its gains halved until it is stable on every model. */
-function firstStable(
-  compiled: CompiledJob,
-  tuning: TuningCase,
-  rules: readonly RuleSettings[],
-  variants: readonly (readonly Response[])[],
-): Preparation['reference'] {
-  const models = variants.map((v) => sampleVariant(compiled, tuning, v));
-  const holds = (settings: readonly (OwnSettings | null)[]): boolean => {
-    const internal = internalSettings(compiled.space, settings);
-    return models.every((m) => isStable(surveyModel(tuning, m, internal)));
-  };
-  for (const method of ['BLT', 'SIMC']) {
-    const rule = rules.find((r) => r.method === method && r.settings !== null);
-    if (rule?.settings && holds(rule.settings)) return { method, settings: rule.settings };
-  }
-  const simc = rules.find((r) => r.method === 'SIMC' && r.settings !== null)?.settings;
-  let settings = simc ?? compiled.space.base;
-  for (let halving = 1; halving <= 12; halving += 1) {
-    settings = halved(compiled, settings);
-    if (holds(settings)) return { method: `SIMC with gains halved ${halving} times`, settings };
-  }
-  return { method: 'SIMC with gains halved 12 times', settings };
-}
-
-/** Every retuned loop's gain halved, in its own terms. */
-function halved(
-  compiled: CompiledJob,
-  settings: readonly (OwnSettings | null)[],
-): (OwnSettings | null)[] {
-  const internal = internalSettings(compiled.space, settings);
-  return settings.map((own, i) => {
-    if (own === null || compiled.loops[i]?.role !== 'retune') return own;
-    const s = internal[i] as ControllerSettings;
-    return toOwn({ ...s, kc: s.kc / 2 }, compiled.forms[i] as SettingsForm);
   });
 }

@@ -110,3 +110,18 @@ export function internalSettings(
     own === null ? standing : toInternal(own, space.forms[i] as SettingsForm),
   );
 }
+
+/** Closer than this share to an end of its range, a setting lies on it. */
+const edgeShare = 0.005;
+
+/** The settings that lie on an end of their range, which bounds and maxChange set. */
+export function settingsAtEdge(
+  space: DecisionSpace,
+  settings: readonly (OwnSettings | null)[],
+): Variable[] {
+  return space.variables.filter((variable) => {
+    const size = Math.abs(settings[variable.loop]?.[variable.setting] ?? 0);
+    const { low, high } = variable;
+    return size <= low * (1 + edgeShare) || size >= high * (1 - edgeShare);
+  });
+}

@@ -10,7 +10,7 @@ import { scoredSettings } from './scored-settings.js';
 import type { Task, TaskResult, Verified } from './tasks.js';
 import { sampleVariant } from './tuning-cases.js';
 import { TuningProblem } from './tuning-problem.js';
-import { dialledSettings, internalSettings } from './variables.js';
+import { dialledSettings, internalSettings, settingsAtEdge } from './variables.js';
 import { bindingLimits, isWithin } from './verdict.js';
 import { freshCount, trialRound, type Workbench } from './workbench.js';
 
@@ -124,8 +124,10 @@ function judge(
     .slice(0, bench.variants.length)
     .every((score, m) => isWithin(tuning, score, m === 0));
   const outside = fresh.filter((score) => !isWithin(tuning, score, false)).length;
-  const models = bench.isExact ? 1 : freshCount;
-  const failures = bench.isExact ? Number(!searchSetHolds) : outside;
+  const models = bench.isExact ? bench.variants.length : freshCount;
+  const failures = bench.isExact
+    ? searched.filter((score, m) => !isWithin(tuning, score, m === 0)).length
+    : outside;
   const all = [...searched, ...fresh];
   const scored = scoredSettings(bench, own, nominal, all, true);
   const { upsets: _, ...withoutUpsets } = scored.nominal;
@@ -138,10 +140,16 @@ function judge(
     models,
     failures,
     mended,
-    binding: bindingLimits(tuning, all, bindingShare).map((limit) => ({
-      limit: limit.quantity,
-      loop: limit.loop === null ? null : (compiled.job.loops[limit.loop]?.tag as string),
-    })),
+    binding: [
+      ...bindingLimits(tuning, all, bindingShare).map((limit) => ({
+        limit: limit.quantity,
+        loop: limit.loop === null ? null : (compiled.job.loops[limit.loop]?.tag as string),
+      })),
+      ...settingsAtEdge(compiled.space, own).map(({ loop, setting }) => ({
+        limit: `range of ${setting}`,
+        loop: compiled.job.loops[loop]?.tag as string,
+      })),
+    ],
     detail: { scored, responses: [...responses] },
   };
 }

@@ -33,7 +33,7 @@ export class Workbench {
 
   /** True when the unit is taken as exact: there is then nothing fresh to verify on. */
   get isExact(): boolean {
-    return this.compiled.job.search.models === 1 && this.variants.length === 1;
+    return this.compiled.job.search.models === 1;
   }
 
   /** s between steps of the simulation that judges, and of the one that searches. */
@@ -42,6 +42,11 @@ export class Workbench {
     const judging = scan / stepsPerScan;
     const { searchStride } = this.preparation;
     return { judging, searching: searchStride === 1 ? judging : scan * searchStride };
+  }
+
+  /** How many models a tuning set is scored on: the search's, and a verification's fresh ones. */
+  get scoredModels(): number {
+    return this.variants.length + (this.isExact ? 0 : freshCount);
   }
 
   /** The search's models, sampled for judging; nominal first. */

@@ -198,6 +198,77 @@ describe('a study', () => {
     await expect(solve(document)).rejects.toThrow(/LEAK -> TI-1.*TC-1 cannot hold TI-1/);
   });
 
+  it('takes a horizon in which a slow level has peaked and come to rest', async () => {
+    // Hand check: rate 0.05, gain 0.25, integral 40 swings with a period near 6 h.
+    const { front } = await solve({
+      format: 'heddle-job/1',
+      unit: {
+        name: 'Surge drum',
+        timeUnit: 'min',
+        measurements: [{ tag: 'LI-1', unit: '%', low: 0, high: 100, noise: 0.05 }],
+        actuators: [{ tag: 'LV-1', unit: '%', low: 0, high: 100, at: 50 }],
+        responses: [
+          { from: 'LV-1', to: 'LI-1', model: { kind: 'integrating', rate: 0.05, deadTime: 0.5 } },
+        ],
+      },
+      loops: [
+        {
+          tag: 'LC-1',
+          measurement: 'LI-1',
+          drives: 'LV-1',
+          goal: 'averaging',
+          controller: { terms: 'PI', scan: 0.5, gainIn: 'engineering' },
+          present: { gain: 1, integral: 10 },
+          limits: { levelBand: 6.5 },
+        },
+      ],
+      search: { alternatives: 3, effort: 'quick', models: 1 },
+    });
+    expect(front.horizon).toBeGreaterThan(200);
+    for (const { nominal } of front.alternatives) {
+      expect(nominal.loops['LC-1']?.peakDeviation).toBeLessThanOrEqual(6.5);
+    }
+  });
+
+  it('finds a stable reference by itself where neither today nor any rule is stable', async () => {
+    const { front } = await solve({
+      format: 'heddle-job/1',
+      unit: {
+        name: 'Exothermic stage',
+        timeUnit: 'min',
+        measurements: [{ tag: 'TI-1', unit: 'degC', low: 0, high: 200, noise: 0.05 }],
+        actuators: [{ tag: 'FV-1', unit: '%', low: 0, high: 100, at: 50 }],
+        responses: [
+          {
+            from: 'FV-1',
+            to: 'TI-1',
+            model: {
+              kind: 'transfer-function',
+              numerator: [2],
+              denominator: [10, -1],
+              deadTime: 0.5,
+            },
+          },
+        ],
+      },
+      loops: [
+        {
+          tag: 'TC-1',
+          measurement: 'TI-1',
+          drives: 'FV-1',
+          controller: { terms: 'PI', scan: 0.1, gainIn: 'engineering' },
+          // Below the 0.5 that holds the process at all.
+          present: { gain: 0.4, integral: 30 },
+          maxChange: 10,
+        },
+      ],
+      search: { alternatives: 3, effort: 'quick', models: 1 },
+    });
+    expect(front.present?.stable).toBe(false);
+    expect(front.reference).toBe('the first stable settings found');
+    expect(front.alternatives.length).toBeGreaterThan(0);
+  });
+
   it('says so where bounds and maxChange leave nothing to search', async () => {
     const { front } = await solve(
       pair((job) => {

@@ -17,6 +17,11 @@ import { zieglerNichols, zieglerNicholsSource } from './ziegler-nichols.js';
  * failing that its present settings, and the baseline says so.
  */
 export function publishedBaselines(context: RuleContext): Baseline[] {
+  const retuned = context.loops.filter((l) => l.retuned);
+  if (retuned.length > 0 && retuned.every((l) => l.averaging)) {
+    // Averaging levels are tuned as such whatever the rule: one set, under its own name.
+    return [loopByLoop(context, 'averaging PI', 'common practice', simc)];
+  }
   return [
     loopByLoop(context, 'SIMC', simcSource, simc),
     loopByLoop(context, 'lambda', lambdaSource, lambda),
@@ -40,6 +45,8 @@ interface Assembly {
   readonly remarks: Map<number, string>;
   /** Loops left without any settings. */
   readonly missing: string[];
+  /** No loop is by the rule: all are as they are today. */
+  readonly unmoved: boolean;
 }
 
 function loopByLoop(
@@ -54,11 +61,14 @@ function loopByLoop(
 function finish(
   method: string,
   source: string,
-  { settings, remarks, missing }: Assembly,
+  { settings, remarks, missing, unmoved }: Assembly,
 ): Baseline {
   if (missing.length > 0) {
     const reason = `no rule applies to ${missing.join(', ')}, and there are no present settings`;
     return { method, source, settings: null, reason };
+  }
+  if (unmoved) {
+    return { method, source, settings: null, reason: 'the rule applies to no loop of this unit' };
   }
   if (remarks.size > 0)
     return { method, source, settings, reason: [...remarks.values()].join('; ') };
@@ -71,6 +81,7 @@ function assemble(context: RuleContext, rule: LoopRule): Assembly {
   const settings: (ControllerSettings | null)[] = network.loops.map(() => null);
   const remarks = new Map<number, string>();
   const missing: string[] = [];
+  let moved = 0;
   for (const index of network.order.toReversed()) {
     const loop = context.loops[index] as RuleLoop;
     if (!(network.loops[index] as Loop).automatic) continue;
@@ -81,12 +92,13 @@ function assemble(context: RuleContext, rule: LoopRule): Assembly {
       const byRule = loop.averaging ? averagingLevel(own, network.loops[index] as Loop) : rule(own);
       const second = byRule ?? (rule === simc || loop.averaging ? null : simc(own));
       settings[index] = second ?? today;
+      if (second !== null) moved += 1;
       if (second === null && today !== null) remarks.set(index, `${loop.tag} as it is today`);
       else if (byRule === null) remarks.set(index, `${loop.tag} by SIMC`);
     }
     if (settings[index] === null) missing.push(loop.tag);
   }
-  return { settings, remarks, missing };
+  return { settings, remarks, missing, unmoved: moved === 0 };
 }
 
 /** BLT of the outermost tight loops, with the loops inside them by SIMC. */
