@@ -1,5 +1,5 @@
 import { Command } from 'commander';
-import { countSignChanges, evaluateSettings, type Workbench } from '../study/index.js';
+import { countSignChanges, describeUnit, type Workbench } from '../study/index.js';
 import { estimateSeconds } from './estimate.js';
 import { type JobFile, openWorkbench, readJobFile } from './job-file.js';
 import { jsonOption, threadsOption, wantsJson } from './options.js';
@@ -38,9 +38,7 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
   const { compiled, preparation, tuning, steps } = bench;
   const inJobUnit = (seconds: number): number =>
     Number((seconds / compiled.timeUnit).toPrecision(12));
-  const reference = preparation.reference.settings;
-  const { rga, rgaLoops, niederlinski } = evaluateSettings(bench, reference, provenance, []).scored
-    .nominal.unit;
+  const { rga, rgaLoops, niederlinski } = describeUnit(bench);
   const count = (kind: string): number =>
     tuning.upsets.filter(({ upset }) => upset.kind === kind).length;
   return {

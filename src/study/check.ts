@@ -19,6 +19,21 @@ export function countSignChanges(bench: Workbench): {
   return { models: signs.length, signChanges: signs.filter((sign) => sign !== signs[0]).length };
 }
 
+/** Steady-state interaction of the outermost loops, by tag. */
+export function describeUnit(bench: Workbench): {
+  readonly rga: number[][] | null;
+  readonly rgaLoops: string[];
+  readonly niederlinski: number | null;
+} {
+  const { compiled } = bench;
+  const { loops, relativeGains, niederlinski } = describeInteraction(
+    compiled.paths,
+    compiled.network,
+  );
+  const rgaLoops = loops.map((i) => compiled.job.loops[i]?.tag as string);
+  return { rga: relativeGains?.map((row) => [...row]) ?? null, rgaLoops, niederlinski };
+}
+
 /** What a study of a job will do at most, counted: for saying beforehand about how long it takes. */
 export interface PlannedWork {
   /** Tuning sets that the search evaluates. */

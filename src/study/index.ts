@@ -1,5 +1,5 @@
 export { canonicalText, hashOf } from './canonical.js';
-export { countSignChanges, type PlannedWork, planWork, trialRuns } from './check.js';
+export { countSignChanges, describeUnit, type PlannedWork, planWork, trialRuns } from './check.js';
 export { type CompiledJob, compileJob } from './compiled-job.js';
 export { evaluateSettings, type Provenance } from './evaluation.js';
 export { type Preparation, prepareJob } from './preparation.js';
