@@ -1,3 +1,4 @@
+import { exitCode } from './refusal.js';
 import { colouredPaint, type Paper, plainPaint } from './tables/paper.js';
 
 /** Columns of a page where nobody says how wide it is, and the most that is used of a wide one. */
@@ -27,12 +28,15 @@ export function writeJson(document: unknown): void {
 
 /**
  * Lets a reader leave early: `heddle ... | head` ends quietly once nobody reads what is still to
- * come. Without a reader for its notes a command goes on.
+ * come. Without a reader for its notes a command goes on. Output that cannot be written is a failure.
  */
 export function endQuietlyWithoutReader(): void {
   process.stdout.on('error', (error: NodeJS.ErrnoException) => {
     if (error.code === 'EPIPE') process.exit();
-    throw error;
+    const why =
+      error.code === 'ENOSPC' ? 'there is no room left' : `it cannot be written: ${error.code}`;
+    process.stderr.write(`standard output: ${why}\n`);
+    process.exit(exitCode.failed);
   });
   process.stderr.on('error', (error: NodeJS.ErrnoException) => {
     if (error.code !== 'EPIPE') throw error;

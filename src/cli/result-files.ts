@@ -30,10 +30,31 @@ export async function tryOutFile(option: string, path: string): Promise<void> {
  */
 export async function tryOutFolder(option: string, path: string): Promise<void> {
   try {
-    await mkdir(path, { recursive: true });
+    if (path === '') throw Object.assign(new Error('no folder is named'), { code: 'ENOENT' });
+    await makeFolder(resolve(path));
     await tryOutFolderOf(join(path, 'document.json'));
   } catch (error) {
     throw error instanceof Refusal ? error : unwritable(option, path, error);
+  }
+}
+
+/**
+ * Makes a folder and those above it that are missing, one by one: told to make them all, the system's
+ * call never comes back in a file system that refuses new folders as though their parent were missing.
+ */
+async function makeFolder(path: string): Promise<void> {
+  const missing: string[] = [];
+  let about = await statOf(path);
+  for (let place = path; about === null; about = await statOf(place)) {
+    missing.unshift(place);
+    place = dirname(place);
+  }
+  if (!about.isDirectory()) throw Object.assign(new Error('a file'), { code: 'EEXIST' });
+  for (const place of missing) {
+    await mkdir(place).catch((error: { code?: string }) => {
+      if (error.code !== 'ENOENT') throw error;
+      throw Object.assign(new Error('takes no folders'), { code: 'no folders' });
+    });
   }
 }
 
@@ -114,6 +135,7 @@ const reasons: Readonly<Record<string, readonly [problem: string, value: string]
   EPERM: ['nothing may be written there', 'no permission'],
   EROFS: ['nothing can be written there', 'a file system that is read only'],
   ENOSPC: ['there is no room left', 'a full file system'],
+  'no folders': ['no folder can be made there', 'a file system that takes no new folders'],
   ENAMETOOLONG: ['there can be no such file', 'a name that is too long'],
 };
 

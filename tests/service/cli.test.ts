@@ -1,3 +1,4 @@
+import { spawnSync } from 'node:child_process';
 import { createHash } from 'node:crypto';
 import {
   closeSync,
@@ -10,6 +11,7 @@ import {
 } from 'node:fs';
 import { join } from 'node:path';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import { tryOutFolder } from '../../src/cli/result-files.js';
 import {
   alternativeDetailSchema,
   evaluationSchema,
@@ -19,12 +21,13 @@ import {
 import type { Loose } from '../documents.js';
 import { build, type Ended, heddle } from './built-program.js';
 import { faultyJobs } from './faulty-jobs.js';
-import { Scratch } from './scratch.js';
+import { checkout, Scratch } from './scratch.js';
 import { singleLoop } from './single-loop.js';
 
 const escapeCharacter = String.fromCharCode(27);
 const scratch = new Scratch();
 const { folder } = scratch;
+const entry = join(checkout, 'dist/src/cli/main.js');
 const here = (...path: string[]): string => join(folder, ...path);
 
 const jobWith = (change: (job: Loose) => void): string => {
@@ -250,6 +253,17 @@ describe('evaluate', () => {
     expect({ code, signal, stderr }).toEqual({ code: 0, signal: null, stderr: '' });
   });
 
+  it.skipIf(!existsSync('/dev/full'))('says that standard output has no room left', () => {
+    const full = openSync('/dev/full', 'w');
+    const { status, stderr } = spawnSync(process.execPath, [entry, 'evaluate', here('job.json')], {
+      stdio: ['ignore', full, 'pipe'],
+      encoding: 'utf8',
+    });
+    closeSync(full);
+    expect(stderr).toBe('standard output: there is no room left\n');
+    expect(status).toBe(1);
+  });
+
   it('writes no colours where there is no terminal', async () => {
     const { stdout } = await heddle(['evaluate', here('job.json')], {
       environment: { TERM: 'xterm' },
@@ -343,6 +357,21 @@ describe('solve', () => {
       expect(stderr).not.toContain('stage');
     }
     expect(existsSync(here('front.json'))).toBe(false);
+  });
+
+  it.skipIf(!existsSync('/proc/self'))('refuses a folder that no one can make', async () => {
+    for (const place of ['/proc/heddle', '/proc/heddle/responses']) {
+      const parameters = ['--out', here('front.json'), '--responses', place];
+      const { code, stderr } = await heddle(['solve', here('job.json'), ...parameters]);
+      expect(code).toBe(1);
+      expect(stderr).toMatch(/^--responses \(\/proc\/heddle.*\): /);
+    }
+  });
+
+  it('makes a folder for responses with those above it, one by one', async () => {
+    await tryOutFolder('--responses', here('above', 'below', 'responses'));
+    await tryOutFolder('--responses', here('above', 'below', 'responses'));
+    expect(readdirSync(here('above', 'below', 'responses'))).toEqual([]);
   });
 
   it('stops on Ctrl-C, says so and leaves nothing behind', async () => {
