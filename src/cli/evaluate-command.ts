@@ -48,7 +48,7 @@ async function evaluate(file: string, options: Options): Promise<ExitCode> {
     return exitCode.done;
   }
   const verdicts = judgeLimits(bench.preparation.limits, job, evaluation);
-  const view = { evaluation, job, subject, verdicts };
+  const view = { evaluation, job, subject, verdicts, assumed: bench.preparation.assumed };
   process.stdout.write(evaluationPage(view, paperOf(process.stdout)));
   return exitCode.done;
 }

@@ -149,6 +149,24 @@ describe('the page of a front', () => {
     expect(frontPage(front(), job, wide)).toMatch(/A02 +TC-110 +1\.1 -> +1\.32 +x1\.20/);
   });
 
+  it('gives the ratio of the gain where a proportional band is dialled', () => {
+    const banded = structuredClone(job) as Loose;
+    banded.loops[0].controller.gainIn = 'proportional-band';
+    expect(frontPage(front(), banded, plainPaper)).toMatch(/A02 +TC-110 +1\.32 +x0\.83 gain/);
+  });
+
+  it('says how averaging loops count, and claims no fresh models of an exact unit', () => {
+    const legend = (changed: Loose) => frontPage(front(), changed, plainPaper).replace(/\s+/g, ' ');
+    const exact = structuredClone(job) as Loose;
+    exact.search.models = 1;
+    exact.unit.operatingPoints = [];
+    for (const loop of exact.loops) loop.goal = 'tight';
+    expect(legend(exact)).not.toMatch(/never saw|confidence|Averaging|on any model/);
+    exact.loops[1].goal = 'averaging';
+    exact.search.models = 8;
+    expect(legend(exact)).toMatch(/how fast they move their output.*never saw/);
+  });
+
   it('leaves a loop out that no alternative changes', () => {
     expect(frontPage(front(), job, plainPaper)).not.toContain('PC-130');
   });
@@ -208,6 +226,7 @@ describe('the page of an evaluation', () => {
   const view = (set: ScoredSettings) => ({
     job,
     subject: "Today's settings",
+    assumed: ['no outputNoise limit for LC-120: a budget is taken'],
     verdicts: [
       {
         loop: 'TC-110',
@@ -239,8 +258,24 @@ describe('the page of an evaluation', () => {
     expect(page).toMatch(/1 of 1 broken/);
     expect(page).toMatch(/TC-110 +overshoot +at most 10 % +12 %/);
     expect(page).toContain('loops[0]: seldom meant (1)');
+    expect(page).toMatch(/Assumed\n {2}- no outputNoise limit for LC-120/);
+    expect(page.replace(/\s+/g, ' ')).toContain(
+      'IAE is the sum over all upsets, each by its weight',
+    );
     expect(page).toMatch(/LC-120 +-0\.50 +1\.50/);
     expect(widest(page)).toBeLessThanOrEqual(80);
+  });
+
+  it('names the horizon where a step has not settled, and one model as one', () => {
+    const set = scored(today, 1);
+    set.nominal.loops['TC-110'] = { ...metrics, settlingTime: null };
+    const single = structuredClone(job) as Loose;
+    single.search.models = 1;
+    single.unit.operatingPoints = [];
+    expect(evaluationPage({ ...view(set), job: single }, plainPaper)).toMatch(/12\.0 % +> 150 /);
+    single.unit.operatingPoints = [{ name: 'low', responses: [] }];
+    const page = evaluationPage({ ...view(set), job: single }, plainPaper);
+    expect(page).toContain('2 models of the unit');
   });
 
   it('gives no figures of settings that are unstable, and says why', () => {

@@ -75,8 +75,11 @@ function tableOf(view: View, withToday: boolean, paper: Paper): string {
     });
   });
   const proposed = proposals.map(({ settings }) =>
-    changing.map(({ tag }) =>
-      shown.map((name) => changed(present[tag]?.[name], settings[tag]?.[name], withToday)),
+    changing.map(({ tag, controller }) =>
+      shown.map((name) => {
+        const inverse = name === 'gain' && controller.gainIn === 'proportional-band';
+        return changed(present[tag]?.[name], settings[tag]?.[name], { withToday, inverse });
+      }),
     ),
   );
   const all = [today, ...proposed];
@@ -100,12 +103,19 @@ function tableOf(view: View, withToday: boolean, paper: Paper): string {
 
 const empty: Cell = { before: '', value: '', behind: '' };
 
-function changed(before: number | undefined, after: number | undefined, withToday: boolean): Cell {
+/** @param inverse  a proportional band: what is said of it is the ratio of the gain it stands for */
+function changed(
+  before: number | undefined,
+  after: number | undefined,
+  { withToday, inverse }: { readonly withToday: boolean; readonly inverse: boolean },
+): Cell {
   if (after === undefined) return empty;
+  const hasRatio = before !== undefined && before !== 0;
+  const ratio = hasRatio ? (inverse ? before / after : after / before) : null;
   return {
     before: withToday && before !== undefined ? `${number(before)} -> ` : '',
     value: number(after),
-    behind: before === undefined || before === 0 ? '' : `x${fixed(after / before, 2)}`,
+    behind: ratio === null ? '' : `x${fixed(ratio, 2)}${inverse ? ' gain' : ''}`,
   };
 }
 

@@ -17,6 +17,8 @@ export interface EvaluationView {
   /** Whose settings they are. */
   readonly subject: string;
   readonly verdicts: readonly LimitVerdict[];
+  /** What was taken because the document does not state it, limits included. */
+  readonly assumed: readonly string[];
 }
 
 /** True where the unit is taken as exact, so that nominal and worst are the same. */
@@ -73,7 +75,7 @@ export function marginsTable(view: EvaluationView, paper: Paper): string {
 
 /** What each closed loop does in all upsets. */
 export function responsesTable(view: EvaluationView, paper: Paper): string {
-  const { timeUnit } = view.evaluation;
+  const { timeUnit, horizon } = view.evaluation;
   const columns = [
     ...leading(view),
     { head: 'overshoot', lean: 'right' },
@@ -86,7 +88,7 @@ export function responsesTable(view: EvaluationView, paper: Paper): string {
   const rows = twoRows(view, paper, (loop, metrics, { unit }) => {
     const units = loopUnits(view.job, loop);
     const stepped = isStepped(view, loop.tag);
-    const late = unit.stable && stepped ? paper.paint.bad('not') : noFigure;
+    const late = unit.stable && stepped ? paper.paint.bad(`> ${significant(horizon)}`) : noFigure;
     return [
       metrics.overshoot === null ? noFigure : `${metrics.overshoot.toFixed(1)} %`,
       metrics.settlingTime === null ? late : significant(metrics.settlingTime),

@@ -21,17 +21,26 @@ export function evaluationPage(view: EvaluationView, paper: Paper): string {
     heading,
     section('Result', summary(view, paper), paper),
     section('Loops: margins', marginsTable(view, paper), paper),
-    section('Loops: response to the upsets', responsesTable(view, paper), paper),
+    section(
+      'Loops: response to the upsets',
+      `${responsesTable(view, paper)}\n${responsesNote(view, paper)}`,
+      paper,
+    ),
     section('Limits', limitsPart(view, paper), paper),
     section('Unit', unitPart(view, paper), paper),
+    view.assumed.length === 0 ? null : section('Assumed', remarks(view.assumed, paper), paper),
     noticesPart(evaluation, paper),
   ]);
 }
 
+/** Models a set is scored on: never fewer than there are operating points, the nominal one included. */
+const modelsOf = ({ search, unit }: JobDocument): number =>
+  Math.max(search.models, 1 + unit.operatingPoints.length);
+
 function conditions({ horizon, step, timeUnit }: EvaluationDocument, job: JobDocument): string {
   const models = isExact(job)
     ? 'the unit taken as exact'
-    : `${job.search.models} models of the unit`;
+    : `${counted(modelsOf(job), 'model')} of the unit`;
   return `over ${significant(horizon)} ${timeUnit} in steps of ${significant(step)} ${timeUnit}, ${models}`;
 }
 
@@ -65,9 +74,18 @@ function summary({ evaluation, job }: EvaluationView, paper: Paper): string {
   return facts(list, paper);
 }
 
+function responsesNote({ job }: EvaluationView, paper: Paper): string {
+  const { setpoint, load, disturbance } = job.search.upsetWeights;
+  const text =
+    `IAE is the sum over all upsets, each by its weight (setpoint ${significant(setpoint)}, load ` +
+    `${significant(load)}, disturbance ${significant(disturbance)}), in PV unit x ${job.unit.timeUnit}.`;
+  const lines = wrapped(text, Math.max(30, paper.width - 2)).map((line) => `  ${line}`);
+  return paper.paint.faint(lines.join('\n'));
+}
+
 function limitsPart({ verdicts, evaluation }: EvaluationView, paper: Paper): string {
   const { paint } = paper;
-  if (verdicts.length === 0) return '  none stated';
+  if (verdicts.length === 0) return '  none';
   const judged = verdicts.filter(({ holds }) => holds !== null);
   const broken = judged.filter(({ holds }) => holds === false);
   const unknown = verdicts.length - judged.length;

@@ -6,6 +6,7 @@ import type {
   SettingsDocument,
 } from '../../contract/index.js';
 import { changesTable, changingLoops } from './changes-table.js';
+import { isExact } from './evaluation-loops.js';
 import { counted, duration, noFigure, significant } from './figures.js';
 import { frontTable } from './front-table.js';
 import { grid } from './grid.js';
@@ -30,7 +31,7 @@ export function frontPage(front: FrontDocument, job: JobDocument, paper: Paper):
     heading(front, paper),
     section(
       found === 0 ? 'By the same yardstick' : 'Compromises, the most robust first',
-      `${frontTable(front, paper)}\n${legend(front, paper)}`,
+      `${frontTable(front, paper)}\n${legend(front, job, paper)}`,
       paper,
     ),
     front.infeasible === null ? null : infeasiblePart(front.infeasible, job, paper),
@@ -49,13 +50,14 @@ function heading(front: FrontDocument, paper: Paper): string {
   return `${paper.paint.strong(front.unitName)}\n${words}`;
 }
 
-function legend(front: FrontDocument, paper: Paper): string {
+function legend(front: FrontDocument, job: JobDocument, paper: Paper): string {
   const reference = front.reference === 'present' ? "today's settings" : front.reference;
   const sentences = [
     `Speed and Ms: less is better. A speed of 1.00 is as fast as ${reference}, its worst is that of the worst model.`,
-    'Ms is the largest peak sensitivity of a retuned loop on any model.',
+    ...averagingWords(job),
+    `Ms is the largest peak sensitivity of a retuned loop${isExact(job) ? '' : ' on any model'}.`,
     'Gain margins are ratios, phase margins degrees.',
-    ...verificationWords(front),
+    ...verificationWords(front, job),
   ];
   const lines = wrapped(sentences.join(' '), Math.max(30, paper.width - 2)).map(
     (line) => `  ${line}`,
@@ -63,11 +65,18 @@ function legend(front: FrontDocument, paper: Paper): string {
   return paper.paint.faint(lines.join('\n'));
 }
 
+/** What averaging loops, whose error does not count, add to speed. */
+function averagingWords({ loops }: JobDocument): string[] {
+  const averaging = loops.filter(({ goal, task }) => goal === 'averaging' && task !== 'manual');
+  if (averaging.length === 0) return [];
+  return ['Averaging loops count in speed by how fast they move their output.'];
+}
+
 /** What the counts of verified models say. */
-function verificationWords({ alternatives }: FrontDocument): string[] {
+function verificationWords({ alternatives }: FrontDocument, { search }: JobDocument): string[] {
   const least = Math.min(...alternatives.map(({ verified }) => verified.confidence));
   const models = Math.min(...alternatives.map(({ verified }) => verified.models));
-  if (alternatives.length === 0 || models <= 1) return [];
+  if (alternatives.length === 0 || models <= 1 || search.models === 1) return [];
   const share = `${Math.floor(1000 * least) / 10} %`;
   return [
     `Each alternative was judged on models that the search never saw; with 95 % confidence at least ${share} of all models like these are within every limit.`,
