@@ -48,7 +48,8 @@ async function evaluate(file: string, options: Options): Promise<ExitCode> {
     return exitCode.done;
   }
   const verdicts = judgeLimits(bench.preparation.limits, job, evaluation);
-  const view = { evaluation, job, subject, verdicts, assumed: bench.preparation.assumed };
+  const { preparation, scoredModels: models } = bench;
+  const view = { evaluation, job, subject, models, verdicts, assumed: preparation.assumed };
   process.stdout.write(evaluationPage(view, paperOf(process.stdout)));
   return exitCode.done;
 }
@@ -67,10 +68,11 @@ function presentSubject({ compiled, preparation }: Workbench, job: JobDocument):
   }
   const { method, settings } = preparation.reference;
   const bare = job.loops.filter(({ task, present }) => task !== 'manual' && present === undefined);
-  const problem = `there is no present tuning to score; what is scored are the settings of ${method}`;
+  const whose = method === 'none' ? 'those the search starts from' : `the settings of ${method}`;
+  const problem = `there is no present tuning to score; what is scored are ${whose}`;
   return {
     own: settings,
-    subject: `The settings of ${method}, since there is no present tuning`,
+    subject: `Scored, since there is no present tuning, are ${whose}`,
     notices: [{ path: 'loops', value: bare.map(({ tag }) => tag).join(', '), problem }],
   };
 }

@@ -61,7 +61,9 @@ function judgeLoopLimit(
 ): LimitVerdict {
   const { figure, unit, scale, lower } = measures[limit.quantity](job, loop);
   const bound = limit.bound * scale;
-  const value = metrics.loops[loop.tag]?.[figure] ?? null;
+  const figures = metrics.loops[loop.tag];
+  const stated = figures?.[figure] ?? null;
+  const value = limit.quantity === 'gainMargin' ? bothWays(figures) : stated;
   const late = metrics.unit.stable && figure === 'settlingTime' ? never : null;
   const broken =
     value !== null &&
@@ -76,6 +78,13 @@ function judgeLoopLimit(
     nominal: limit.nominal,
     stated: loop.limits[limit.quantity] !== undefined,
   };
+}
+
+/** The factor by which a gain may be raised and lowered: the lesser of the two. */
+function bothWays(figures: LoopMetrics | undefined): number | null {
+  const up = figures?.gainMargin ?? null;
+  const down = figures?.gainReduction ?? null;
+  return down === null ? up : Math.min(up ?? Number.POSITIVE_INFINITY, 1 / down);
 }
 
 interface Measure {

@@ -226,6 +226,7 @@ describe('the page of an evaluation', () => {
   const view = (set: ScoredSettings) => ({
     job,
     subject: "Today's settings",
+    models: 2,
     assumed: ['no outputNoise limit for LC-120: a budget is taken'],
     verdicts: [
       {

@@ -127,10 +127,14 @@ function runFacts({ run, unit, reference, present, estimate }: CheckReport, pape
     run.searchStep === run.step
       ? `${time(run.step)}, in the search too`
       : `${time(run.step)}; the search takes ${time(run.searchStep)}, its speeds within ${percent(run.searchError)} of these`;
+  const scale =
+    reference === 'none'
+      ? 'and none that are stable are known: speed is a plain sum'
+      : `so 1.00 is as fast as ${reference}`;
   const speed = {
     stable: "1.00 is as fast as today's settings",
-    unstable: `today's settings are unstable, so 1.00 is as fast as ${reference}`,
-    incomplete: `not every loop has settings today, so 1.00 is as fast as ${reference}`,
+    unstable: `today's settings are unstable, ${scale}`,
+    incomplete: `not every loop has settings today, ${scale}`,
   }[present];
   const models =
     run.models === 1 ? 'one, taken as exact' : `${run.models} for the search, fresh ones to verify`;

@@ -16,6 +16,8 @@ export interface EvaluationView {
   readonly job: JobDocument;
   /** Whose settings they are. */
   readonly subject: string;
+  /** How many models it was scored on. */
+  readonly models: number;
   readonly verdicts: readonly LimitVerdict[];
   /** What was taken because the document does not state it, limits included. */
   readonly assumed: readonly string[];

@@ -1,4 +1,4 @@
-import type { EvaluationDocument, JobDocument } from '../../contract/index.js';
+import type { EvaluationDocument } from '../../contract/index.js';
 import { type EvaluationView, isExact, marginsTable, responsesTable } from './evaluation-loops.js';
 import { counted, fixed, significant } from './figures.js';
 import { grid } from './grid.js';
@@ -12,7 +12,7 @@ export function evaluationPage(view: EvaluationView, paper: Paper): string {
   const { evaluation, job, subject } = view;
   const { scored } = evaluation;
   const { paint } = paper;
-  const scope = `${subject}, ${conditions(evaluation, job)}`;
+  const scope = `${subject}, ${conditions(view)}`;
   const heading = `${paint.strong(job.unit.name)}\n${wrapped(scope, paper.width).join('\n')}`;
   if (!scored.nominal.unit.stable) {
     return page([heading, unstablePart(view, paper), noticesPart(evaluation, paper)]);
@@ -33,14 +33,11 @@ export function evaluationPage(view: EvaluationView, paper: Paper): string {
   ]);
 }
 
-/** Models a set is scored on: never fewer than there are operating points, the nominal one included. */
-const modelsOf = ({ search, unit }: JobDocument): number =>
-  Math.max(search.models, 1 + unit.operatingPoints.length);
-
-function conditions({ horizon, step, timeUnit }: EvaluationDocument, job: JobDocument): string {
+function conditions({ evaluation, job, models: count }: EvaluationView): string {
+  const { horizon, step, timeUnit } = evaluation;
   const models = isExact(job)
     ? 'the unit taken as exact'
-    : `${counted(modelsOf(job), 'model')} of the unit`;
+    : `${counted(count, 'model')} of the unit`;
   return `over ${significant(horizon)} ${timeUnit} in steps of ${significant(step)} ${timeUnit}, ${models}`;
 }
 
@@ -50,7 +47,8 @@ function unstablePart(view: EvaluationView, paper: Paper): string {
     'There are no margins, responses or objectives to show: what grows has no figures.',
   ];
   const other = view.evaluation.reference;
-  if (other !== 'present') lines.push(`A speed of 1.00 would be that of ${other}.`);
+  if (other !== 'present' && other !== 'none')
+    lines.push(`A speed of 1.00 would be that of ${other}.`);
   return lines.join('\n');
 }
 
@@ -58,6 +56,10 @@ function summary({ evaluation, job }: EvaluationView, paper: Paper): string {
   const { scored, reference } = evaluation;
   const unstable = scored.worst.unit.unstableModels ?? 0;
   const than = reference === 'present' ? 'today' : reference;
+  const scale =
+    reference === 'none'
+      ? 'a plain sum, since no stable settings are known; less is faster'
+      : `where 1.00 is as fast as ${than} and less is faster`;
   const list: [string, string][] = [];
   if (!scored.stable) {
     const words = `unstable on ${counted(unstable, 'model')} of the set, though stable on the nominal unit`;
@@ -67,7 +69,7 @@ function summary({ evaluation, job }: EvaluationView, paper: Paper): string {
     const where = isExact(job) ? 'of a retuned loop' : 'of a retuned loop on any model';
     list.push(['robustness', `${ms}, the largest peak sensitivity Ms ${where}`]);
   }
-  const speed = `${fixed(scored.nominal.unit.speed, 2)}, where 1.00 is as fast as ${than} and less is faster`;
+  const speed = `${fixed(scored.nominal.unit.speed, 2)}, ${scale}`;
   const worst = scored.worst.unit.speed;
   const onWorst = isExact(job) || worst === null ? '' : `; ${fixed(worst, 2)} on the worst model`;
   list.unshift(['speed', `${speed}${onWorst}`]);

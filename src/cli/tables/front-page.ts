@@ -52,8 +52,12 @@ function heading(front: FrontDocument, paper: Paper): string {
 
 function legend(front: FrontDocument, job: JobDocument, paper: Paper): string {
   const reference = front.reference === 'present' ? "today's settings" : front.reference;
+  const scale =
+    reference === 'none'
+      ? 'Speed is a plain sum, since no stable settings were known'
+      : `A speed of 1.00 is as fast as ${reference}`;
   const sentences = [
-    `Speed and Ms: less is better. A speed of 1.00 is as fast as ${reference}, its worst is that of the worst model.`,
+    `Speed and Ms: less is better. ${scale}, its worst is that of the worst model.`,
     ...averagingWords(job),
     `Ms is the largest peak sensitivity of a retuned loop${isExact(job) ? '' : ' on any model'}.`,
     'Gain margins are ratios, phase margins degrees.',
