@@ -11,6 +11,7 @@ import {
   type Paper,
   plainPaper,
 } from '../../src/cli/index.js';
+import { judgeLimits } from '../../src/cli/judged-limits.js';
 import {
   type Alternative,
   type FrontDocument,
@@ -265,6 +266,15 @@ describe('the page of an evaluation', () => {
     );
     expect(page).toMatch(/LC-120 +-0\.50 +1\.50/);
     expect(widest(page)).toBeLessThanOrEqual(80);
+  });
+
+  it('holds a gain margin to the lesser of its two directions', () => {
+    const set = scored(today, 1);
+    set.worst.loops['TC-110'] = { ...metrics, gainMargin: 3.1, gainReduction: 0.5 };
+    const loop = job.loops.findIndex(({ tag }) => tag === 'TC-110');
+    const limit = { loop, quantity: 'gainMargin', bound: 2.5, nominal: false } as const;
+    const [verdict] = judgeLimits([limit], job, view(set).evaluation);
+    expect(verdict).toMatchObject({ reached: '2', holds: false });
   });
 
   it('names the horizon where a step has not settled, and one model as one', () => {
