@@ -44,6 +44,7 @@ export function assumedLimits(
 ): Limit[] {
   const limits: Limit[] = [];
   const budgets: string[] = [];
+  const kept: string[] = [];
   compiled.loops.forEach((loop, i) => {
     const has = (quantity: Limit['quantity']): boolean =>
       stated.some((l) => l.loop === i && l.quantity === quantity);
@@ -54,6 +55,7 @@ export function assumedLimits(
     }
     const before = present?.sensitivity[i] ?? null;
     if (loop.role === 'keep' && before !== null && !has('peakSensitivity')) {
+      kept.push(compiled.job.loops[i]?.tag as string);
       limits.push({
         loop: i,
         quantity: 'peakSensitivity',
@@ -65,6 +67,11 @@ export function assumedLimits(
   if (budgets.length > 0) {
     assumed.push(
       `no outputNoise limit for ${budgets.join(', ')}: the larger of today's noise and 0.5 % of the output's span is taken`,
+    );
+  }
+  if (kept.length > 0) {
+    assumed.push(
+      `no peakSensitivity limit for the kept ${kept.join(', ')}: its peak sensitivity may grow by 5 %`,
     );
   }
   return limits;
