@@ -45,6 +45,12 @@ export interface Preparation {
   readonly assumed: readonly string[];
 }
 
+/** Updates of single responses that trying out search steps may cost at one step; about 3 s. */
+const mostTrialWork = 3e8;
+
+const workOf = (tuning: TuningCase, paths: number): number =>
+  tuning.steps * tuning.upsets.length * paths;
+
 /** Settings that peak higher than this say nothing of where the search will be. */
 const trialPeak = 3;
 
@@ -125,8 +131,9 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     const peaks = survey.loops.map((f) => f?.peakSensitivity ?? 0);
     return isStable(survey) && (t === 0 || Math.max(...peaks) < trialPeak);
   });
+  const affordable = Math.max(2, Math.floor(mostTrialWork / workOf(final, compiled.paths.length)));
   const search = isKnown
-    ? chooseSearchStep(compiled, final, nominal, sane)
+    ? chooseSearchStep(compiled, final, nominal, sane.slice(0, affordable))
     : { stride: 1, speed, error: 0 };
   return {
     steps,
