@@ -53,6 +53,7 @@ function describeJob(jobFile: JobFile, bench: Workbench, threads: number): Check
       step: inJobUnit(tuning.scan / tuning.stepsPerScan),
       searchStep: inJobUnit(steps.searching),
       searchError: preparation.searchError,
+      exact: bench.isExact,
       horizon: inJobUnit((tuning.steps * tuning.scan) / tuning.stepsPerScan),
       models: bench.variants.length,
       limits: preparation.limits.length,

@@ -53,7 +53,7 @@ function build(finish: (code: ExitCode) => void, usage: string[]): Command {
 
 const helpClosing = `
 Ends with 0 when done, 1 when it failed, 2 for a bad document or a command not
-given rightly, 3 when no tuning meets the limits.`;
+given rightly, 3 when no tuning meets the limits, 130 or 143 when interrupted.`;
 
 /** Whether what went wrong is wanted as JSON, known even where the options could not be read. */
 function isJson(parameters: readonly string[]): boolean {

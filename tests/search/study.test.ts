@@ -186,6 +186,39 @@ describe('a study', () => {
     expect(infeasible?.words.join(' ')).toContain('TC-1');
   });
 
+  it.each([
+    ['solves a proposal again that fresh models refute, until it holds', 1.35, true],
+    ['drops a proposal that no settings in reach can mend', 1.02, false],
+  ])('%s', (_, peakSensitivity, holds) => {
+    const document = pair((job) => {
+      for (const loop of job.loops) loop.present = { gain: 2.2, integral: 8 };
+      for (const loop of job.loops) loop.limits = { peakSensitivity };
+      for (const loop of job.loops) loop.maxChange = holds ? 10 : 1.5;
+    });
+    const context = contextOf(document);
+    const runner = new TaskRunner();
+    const prepared = runner.run(context, { kind: 'prepare' });
+    if (prepared.kind !== 'prepare') throw new TypeError('not prepared');
+    // Today's lively settings, as if a search had taken them for good.
+    const result = runner.run(context, {
+      kind: 'verify',
+      preparation: prepared.preparation,
+      index: 0,
+      x: new Array(prepared.dimension).fill(0.5),
+      level: 2,
+      joined: [],
+    });
+    if (result.kind !== 'verify') throw new TypeError('not verified');
+    const { accepted, failures, mended, models, scored } = result.verified;
+    expect(mended).toBeGreaterThan(0);
+    expect(models).toBe(59);
+    expect(accepted).toBe(holds);
+    if (holds) {
+      expect(failures).toBeLessThanOrEqual(2);
+      expect(scored.settings['TC-1']?.gain).toBeLessThan(2.2);
+    } else expect(failures).toBeGreaterThan(2);
+  });
+
   it('refuses a disturbance that integrates into a PV no actuator can hold', async () => {
     const document = pair((job) => {
       job.unit.disturbances = [{ tag: 'LEAK', unit: 't/h', step: 1 }];

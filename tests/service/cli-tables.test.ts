@@ -319,6 +319,7 @@ describe('the page of a check', () => {
       step: 0.05,
       searchStep: 0.2,
       searchError: 0.012,
+      exact: false,
       horizon: 90,
       models: 8,
       limits: 4,

@@ -38,6 +38,8 @@ export interface CheckReport {
     readonly scan: number;
     readonly step: number;
     readonly searchStep: number;
+    /** The models are taken as they are; nothing is drawn about them. */
+    readonly exact: boolean;
     /** Largest error of speed at that step, seen on settings from slack to brisk; a share. */
     readonly searchError: number;
     readonly horizon: number;
@@ -136,8 +138,9 @@ function runFacts({ run, unit, reference, present, estimate }: CheckReport, pape
     unstable: `today's settings are unstable, ${scale}`,
     incomplete: `not every loop has settings today, ${scale}`,
   }[present];
-  const models =
-    run.models === 1 ? 'one, taken as exact' : `${run.models} for the search, fresh ones to verify`;
+  const models = !run.exact
+    ? `${run.models} for the search, fresh ones to verify`
+    : `${run.models === 1 ? 'one' : run.models}, taken as exact`;
   return facts(
     [
       [
