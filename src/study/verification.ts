@@ -99,6 +99,10 @@ function examine(
   return { scores, breaking };
 }
 
+/** True when so few of a round's models fell outside that the alternative may stand. */
+export const isEnough = (failures: number, models: number): boolean =>
+  failures <= Math.floor((1 - neededShare) * models);
+
 /** Trial models, by number, that a proposed set breaks a limit on: the first few. */
 export function tryOut(bench: Workbench, x: Float64Array): number[] {
   const own = dialledSettings(bench.compiled.space, x);
@@ -132,10 +136,7 @@ function judge(
   const scored = scoredSettings(bench, own, nominal, all, true);
   const { upsets: _, ...withoutUpsets } = scored.nominal;
   return {
-    accepted:
-      all.every((m) => m.stable) &&
-      searchSetHolds &&
-      failures <= Math.floor((1 - neededShare) * models),
+    accepted: all.every((m) => m.stable) && searchSetHolds && isEnough(failures, models),
     scored: { ...scored, nominal: withoutUpsets },
     models,
     failures,

@@ -15,6 +15,7 @@ import {
   type TaskResult,
   TaskRunner,
 } from '../../src/study/index.js';
+import { isEnough } from '../../src/study/verification.js';
 import { singleLoop } from '../service/single-loop.js';
 
 /** Two temperatures that each answer both valves, quick to solve; `change` makes the case at hand. */
@@ -217,6 +218,15 @@ describe('a study', () => {
       expect(failures).toBeLessThanOrEqual(2);
       expect(scored.settings['TC-1']?.gain).toBeLessThan(2.2);
     } else expect(failures).toBeGreaterThan(2);
+  });
+
+  it('lets two of 59 fresh models fall outside a limit, and not three', () => {
+    expect([0, 1, 2, 3].map((failures) => isEnough(failures, 59))).toEqual([
+      true,
+      true,
+      true,
+      false,
+    ]);
   });
 
   it('refuses a disturbance that integrates into a PV no actuator can hold', async () => {
