@@ -26,12 +26,13 @@ const mayImport = {
   records: ['contract'],
   queue: ['contract'],
   compute: ['contract', 'study'],
-  api: ['contract', 'study', 'compute', 'records', 'queue'],
-  cli: ['contract', 'study', 'compute', 'records', 'queue'],
-  demo: ['contract', 'study', 'compute', 'records', 'queue', 'cli'],
+  service: ['contract', 'study', 'compute', 'records', 'queue'],
+  api: ['contract', 'service'],
+  cli: ['contract', 'study', 'compute', 'service', 'api'],
+  demo: ['contract', 'cli'],
   web: ['contract'],
   bootstrap: [],
-  workers: ['contract', 'study', 'compute', 'records', 'queue'],
+  workers: ['contract', 'study', 'compute'],
 };
 
 /** Folders that only calculate: no input, no output, no clock. */

@@ -50,6 +50,44 @@ export {
 } from './scored.js';
 export type { Objective, SearchDocument, UpsetKind } from './search.js';
 export {
+  type Act,
+  actSchema,
+  type Cancellation,
+  type ChangeList,
+  type ChangeRecord,
+  type ChangeState,
+  cancellationSchema,
+  changeIdSchema,
+  changeListSchema,
+  changeSchema,
+  type Proposal,
+  proposalSchema,
+} from './service/changes.js';
+export { type CheckReport, checkReportSchema } from './service/check-report.js';
+export {
+  type AcceptedJob,
+  acceptedJobSchema,
+  hasEnded,
+  type JobList,
+  type JobProgress,
+  type JobQuery,
+  type JobRecord,
+  type JobState,
+  jobIdSchema,
+  jobListSchema,
+  jobQuerySchema,
+  jobRecordSchema,
+  jobStateSchema,
+} from './service/job-record.js';
+export {
+  type ProblemCode,
+  type ProblemDocument,
+  problemCodes,
+  problemSchema,
+  problemType,
+} from './service/problems.js';
+export { type SheetDocument, sheetFormat, sheetSchema } from './service/sheet.js';
+export {
   type InternalSettingsDocument,
   type LoopSettingsDocument,
   type SettingsDocument,

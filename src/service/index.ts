@@ -1,0 +1,2 @@
+export { ServiceProblem } from './problem.js';
+export type { Readiness, Service } from './service.js';

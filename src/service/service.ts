@@ -1,0 +1,66 @@
+import type {
+  AcceptedJob,
+  Act,
+  Cancellation,
+  ChangeList,
+  ChangeRecord,
+  CheckReport,
+  JobList,
+  JobQuery,
+  JobRecord,
+  Proposal,
+  SheetDocument,
+} from '../contract/index.js';
+
+/** Whether the parts a server needs can be reached; `problem` says what is wrong where one cannot. */
+export interface Readiness {
+  readonly ready: boolean;
+  readonly parts: readonly { readonly name: string; readonly problem: string | null }[];
+}
+
+/**
+ * What Heddle does for whoever asks, whatever its size: the skins (HTTP, pages, commands) call this
+ * and nothing below it.
+ *
+ * Every method rejects with a `ServiceProblem` for what a caller can act on. Documents come and go as
+ * bytes: what was handed in is kept as it is, and a front is the same bytes for everybody.
+ */
+export interface Service {
+  /** What a job document says, and what would be run. @throws DOCUMENT_REFUSED, CALCULATION_REFUSED, BUSY */
+  check(document: Uint8Array, signal: AbortSignal): Promise<CheckReport>;
+  /** The present settings of a document, scored: the bytes of an evaluation document. */
+  evaluate(document: Uint8Array, signal: AbortSignal): Promise<Uint8Array>;
+  /** Other settings for an accepted job, scored in the same way. */
+  evaluateSettings(job: string, settings: Uint8Array, signal: AbortSignal): Promise<Uint8Array>;
+
+  /**
+   * Accepts a job: recorded before it is answered, queued after.
+   * @param key  the caller's idempotency key: the same key and document give the first job again
+   * @returns `isNew` false where the key had been seen
+   */
+  submit(document: Uint8Array, key?: string): Promise<AcceptedJob & { readonly isNew: boolean }>;
+  jobs(query: JobQuery): Promise<JobList>;
+  job(id: string): Promise<JobRecord>;
+  /** The document as it was handed in. */
+  document(id: string): Promise<Uint8Array>;
+  /** The job now, and whenever it has changed, until it has ended or the signal is aborted. */
+  watch(id: string, signal: AbortSignal): AsyncIterable<JobRecord>;
+  cancel(id: string, cancellation: Cancellation): Promise<JobRecord>;
+  /** The bytes of the front document. @throws FRONT_NOT_READY, FRONT_ABSENT */
+  front(id: string): Promise<Uint8Array>;
+  /**
+   * The bytes of one scored setting's own document, with its responses.
+   * @param alternative  an id of the front, or `present` for today's settings
+   */
+  alternative(id: string, alternative: string): Promise<Uint8Array>;
+
+  propose(job: string, proposal: Proposal): Promise<ChangeRecord>;
+  approve(change: string, act: Act): Promise<ChangeRecord>;
+  reject(change: string, act: Act): Promise<ChangeRecord>;
+  change(id: string): Promise<ChangeRecord>;
+  /** Changes, the latest first; of one job, or of all. */
+  changes(job?: string): Promise<ChangeList>;
+  sheet(change: string): Promise<SheetDocument>;
+
+  readiness(): Promise<Readiness>;
+}
