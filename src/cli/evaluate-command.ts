@@ -1,11 +1,11 @@
 import { Command } from 'commander';
+import { type JobDocument, readSettings } from '../contract/index.js';
 import {
-  type JobDocument,
-  type LoopSettingsDocument,
-  readSettings,
-  type Warning,
-} from '../contract/index.js';
-import { evaluateSettings, type Workbench } from '../study/index.js';
+  type EvaluationSubject,
+  evaluateSettings,
+  presentSubject,
+  settingsSubject,
+} from '../study/index.js';
 import { openWorkbench, readJobFile } from './job-file.js';
 import { judgeLimits } from './judged-limits.js';
 import { jsonOption, option, wantsJson } from './options.js';
@@ -54,36 +54,9 @@ async function evaluate(file: string, options: Options): Promise<ExitCode> {
   return exitCode.done;
 }
 
-/** Settings to score, by loop in the job's order, whose they are, and what to know of them. */
-interface Subject {
-  readonly own: readonly (LoopSettingsDocument | null)[];
-  readonly subject: string;
-  readonly notices: readonly Warning[];
-}
-
-/** Today's settings; where a closed loop has none, the reference that a speed of 1 means instead. */
-function presentSubject({ compiled, preparation }: Workbench, job: JobDocument): Subject {
-  if (compiled.hasPresent) {
-    return { own: compiled.space.base, subject: "Today's settings", notices: [] };
-  }
-  const { method, settings } = preparation.reference;
-  const bare = job.loops.filter(({ task, present }) => task !== 'manual' && present === undefined);
-  const whose = method === 'none' ? 'those the search starts from' : `the settings of ${method}`;
-  const problem = `there is no present tuning to score; what is scored are ${whose}`;
-  return {
-    own: settings,
-    subject: `Scored, since there is no present tuning, are ${whose}`,
-    notices: [{ path: 'loops', value: bare.map(({ tag }) => tag).join(', '), problem }],
-  };
-}
-
-async function readOther(file: string, job: JobDocument): Promise<Subject> {
+async function readOther(file: string, job: JobDocument): Promise<EvaluationSubject> {
   const { name, bytes } = await readDocument(file);
   const read = readSettings(bytes, job);
   if (!read.ok) throw refuseDocument(name, read);
-  return {
-    own: job.loops.map(({ tag }) => read.settings[tag] ?? null),
-    subject: `The settings of ${name}`,
-    notices: read.warnings.map((warning) => ({ ...warning, path: `${name}: ${warning.path}` })),
-  };
+  return settingsSubject(read, job, name);
 }

@@ -1,5 +1,5 @@
 export { runCommandLine } from './command-line.js';
-export { type CheckReport, checkPage } from './tables/check-page.js';
+export { checkPage } from './tables/check-page.js';
 export type { EvaluationView } from './tables/evaluation-loops.js';
 export { evaluationPage } from './tables/evaluation-page.js';
 export { type Cost, costLine, frontPage } from './tables/front-page.js';

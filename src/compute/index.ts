@@ -1,3 +1,4 @@
 export { computeVersion } from './compute-version.js';
+export { estimateSeconds } from './estimate.js';
 export { type ThreadAnswer, ThreadFailure, type ThreadFailureCode } from './thread-answer.js';
 export { createThreadPool, type ThreadPool, type ThreadPoolOptions } from './thread-pool.js';

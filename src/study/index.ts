@@ -1,7 +1,9 @@
 export { canonicalText, hashOf } from './canonical.js';
-export { countSignChanges, describeUnit, type PlannedWork, planWork, trialRuns } from './check.js';
+export { type PlannedWork, planWork, trialRuns } from './check.js';
+export { describeJob } from './check-report.js';
 export { type CompiledJob, compileJob } from './compiled-job.js';
 export { evaluateSettings, type Provenance } from './evaluation.js';
+export { type EvaluationSubject, presentSubject, settingsSubject } from './evaluation-subject.js';
 export { type Preparation, prepareJob } from './preparation.js';
 export { runStudy, type StudyProgress } from './study.js';
 export type { StudyOutcome } from './study-outcome.js';

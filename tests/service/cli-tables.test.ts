@@ -1,7 +1,6 @@
 import { stripVTControlCharacters } from 'node:util';
 import { describe, expect, it } from 'vitest';
 import {
-  type CheckReport,
   checkPage,
   colouredPaint,
   costLine,
@@ -14,6 +13,7 @@ import {
 import { judgeLimits } from '../../src/cli/judged-limits.js';
 import {
   type Alternative,
+  type CheckReport,
   type FrontDocument,
   frontSchema,
   type JobDocument,

@@ -1,65 +1,8 @@
-import type { UnitMetrics, Warning } from '../../contract/index.js';
+import type { CheckReport } from '../../contract/index.js';
 import { counted, duration, significant } from './figures.js';
 import { interactionTable } from './interaction-table.js';
 import type { Paper } from './paper.js';
 import { facts, page, remarks, section } from './prose.js';
-
-/** What is known of a job before anything is searched. */
-export interface CheckReport {
-  /** SHA-256 of the document. */
-  readonly job: string;
-  readonly compute: string;
-  readonly unit: {
-    readonly name: string;
-    readonly timeUnit: string;
-    readonly measurements: number;
-    readonly actuators: number;
-    readonly disturbances: number;
-    readonly responses: number;
-    readonly operatingPoints: number;
-  };
-  readonly loops: {
-    readonly retune: number;
-    readonly keep: number;
-    readonly manual: number;
-    readonly averaging: number;
-    readonly driven: number;
-  };
-  readonly upsets: {
-    readonly setpoint: number;
-    readonly load: number;
-    readonly disturbance: number;
-  };
-  readonly interaction: Pick<UnitMetrics, 'rga' | 'rgaLoops' | 'niederlinski'>;
-  /** Models of the search set, and how many turn the sign of the steady-state determinant around. */
-  readonly determinant: { readonly models: number; readonly signChanges: number };
-  readonly run: {
-    /** Time unit of the job, like every time here. */
-    readonly scan: number;
-    readonly step: number;
-    readonly searchStep: number;
-    /** The models are taken as they are; nothing is drawn about them. */
-    readonly exact: boolean;
-    /** Largest error of speed at that step, seen on settings from slack to brisk; a share. */
-    readonly searchError: number;
-    readonly horizon: number;
-    readonly models: number;
-    readonly limits: number;
-    /** Numbers that are searched. */
-    readonly settings: number;
-    readonly alternatives: number;
-    readonly effort: string;
-    readonly seed: number;
-  };
-  /** What a speed of 1 means. */
-  readonly reference: string;
-  /** Today's settings on the nominal unit; incomplete where a closed loop has none. */
-  readonly present: 'stable' | 'unstable' | 'incomplete';
-  readonly assumed: readonly string[];
-  readonly warnings: readonly Warning[];
-  /** A rough guess. */
-  readonly estimate: { readonly seconds: number; readonly threads: number };
-}
 
 /** A check as people read it. */
 export function checkPage(report: CheckReport, paper: Paper): string {
