@@ -3,13 +3,13 @@ import {
   type JobDocument,
   type LoopDocument,
   type LoopMetrics,
+  loopUnits,
   type Metrics,
   secondsPer,
 } from '../contract/index.js';
 import type { Preparation } from '../study/index.js';
 import { significant } from './tables/figures.js';
 import type { LimitVerdict } from './tables/limit-verdicts.js';
-import { loopUnits } from './tables/setting-units.js';
 
 type Limit = Preparation['limits'][number];
 type LoopLimit = Extract<Limit, { loop: number }>;

@@ -86,7 +86,21 @@ export {
   problemSchema,
   problemType,
 } from './service/problems.js';
-export { type SheetDocument, sheetFormat, sheetSchema } from './service/sheet.js';
+export {
+  type Expectation,
+  type SheetDocument,
+  type SheetLoop,
+  type SheetSetting,
+  sheetFormat,
+  sheetSchema,
+} from './service/sheet.js';
+export {
+  controllerInWords,
+  loopUnits,
+  type SettingName,
+  settingNames,
+  settingUnits,
+} from './setting-units.js';
 export {
   type InternalSettingsDocument,
   type LoopSettingsDocument,

@@ -1,9 +1,15 @@
 import { stripVTControlCharacters } from 'node:util';
-import type { JobDocument, LoopDocument, SettingsDocument } from '../../contract/index.js';
+import {
+  type JobDocument,
+  type LoopDocument,
+  type SettingName,
+  type SettingsDocument,
+  settingNames,
+  settingUnits,
+} from '../../contract/index.js';
 import { figure, fixed, significant } from './figures.js';
 import { grid } from './grid.js';
 import type { Paper } from './paper.js';
-import { type SettingName, settingNames, settingUnits } from './setting-units.js';
 
 /** A tuning set by the name it is shown under. */
 export interface NamedSettings {

@@ -1,15 +1,15 @@
-import type {
-  EvaluationDocument,
-  JobDocument,
-  LoopDocument,
-  LoopMetrics,
-  Metrics,
+import {
+  type EvaluationDocument,
+  type JobDocument,
+  type LoopDocument,
+  type LoopMetrics,
+  loopUnits,
+  type Metrics,
 } from '../../contract/index.js';
 import { figure, fixed, margin, noFigure, significant, withUnit } from './figures.js';
 import { grid } from './grid.js';
 import type { LimitVerdict } from './limit-verdicts.js';
 import type { Paper } from './paper.js';
-import { loopUnits } from './setting-units.js';
 
 export interface EvaluationView {
   readonly evaluation: EvaluationDocument;

@@ -1,8 +1,9 @@
-import type { JobDocument, LoopDocument } from '../../contract/index.js';
+import type { JobDocument } from './job.js';
+import type { ControllerDocument, LoopDocument } from './loops.js';
 
-export type SettingName = 'gain' | 'integral' | 'derivative' | 'filter';
+export const settingNames = ['gain', 'integral', 'derivative', 'filter'] as const;
 
-export const settingNames: readonly SettingName[] = ['gain', 'integral', 'derivative', 'filter'];
+export type SettingName = (typeof settingNames)[number];
 
 /** The units in which one loop's settings are dialled. */
 export type SettingUnits = Readonly<Record<SettingName, string>>;
@@ -37,4 +38,26 @@ export function settingUnits(job: JobDocument, loop: LoopDocument): SettingUnits
     derivative: derivative[controller.derivativeIn],
     filter: time,
   };
+}
+
+const gainWords = {
+  percent: 'gain in percent of output per percent of PV',
+  engineering: 'gain in output units per PV unit',
+  'proportional-band': 'gain as proportional band',
+} as const;
+const integralWords = {
+  time: 'integral as time per repeat',
+  repeats: 'integral as repeats per time',
+  gain: 'integral as gain',
+} as const;
+const derivativeWords = { time: 'derivative as time', gain: 'derivative as gain' } as const;
+
+/** How a controller writes its settings, in words: what its numbers mean on a faceplate. */
+export function controllerInWords(controller: ControllerDocument): string {
+  const { form, terms, gainIn, integralIn, derivativeIn, scan, scanUnit } = controller;
+  const parts = [`${terms}, ${form} form`, gainWords[gainIn]];
+  if (terms.includes('I')) parts.push(integralWords[integralIn]);
+  if (terms.includes('D')) parts.push(derivativeWords[derivativeIn]);
+  parts.push(`scan of ${scan} ${scanUnit}`);
+  return parts.join(', ');
 }
