@@ -8,7 +8,14 @@ export const alternativeFormat = 'heddle-alternative/1';
 const count = z.number().int().min(0);
 
 /** The name of an alternative in its front: A01, A02, ... */
-const alternativeIdSchema = z.string().regex(/^A\d{2,3}$/);
+export const alternativeIdSchema = z
+  .string()
+  .regex(/^A\d{2,3}$/, 'A and two or three digits, such as A07');
+
+/** What has a document of its own in a job that is done: an alternative, or today's settings. */
+export const scoredNameSchema = z
+  .string()
+  .regex(/^(A\d{2,3}|present)$/, 'A and two or three digits, such as A07; or present');
 
 /** A published rule's settings, or today's, with where the rule stands. */
 export const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });

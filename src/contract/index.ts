@@ -1,4 +1,4 @@
-export { documentSizeFault, mostDocumentBytes } from './document-text.js';
+export { documentSizeFault, mostDocumentBytes, readDocumentText } from './document-text.js';
 export { type EvaluationDocument, evaluationFormat, evaluationSchema } from './evaluation.js';
 export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } from './faults.js';
 export {
@@ -6,12 +6,14 @@ export {
   type AlternativeDetail,
   alternativeDetailSchema,
   alternativeFormat,
+  alternativeIdSchema,
   type Baseline,
   type BindingLimit,
   type FrontDocument,
   frontFormat,
   frontSchema,
   type Infeasibility,
+  scoredNameSchema,
   type Verification,
 } from './front.js';
 export type { ActuatorDocument, DisturbanceDocument, MeasurementDocument } from './instruments.js';
@@ -34,6 +36,7 @@ export type {
 } from './loops.js';
 export type { LoopMetrics, Metrics, UnitMetrics, UpsetMetrics, UpsetScore } from './metrics.js';
 export { type JobRead, type Refused, readJob } from './read-job.js';
+export { type MessageRead, readMessage } from './read-message.js';
 export { readSettings, type SettingsRead } from './read-settings.js';
 export type {
   ResponseDocument,
@@ -86,6 +89,7 @@ export {
   problemSchema,
   problemType,
 } from './service/problems.js';
+export { livenessSchema, readinessSchema } from './service/readiness.js';
 export {
   type Expectation,
   type SheetDocument,

@@ -1,10 +1,13 @@
 import { z } from 'zod';
+import { alternativeIdSchema } from '../front.js';
 import { keyed, text } from '../scalars.js';
 import { hashSchema } from '../scored.js';
 import { jobIdSchema } from './job-record.js';
 
 /** The name of a proposed change in the record. */
-export const changeIdSchema = z.string().regex(/^C[0-9a-z]{12}$/);
+export const changeIdSchema = z
+  .string()
+  .regex(/^C[0-9a-z]{12}$/, 'C and twelve digits or small letters');
 
 export const changeStateSchema = z.enum(['proposed', 'approved', 'rejected']);
 
@@ -16,7 +19,7 @@ export const actSchema = keyed({ person: personSchema, reason: reasonSchema });
 
 /** Proposes one alternative of a job's front. */
 export const proposalSchema = keyed({
-  alternative: z.string(),
+  alternative: alternativeIdSchema,
   person: personSchema,
   reason: reasonSchema,
 });
@@ -39,7 +42,7 @@ export const changeSchema = keyed({
   id: changeIdSchema,
   job: jobIdSchema,
   unitName: z.string(),
-  alternative: z.string(),
+  alternative: alternativeIdSchema,
   state: changeStateSchema,
   jobHash: hashSchema,
   frontHash: hashSchema,

@@ -3,7 +3,9 @@ import { keyed } from '../scalars.js';
 import { hashSchema } from '../scored.js';
 
 /** The name of a job in the record. */
-export const jobIdSchema = z.string().regex(/^J[0-9a-z]{12}$/);
+export const jobIdSchema = z
+  .string()
+  .regex(/^J[0-9a-z]{12}$/, 'J and twelve digits or small letters');
 
 /**
  * `accepted` jobs are recorded and wait, `running` ones have begun; `done` has a front or says why no
