@@ -45,9 +45,9 @@ export function runChild({ program, parameters, folder, environment = {}, captur
       reject(error);
     });
     child.on('close', (code, signal) => {
-      release();
+      const stopped = release() ?? signal;
       const output = Buffer.concat(chunks).toString('utf8');
-      resolve({ code: code ?? 128 + (signal ? constants.signals[signal] : 0), output });
+      resolve({ code: code || (stopped ? 128 + constants.signals[stopped] : 0), output });
     });
   });
 }
@@ -56,18 +56,20 @@ export function runChild({ program, parameters, folder, environment = {}, captur
  * Passes this process's signals on to the child's whole group until released.
  *
  * @param {import('node:child_process').ChildProcess} child
- * @returns {() => void} stops passing them on
+ * @returns {() => NodeJS.Signals | undefined} stops passing them on; the signal that could not be
  */
 function passSignals(child) {
   /** @type {Set<NodeJS.Signals>} */
   const seen = new Set();
   /** @type {NodeJS.Timeout | undefined} */
   let grace;
+  /** @type {NodeJS.Signals | undefined} */
+  let held;
   /** @param {NodeJS.Signals} signal */
   const pass = (signal) => {
     if (seen.has(signal)) return;
     seen.add(signal);
-    signalGroup(child, signal);
+    if (!signalGroup(child, signal)) held ??= signal;
     if (seen.size === 1) grace = setTimeout(() => signalGroup(child, 'SIGKILL'), graceMs);
   };
   for (const signal of passedOn) process.on(signal, pass);
@@ -79,19 +81,25 @@ function passSignals(child) {
     clearTimeout(grace);
     clearInterval(watch);
     for (const signal of passedOn) process.off(signal, pass);
+    return held;
   };
 }
 
 /**
  * @param {import('node:child_process').ChildProcess} child
  * @param {NodeJS.Signals} signal
+ * @returns {boolean} whether the group got it, or has ended
  */
 function signalGroup(child, signal) {
-  if (child.pid === undefined) return;
+  if (child.pid === undefined) return true;
   try {
     process.kill(isWindows ? child.pid : -child.pid, signal);
   } catch (error) {
+    const { code } = /** @type {NodeJS.ErrnoException} */ (error);
+    // A group that runs with more rights than ours, an installation say, ends in its own time.
+    if (code === 'EPERM') return false;
     // The group ended between the signal's arrival and its passing on: nothing is left to stop.
-    if (/** @type {NodeJS.ErrnoException} */ (error).code !== 'ESRCH') throw error;
+    if (code !== 'ESRCH') throw error;
   }
+  return true;
 }

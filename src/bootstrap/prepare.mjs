@@ -1,10 +1,9 @@
 /**
  * The first step of `npm run demo`, `npm test` and their kin in a checkout where nothing may be
- * installed yet: it uses Node alone. It installs packages when they are absent or outdated, builds
- * when the sources changed, runs the checks of the command, and hands over to the command itself.
- *
- * One line a step, on standard error, for standard output belongs to the command; a step that fails
- * shows its whole output, and its exit code becomes ours.
+ * installed yet: it uses Node alone. It installs the programs that the tests run where the system
+ * lets it, installs packages when they are absent or outdated, builds when the sources changed, runs
+ * the checks of the command, and hands over to the command itself. The exit code of a step that
+ * fails becomes ours.
  */
 import {
   chmodSync,
@@ -29,6 +28,9 @@ import {
   needsBuild,
   needsInstall,
 } from './freshness.mjs';
+import { MisplacedProgram, missingPrograms } from './programs.mjs';
+import { StepFailure, say, takeStep } from './steps.mjs';
+import { adviseInstall, planInstall } from './system-packages.mjs';
 
 const root = fileURLToPath(new URL('../..', import.meta.url));
 
@@ -44,6 +46,7 @@ const vitest = join('node_modules', 'vitest', 'vitest.mjs');
 
 /**
  * @typedef {object} Command
+ * @property {boolean} [servers]  needs the programs that the tests run beside ours
  * @property {boolean} [build]  needs the built program
  * @property {boolean} [check]  starts with the checks
  * @property {readonly string[]} [node]  what Node then runs
@@ -56,10 +59,11 @@ const commands = new Map([
   ['lint', { check: true }],
   ['start', { build: true, node: [join('dist', 'src', 'cli', 'main.js')] }],
   ['demo', { build: true, node: [join('dist', 'src', 'demo', 'main.js')] }],
-  ['test', { build: true, check: true, node: [vitest, 'run'] }],
+  ['test', { servers: true, build: true, check: true, node: [vitest, 'run'] }],
   [
     'test:long',
     {
+      servers: true,
       build: true,
       node: [
         vitest,
@@ -73,42 +77,6 @@ const commands = new Map([
   ],
 ]);
 
-/** A step that failed; its output is already shown. */
-class StepFailure extends Error {
-  /** @param {number} code */
-  constructor(code) {
-    super(`exit code ${code}`);
-    this.code = code;
-  }
-}
-
-/** @param {string} text */
-function say(text) {
-  process.stderr.write(`heddle: ${text}\n`);
-}
-
-/**
- * Runs one step with its output held back, and says how long it took.
- *
- * @param {string} activity
- * @param {() => Promise<{ code: number, output: string }>} run
- */
-async function takeStep(activity, run) {
-  process.stderr.write(`heddle: ${activity} ... `);
-  const start = process.hrtime();
-  const { code, output } = await run();
-  const [whole, nano] = process.hrtime(start);
-  const seconds = (whole + nano / 1e9).toFixed(1);
-  if (code === 0) {
-    process.stderr.write(`${seconds} s\n`);
-    return;
-  }
-  process.stderr.write(`${code > 128 ? 'stopped' : 'failed'} after ${seconds} s\n`);
-  process.stderr.write(output === '' || output.endsWith('\n') ? output : `${output}\n`);
-  say(`${activity} ended with exit code ${code}`);
-  throw new StepFailure(code);
-}
-
 /**
  * @param {...string} parameters
  */
@@ -121,6 +89,30 @@ function runNpm(...parameters) {
     folder: root,
     captured: true,
   });
+}
+
+/** Installs what the tests need beside our packages, or says what to install. */
+async function installPrograms() {
+  const missing = missingPrograms();
+  if (missing.length === 0) return;
+  const plan = planInstall(missing);
+  if ('obstacle' in plan) {
+    say(adviseInstall(missing, plan.obstacle));
+    throw new StepFailure(1);
+  }
+  try {
+    await takeStep(`installing ${missing.map(({ name }) => name).join(', ')}`, () =>
+      runChild({ ...plan, folder: root, captured: true }),
+    );
+  } catch (error) {
+    const isStopped = error instanceof StepFailure && error.code > 128;
+    if (!isStopped) say(adviseInstall(missing, 'the package manager failed, as shown above'));
+    throw error;
+  }
+  const absent = missingPrograms();
+  if (absent.length === 0) return;
+  say(adviseInstall(absent, 'their packages are installed and do not hold them'));
+  throw new StepFailure(1);
 }
 
 async function install() {
@@ -144,7 +136,9 @@ async function build() {
 
 /** Puts what the compiler leaves behind beside its output, and lets the command be executed. */
 function copyAssets() {
-  const assets = ['src', 'workers'].flatMap((folder) => listFiles(root, folder));
+  const assets = ['src', 'workers']
+    .flatMap((folder) => listFiles(root, folder))
+    .filter((path) => !path.startsWith('src/bootstrap/'));
   for (const path of assets.filter((name) => !/\.[cm]?[jt]sx?$/.test(name))) {
     const target = join(root, 'dist', path);
     mkdirSync(dirname(target), { recursive: true });
@@ -177,6 +171,7 @@ async function perform(name, rest) {
     say(`no command '${name}'; there are ${[...commands.keys()].join(', ')}`);
     return 2;
   }
+  if (command.servers) await installPrograms();
   await install();
   if (command.build) await build();
   if (command.check) {
@@ -198,6 +193,7 @@ try {
   const [name = '', ...rest] = process.argv.slice(2);
   process.exitCode = await perform(name, rest);
 } catch (error) {
-  if (!(error instanceof StepFailure)) throw error;
-  process.exitCode = error.code;
+  if (error instanceof MisplacedProgram) say(error.message);
+  else if (!(error instanceof StepFailure)) throw error;
+  process.exitCode = error instanceof StepFailure ? error.code : 1;
 }

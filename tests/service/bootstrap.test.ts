@@ -11,7 +11,8 @@ import {
   needsBuild,
   needsInstall,
 } from '../../src/bootstrap/freshness.mjs';
-import { type Ending, run } from './program.js';
+import { layBareCheckout, linesOf, prepareIn } from './bare-checkout.js';
+import type { Ending, run } from './program.js';
 import { Scratch } from './scratch.js';
 
 let scratch: Scratch;
@@ -95,27 +96,6 @@ describe('the build', () => {
   });
 });
 
-/**
- * Stands in for npm: installs an empty folder, compiles a demonstration that tells its parameters,
- * and fails on request.
- */
-const standIn = `
-  const { mkdirSync, writeFileSync } = require('node:fs');
-  const task = process.argv[2] === 'ci' ? 'ci' : process.argv[4];
-  if (process.env.FAIL_AT === task) {
-    console.error('the whole story of ' + task);
-    process.exit(9);
-  }
-  if (task === 'ci') {
-    mkdirSync('node_modules', { recursive: true });
-    writeFileSync('node_modules/.package-lock.json', '{}');
-  }
-  if (task === 'compile') {
-    mkdirSync('dist/src/demo', { recursive: true });
-    writeFileSync('dist/src/demo/main.js', require('node:fs').readFileSync('demo.cjs'));
-  }
-`;
-
 const echo = "console.log('demo', ...process.argv.slice(2)); process.exit(5);";
 
 /** Waits for a signal with a child of its own that holds the same output. */
@@ -129,36 +109,12 @@ const waiting = `
 `;
 
 describe('preparing a checkout', () => {
-  beforeEach(() => {
-    scratch.borrow('src/bootstrap');
-    scratch.write({
-      'npm-cli.js': standIn,
-      'package.json':
-        '{ "engines": { "node": ">=20.19" }, "bin": { "x": "dist/src/cli/main.js" } }',
-      'src/demo/unit.json': '{}',
-      'demo.cjs': echo,
-    });
-  });
+  beforeEach(() => layBareCheckout(scratch, { 'demo.cjs': echo }));
 
   const prepare = (
     parameters: readonly string[],
     options: Partial<Parameters<typeof run>[2]> = {},
-  ): Promise<Ending> =>
-    run(process.execPath, [join(scratch.folder, 'src/bootstrap/prepare.mjs'), ...parameters], {
-      folder: scratch.folder,
-      ...options,
-      environment: {
-        npm_execpath: join(scratch.folder, 'npm-cli.js'),
-        ...options.environment,
-      },
-    });
-
-  /** What was said, times left out. */
-  const linesOf = ({ output }: Ending): readonly string[] =>
-    output
-      .trimEnd()
-      .replaceAll(/\d+\.\d s$/gm, 'T')
-      .split('\n');
+  ): Promise<Ending> => prepareIn(scratch, parameters, options);
 
   it('installs, builds and hands over with its parameters and its exit code', async () => {
     const ending = await prepare(['demo', '--fast', 'twice']);
