@@ -14,6 +14,13 @@ export const errorCodes = {
   OPTION_INVALID: 'a command line option or environment value that is not allowed',
   FILE_UNREADABLE: 'a file that cannot be read or written',
   DOCUMENT_INVALID: 'a document with faults',
+  FOLDER_IN_USE: 'a data folder that another process has open',
+  FOLDER_UNSUITABLE: 'a data folder on a file system that cannot hold one',
+  JOURNAL_FAULTY: 'a journal that is damaged before its last line',
+  RECORD_NEWER: 'a record that a later release has written',
+  RECORD_FAULTY: 'a record that cannot be opened or brought forward',
+  RECORD_UNREACHABLE: 'a database or queue that does not answer',
+  RESULT_DIFFERS: 'a task that gave two different results',
 } as const;
 
 export type ErrorCode = keyof typeof errorCodes;
