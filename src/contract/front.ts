@@ -12,13 +12,33 @@ export const alternativeIdSchema = z
   .string()
   .regex(/^A\d{2,3}$/, 'A and two or three digits, such as A07');
 
-/** What has a document of its own in a job that is done: an alternative, or today's settings. */
+/** The name of a published rule's settings in a front: B01, B02, ... */
+const baselineIdSchema = z.string().regex(/^B\d{2}$/);
+
+/** What has a document of its own in a job that is done: every scored tuning set of its front. */
 export const scoredNameSchema = z
   .string()
-  .regex(/^(A\d{2,3}|present)$/, 'A and two or three digits, such as A07; or present');
+  .regex(
+    /^(A\d{2,3}|B\d{2}|present)$/,
+    'A and two or three digits, such as A07; B and two for a published rule; or present',
+  );
 
-/** A published rule's settings, or today's, with where the rule stands. */
-export const baselineSchema = keyed({ method: z.string(), source: z.string(), ...scoredShape });
+/** Today's settings. */
+const presentSchema = keyed({
+  ...scoredShape,
+  /** Hash of their own document, `present`. */
+  detail: hashSchema,
+});
+
+/** A published rule's settings, with where the rule stands. */
+export const baselineSchema = keyed({
+  id: baselineIdSchema,
+  method: z.string(),
+  source: z.string(),
+  ...scoredShape,
+  /** Hash of their own document. */
+  detail: hashSchema,
+});
 
 /** How an alternative fared on models that the search never saw. */
 const verificationSchema = keyed({
@@ -79,18 +99,18 @@ export const frontSchema = keyed({
   reference: z.string(),
   /** What was taken because the document does not state it. */
   assumed: z.array(z.string()),
-  present: scoredSettingsSchema.nullable(),
+  present: presentSchema.nullable(),
   baselines: z.array(baselineSchema),
   alternatives: z.array(alternativeSchema),
   binding: z.array(bindingSchema),
   infeasible: infeasibleSchema.nullable(),
 });
 
-/** Everything about one alternative: the figures of each upset and the responses. */
+/** Everything about one of a front's settings: the figures of each upset and the responses. */
 export const alternativeDetailSchema = keyed({
   format: z.literal(alternativeFormat),
   job: hashSchema,
-  id: alternativeIdSchema,
+  id: scoredNameSchema,
   scored: scoredSettingsSchema,
   responses: z.array(trendSchema),
 });

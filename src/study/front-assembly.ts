@@ -6,7 +6,6 @@ import {
   type FrontDocument,
   frontFormat,
   type Infeasibility,
-  type ScoredSettings,
   secondsPer,
 } from '../contract/index.js';
 import { passingShare } from '../scoring/index.js';
@@ -16,7 +15,7 @@ import { commonScan } from './compiled-job.js';
 import type { Preparation } from './preparation.js';
 import { only, presentIsComplete, type ResultOf } from './stage-results.js';
 import type { StudyOutcome } from './study-outcome.js';
-import type { StudyContext, TaskResult, Verified } from './tasks.js';
+import type { Detail, StudyContext, TaskResult, Verified } from './tasks.js';
 
 /** The front of a study whose stages are all done. */
 export function assembleFront(
@@ -28,21 +27,21 @@ export function assembleFront(
     stages[0] as TaskResult[],
     'prepare',
   )[0] as ResultOf<'prepare'>;
-  const scores = only((stages[1] ?? []) as TaskResult[], 'score').map((s) => s.scored);
+  const scores = only((stages[1] ?? []) as TaskResult[], 'score');
   const infeasible = only((stages[2] ?? []) as TaskResult[], 'nearest')[0]?.infeasible ?? null;
   const verified = only((stages[5] ?? []) as TaskResult[], 'verify').map((v) => v.verified);
   const chosen = chooseAlternatives(verified, job.search.alternatives);
   const details: AlternativeDetail[] = [];
+  const documented = (id: string, detail: Detail): string => {
+    const document = { format: alternativeFormat, job: provenance.job, id, ...detail } as const;
+    details.push(document);
+    return hashOf(document);
+  };
+  const hasPresent = presentIsComplete(context);
+  const present = hasPresent ? scores[0] : undefined;
+  const baselines = hasPresent ? scores.slice(1) : scores;
   const alternatives = chosen.map((v, k): Alternative => {
     const id = `A${String(k + 1).padStart(2, '0')}`;
-    const detail: AlternativeDetail = {
-      format: alternativeFormat,
-      job: provenance.job,
-      id,
-      scored: v.detail.scored,
-      responses: v.detail.responses,
-    };
-    details.push(detail);
     return {
       id,
       ...v.scored,
@@ -53,10 +52,9 @@ export function assembleFront(
           job.search.models === 1 ? Number(v.failures === 0) : passingShare(v.failures, v.models),
         mended: v.mended,
       },
-      detail: hashOf(detail),
+      detail: documented(id, v.detail),
     };
   });
-  const hasPresent = presentIsComplete(context);
   const scan = commonScan(job) / secondsPer[job.unit.timeUnit];
   const step = scan / preparation.stepsPerScan;
   const front: FrontDocument = {
@@ -70,8 +68,11 @@ export function assembleFront(
     seed: job.search.seed,
     reference: preparation.reference.method,
     assumed: [...preparation.assumed],
-    present: hasPresent ? (scores[0] ?? null) : null,
-    baselines: baselinesOf(preparation, hasPresent ? scores.slice(1) : scores),
+    present:
+      present === undefined
+        ? null
+        : { ...present.scored, detail: documented('present', present.detail) },
+    baselines: baselinesOf(preparation, baselines, documented),
     alternatives,
     binding: countBinding(chosen),
     infeasible: infeasible ?? (chosen.length === 0 ? nothingFound(verified, dimension) : null),
@@ -135,11 +136,17 @@ function withoutTwins(front: readonly Verified[]): Verified[] {
 const robustnessOf = (v: Verified): number => v.scored.objectives.robustness as number;
 const speedOf = (v: Verified): number => v.scored.objectives.speed as number;
 
-function baselinesOf(preparation: Preparation, scores: readonly ScoredSettings[]): Baseline[] {
+function baselinesOf(
+  preparation: Preparation,
+  scores: readonly ResultOf<'score'>[],
+  documented: (id: string, detail: Detail) => string,
+): Baseline[] {
   const rules = preparation.baselines.filter((b) => b.settings !== null);
   return rules.flatMap(({ method, source }, k) => {
-    const scored = scores[k];
-    return scored === undefined ? [] : [{ method, source, ...scored }];
+    const score = scores[k];
+    if (score === undefined) return [];
+    const id = `B${String(k + 1).padStart(2, '0')}`;
+    return [{ id, method, source, ...score.scored, detail: documented(id, score.detail) }];
   });
 }
 

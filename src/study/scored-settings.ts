@@ -220,6 +220,12 @@ export function scoredSettings(
   };
 }
 
+/** Scored settings as a front shows them: the figures of single upsets are left to their own document. */
+export function withoutUpsets(scored: ScoredSettings): ScoredSettings {
+  const { upsets: _, ...nominal } = scored.nominal;
+  return { ...scored, nominal };
+}
+
 const internalDocument = (s: ControllerSettings, timeUnit: number) => ({
   kc: s.kc,
   ti: over(s.ti, timeUnit),

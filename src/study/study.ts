@@ -17,6 +17,18 @@ export interface StudyProgress {
 /** Rough shares of the whole that the stages take, for progress alone. */
 const shares = [0.03, 0.2, 0.27, 0.2, 0.08, 0.22] as const;
 
+/** How a study stands in which so many tasks of a stage are done. */
+export function progressOf(
+  stageIndex: number,
+  stage: string,
+  done: number,
+  total: number,
+): StudyProgress {
+  const before = shares.slice(0, stageIndex).reduce((a, b) => a + b, 0);
+  const fraction = before + (shares[stageIndex] ?? 0) * (total === 0 ? 1 : done / total);
+  return { stage, stageIndex, stageCount: stageNames.length, done, total, fraction };
+}
+
 /**
  * Run a study: stage after stage, the tasks of each in any order and anywhere.
  * @param run  answers one task; may run several at a time
@@ -31,18 +43,9 @@ export async function runStudy(
     const stage = nextStage(context, stages);
     if (stage === null) break;
     const stageIndex = stages.length;
-    const before = shares.slice(0, stageIndex).reduce((a, b) => a + b, 0);
     const total = stage.tasks.length;
     let done = 0;
-    const tell = (): void =>
-      onProgress?.({
-        stage: stage.name,
-        stageIndex,
-        stageCount: stageNames.length,
-        done,
-        total,
-        fraction: before + (shares[stageIndex] ?? 0) * (total === 0 ? 1 : done / total),
-      });
+    const tell = (): void => onProgress?.(progressOf(stageIndex, stage.name, done, total));
     tell();
     const results = await Promise.all(
       stage.tasks.map(async (task) => {

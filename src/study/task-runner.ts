@@ -6,7 +6,7 @@ import { scoreFully } from './evaluation.js';
 import { solveFocused } from './focused-search.js';
 import { describeInfeasibility } from './infeasibility.js';
 import { type Preparation, prepareJob } from './preparation.js';
-import { scoredSettings } from './scored-settings.js';
+import { scoredSettings, withoutUpsets } from './scored-settings.js';
 import type { FoundPoint, StudyContext, Task, TaskResult } from './tasks.js';
 import { TuningProblem } from './tuning-problem.js';
 import { pointOf } from './variables.js';
@@ -141,8 +141,13 @@ export class TaskRunner {
         ? bench.compiled.space.base
         : (bench.preparation.baselines[which]?.settings ?? bench.compiled.space.base);
     const fresh = bench.isExact ? [] : bench.freshModels(0);
-    const { nominal, models } = scoreFully(bench, own, fresh);
-    return { kind: 'score', scored: scoredSettings(bench, own, nominal, models, false) };
+    const { nominal, models, responses } = scoreFully(bench, own, fresh);
+    const scored = scoredSettings(bench, own, nominal, models, true);
+    return {
+      kind: 'score',
+      scored: withoutUpsets(scored),
+      detail: { scored, responses: [...responses] },
+    };
   }
 }
 

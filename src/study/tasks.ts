@@ -67,6 +67,9 @@ export type Task =
       readonly starts: readonly (readonly number[])[];
     };
 
+/** Everything about one tuning set that its own document shows. */
+export type Detail = Omit<AlternativeDetail, 'format' | 'job' | 'id'>;
+
 /** A verified alternative, or why there is none. */
 export interface Verified {
   readonly accepted: boolean;
@@ -76,7 +79,7 @@ export interface Verified {
   readonly mended: number;
   /** Limits that it lies on. */
   readonly binding: readonly { readonly limit: string; readonly loop: string | null }[];
-  readonly detail: Omit<AlternativeDetail, 'format' | 'job' | 'id'>;
+  readonly detail: Detail;
 }
 
 export type TaskResult =
@@ -100,6 +103,6 @@ export type TaskResult =
       readonly breaking: readonly number[];
       readonly evaluations: number;
     }
-  | { readonly kind: 'score'; readonly scored: ScoredSettings }
+  | { readonly kind: 'score'; readonly scored: ScoredSettings; readonly detail: Detail }
   | { readonly kind: 'verify'; readonly verified: Verified; readonly evaluations: number }
   | { readonly kind: 'nearest'; readonly infeasible: Infeasibility; readonly evaluations: number };

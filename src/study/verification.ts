@@ -6,7 +6,7 @@ import { solveLevel } from '../search/index.js';
 import { effortPlan } from './effort.js';
 import { scoreFully } from './evaluation.js';
 import { solveFocused } from './focused-search.js';
-import { scoredSettings } from './scored-settings.js';
+import { scoredSettings, withoutUpsets } from './scored-settings.js';
 import type { Task, TaskResult, Verified } from './tasks.js';
 import { sampleVariant } from './tuning-cases.js';
 import { TuningProblem } from './tuning-problem.js';
@@ -134,10 +134,9 @@ function judge(
     : outside;
   const all = [...searched, ...fresh];
   const scored = scoredSettings(bench, own, nominal, all, true);
-  const { upsets: _, ...withoutUpsets } = scored.nominal;
   return {
     accepted: all.every((m) => m.stable) && searchSetHolds && isEnough(failures, models),
-    scored: { ...scored, nominal: withoutUpsets },
+    scored: withoutUpsets(scored),
     models,
     failures,
     mended,

@@ -78,8 +78,8 @@ const front: FrontDocument = {
   seed: 1,
   reference: 'present',
   assumed: [],
-  present: scored,
-  baselines: [{ method: 'SIMC', source: 'Skogestad 2003', ...scored }],
+  present: { ...scored, detail: job },
+  baselines: [{ id: 'B01', method: 'SIMC', source: 'Skogestad 2003', ...scored, detail: job }],
   alternatives: [
     {
       id: 'A01',
