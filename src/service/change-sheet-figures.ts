@@ -1,0 +1,96 @@
+import {
+  type Expectation,
+  type JobDocument,
+  type LoopDocument,
+  type LoopMetrics,
+  loopUnits,
+  type ScoredSettings,
+} from '../contract/index.js';
+
+type LoopFigure = Exclude<keyof LoopMetrics, 'stableInManual'>;
+
+/** A figure of a loop on the sheet: its key, its words, and its unit. */
+type Shown = readonly [key: LoopFigure, words: string, unit: string];
+
+/** Speed and robustness, today and after. Robustness is a worst by itself: it has no nominal. */
+export function objectiveExpectations(
+  today: ScoredSettings | null,
+  expected: ScoredSettings,
+): Expectation[] {
+  return [
+    {
+      key: 'speed',
+      figure: 'speed (less is faster)',
+      unit: '',
+      today: today?.nominal.unit.speed ?? null,
+      todayWorst: today?.worst.unit.speed ?? null,
+      expected: expected.nominal.unit.speed,
+      expectedWorst: expected.worst.unit.speed,
+    },
+    {
+      key: 'robustness',
+      figure: 'robustness (largest Ms of a retuned loop)',
+      unit: '',
+      today: null,
+      todayWorst: today?.objectives.robustness ?? null,
+      expected: null,
+      expectedWorst: expected.objectives.robustness,
+    },
+  ];
+}
+
+/** What to expect of one closed loop; nothing of a loop in manual. */
+export function loopExpectations(
+  job: JobDocument,
+  loop: LoopDocument,
+  today: ScoredSettings | null,
+  expected: ScoredSettings,
+): Expectation[] {
+  if (loop.task === 'manual') return [];
+  const before = { nominal: today?.nominal.loops[loop.tag], worst: today?.worst.loops[loop.tag] };
+  const after = {
+    nominal: expected.nominal.loops[loop.tag],
+    worst: expected.worst.loops[loop.tag],
+  };
+  return figuresOf(job, loop)
+    .map(([key, figure, unit]) => ({
+      key,
+      figure,
+      unit,
+      today: before.nominal?.[key] ?? null,
+      todayWorst: before.worst?.[key] ?? null,
+      expected: after.nominal?.[key] ?? null,
+      expectedWorst: after.worst?.[key] ?? null,
+    }))
+    .filter((line) => line.key !== 'gainReduction' || hasFigure(line));
+}
+
+/** Most loops may be turned down without end, so that this margin is seldom a figure. */
+const hasFigure = ({ today, todayWorst, expected, expectedWorst }: Expectation): boolean =>
+  [today, todayWorst, expected, expectedWorst].some((value) => value !== null);
+
+function figuresOf(job: JobDocument, loop: LoopDocument): Shown[] {
+  const { pv, output } = loopUnits(job, loop);
+  const { timeUnit } = job.unit;
+  const margins: Shown[] = [
+    ['peakSensitivity', 'peak sensitivity Ms', ''],
+    ['gainMargin', 'gain margin, upwards', ''],
+    ['gainReduction', 'gain margin, downwards', ''],
+    ['phaseMargin', 'phase margin', 'deg'],
+  ];
+  const step: Shown[] = [
+    ['overshoot', 'overshoot of the setpoint step', '%'],
+    ['settlingTime', 'settling time of the setpoint step', timeUnit],
+  ];
+  const upsets: Shown[] = [['peakDeviation', 'peak deviation, load and disturbances', pv]];
+  if (loop.goal === 'averaging')
+    upsets.push(['peakRate', 'peak output rate', perTime(output, timeUnit)]);
+  return [
+    ...margins,
+    ...(loop.setpointStep === 0 ? [] : step),
+    ...upsets,
+    ['outputNoise', 'output noise, standard deviation', output],
+  ];
+}
+
+const perTime = (unit: string, timeUnit: string): string => `${unit || '1'}/${timeUnit}`;
