@@ -5,6 +5,7 @@ const isLong = process.env['HEDDLE_TEST_LONG'] === '1';
 export default defineConfig({
   test: {
     include: ['tests/**/*.test.ts'],
+    globalSetup: ['tests/servers/global-setup.ts'],
     setupFiles: ['tests/properties.ts'],
     pool: 'forks',
     maxWorkers: 2,

@@ -2,7 +2,8 @@ import { type ChildProcess, spawn, spawnSync } from 'node:child_process';
 import { join } from 'node:path';
 import { checkout } from './scratch.js';
 
-const entry = join(checkout, 'dist/src/cli/main.js');
+/** The built program, to be run by Node. */
+export const entry = join(checkout, 'dist/src/cli/main.js');
 
 /** Builds the program where the sources are newer than the build. */
 export function build(): void {
@@ -32,18 +33,21 @@ export interface Circumstances {
   readonly onStart?: (child: ChildProcess) => void;
 }
 
+/** This process's environment without anything that sets an option of the program. */
+export function plainEnvironment(): NodeJS.ProcessEnv {
+  const options = /^(HEDDLE_|DATABASE_URL|REDIS_URL|NO_COLOR$|FORCE_COLOR$|COLUMNS$)/;
+  return Object.fromEntries(Object.entries(process.env).filter(([name]) => !options.test(name)));
+}
+
 /** Runs the built program to its end, with no option set by the surroundings. */
 export function heddle(
   parameters: readonly string[],
   { folder, environment, stdin, onNotes, onStart }: Circumstances = {},
 ): Promise<Ended> {
-  const inherited = Object.entries(process.env).filter(
-    ([name]) => !/^(HEDDLE_|NO_COLOR$|FORCE_COLOR$|COLUMNS$)/.test(name),
-  );
   return new Promise((resolve, reject) => {
     const child = spawn(process.execPath, [entry, ...parameters], {
       cwd: folder ?? checkout,
-      env: { ...Object.fromEntries(inherited), ...environment },
+      env: { ...plainEnvironment(), ...environment },
       stdio: [typeof stdin === 'string' ? 'pipe' : (stdin ?? 'ignore'), 'pipe', 'pipe'],
     });
     let stdout = '';
