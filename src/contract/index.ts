@@ -1,5 +1,6 @@
 export { documentSizeFault, mostDocumentBytes, readDocumentText } from './document-text.js';
 export { type EvaluationDocument, evaluationFormat, evaluationSchema } from './evaluation.js';
+export { excerpt } from './excerpt.js';
 export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } from './faults.js';
 export {
   type Alternative,

@@ -1,2 +1,3 @@
 export { ServiceProblem } from './problem.js';
 export type { Readiness, Service } from './service.js';
+export { sheetCsv } from './sheet-csv.js';

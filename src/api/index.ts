@@ -1,0 +1,1 @@
+export { type ApiOptions, type ApiTimes, buildApi } from './api.js';
