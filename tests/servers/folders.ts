@@ -5,9 +5,13 @@ import { join } from 'node:path';
 /** Folders of this machine's test servers: the name tells the process they belong to. */
 const prefix = `heddle-server-${hostname().replaceAll(/[^\w.]/g, '_')}-`;
 
+/** This process's own, removed at its end where their servers did not come to it. */
+const mine: string[] = [];
+
 /** A new folder under the system's folder of temporary files, named for this process. */
 export function makeServerFolder(user?: { readonly uid: number; readonly gid: number }): string {
   const folder = mkdtempSync(join(tmpdir(), `${prefix}${process.pid}-`));
+  if (mine.push(folder) === 1) process.on('exit', () => mine.forEach(remove));
   if (user) chownSync(folder, user.uid, user.gid);
   return folder;
 }
@@ -16,12 +20,15 @@ export function makeServerFolder(user?: { readonly uid: number; readonly gid: nu
 export function removeStaleFolders(): void {
   for (const name of readdirSync(tmpdir()).filter((other) => other.startsWith(prefix))) {
     const owner = Number(name.slice(prefix.length).split('-')[0]);
-    if (isAlive(owner)) continue;
-    try {
-      rmSync(join(tmpdir(), name), { recursive: true, force: true });
-    } catch {
-      // Another user's, or just being removed by its keeper: not ours to worry about.
-    }
+    if (!isAlive(owner)) remove(join(tmpdir(), name));
+  }
+}
+
+function remove(folder: string): void {
+  try {
+    rmSync(folder, { recursive: true, force: true });
+  } catch {
+    // Another user's, or just being removed by its keeper: not ours to worry about.
   }
 }
 
