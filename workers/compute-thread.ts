@@ -1,23 +1,22 @@
 /**
- * What runs on a calculation thread: one task of a study at a time. What is built for a job stays at
- * hand for its next task.
+ * What runs on a calculation thread: one piece of work at a time. What is built for a job stays at hand
+ * for its next task.
  */
 import { CodedError } from '../src/base/index.js';
-import type { ThreadAnswer } from '../src/compute/index.js';
-import { type StudyContext, type Task, type TaskResult, TaskRunner } from '../src/study/index.js';
+import {
+  type ThreadAnswer,
+  type ThreadRequest,
+  type ThreadWork,
+  ThreadWorker,
+  type ThreadWorkKind,
+} from '../src/compute/index.js';
 
-const runner = new TaskRunner();
+const worker = new ThreadWorker();
 
-/** The result of one task, or the code it failed with. */
-export function answer({
-  context,
-  task,
-}: {
-  readonly context: StudyContext;
-  readonly task: Task;
-}): ThreadAnswer<TaskResult> {
+/** The answer of one piece of work, or the code it failed with. */
+export function answer(request: ThreadRequest): ThreadAnswer<ThreadWork[ThreadWorkKind]['answer']> {
   try {
-    return { ok: true, result: runner.run(context, task) };
+    return { ok: true, result: worker.do(request) };
   } catch (error) {
     if (!(error instanceof CodedError)) throw error;
     return { ok: false, code: error.code, message: error.message };

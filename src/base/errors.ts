@@ -20,6 +20,7 @@ export const errorCodes = {
   RECORD_NEWER: 'a record that a later release has written',
   RECORD_FAULTY: 'a record that cannot be opened or brought forward',
   RECORD_UNREACHABLE: 'a database or queue that does not answer',
+  TASK_POISON: 'a task that takes down whatever works on it',
   RESULT_DIFFERS: 'a task that gave two different results',
 } as const;
 

@@ -32,13 +32,18 @@ export {
   workOf,
 } from './jobs.js';
 export { clearOutbox, readOutbox, type Unqueued } from './outbox.js';
-export { findResting, handOutAnew, type Resting, recordIncident } from './recovery.js';
+export {
+  findResting,
+  type HandingOut,
+  handOutAnew,
+  type Resting,
+  recordIncident,
+} from './recovery.js';
 export { openServed } from './served/open-served.js';
 export {
   beginTask,
   type FoundFront,
   findJobAtWork,
-  type JobAtWork,
   openTasks,
   queueLater,
   readResults,

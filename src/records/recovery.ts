@@ -18,22 +18,31 @@ export async function findResting(db: Records, seconds: number): Promise<Resting
       select max(stage) as stage from heddle.stages
         where job_id = j.id and compute = j.compute) s on true
     where j.state in ('accepted', 'running')
-      and j.touched_at < now() - make_interval(secs => ${seconds}::float8)
+      and j.touched_at < ${ago(seconds)}
       and not exists (select from heddle.outbox o where o.job_id = j.id and o.epoch = j.epoch)
     order by j.sequence`.execute(db);
   return rows;
 }
 
+/** How the work of a job is handed out anew. */
+export interface HandingOut {
+  /** The version of the calculation that it goes to. */
+  readonly compute: string;
+  /** Only where nothing has moved the job for so many seconds. */
+  readonly seconds: number;
+  readonly kind: string;
+  readonly detail: string;
+}
+
 /**
  * Hands out the work of a job anew, under the next epoch: from the stage it had come to, or from the
  * first where it goes to another version of the calculation.
- * @returns false where somebody else has done so, or the job has ended
+ * @returns false where somebody else has done so, or the job has moved or ended
  */
 export async function handOutAnew(
   db: Records,
   job: Resting,
-  why: { readonly kind: string; readonly detail: string },
-  compute: string = job.compute,
+  { compute, seconds, kind, detail }: HandingOut,
 ): Promise<boolean> {
   return db.transaction().execute(async (transaction) => {
     const row = await transaction
@@ -42,17 +51,22 @@ export async function handOutAnew(
       .where('id', '=', job.job)
       .where('epoch', '=', job.epoch)
       .where('state', 'in', ['accepted', 'running'])
+      .where('touched_at', '<', ago(seconds))
       .returning('id')
       .executeTakeFirst();
     if (row === undefined) return false;
     const stage =
       compute === job.compute ? job.stage : await latestStage(transaction, job, compute);
     await queueLater(transaction, { job: job.job, compute, epoch: job.epoch + 1, stage });
-    await recordIncident(transaction, job.job, why);
+    await recordIncident(transaction, job.job, { kind, detail });
     await tellChange(transaction, job.job);
     return true;
   });
 }
+
+/** So long ago, by the database's clock; a moment from now for 0, so that everything is before it. */
+const ago = (seconds: number) =>
+  sql<Date>`(clock_timestamp() - make_interval(secs => ${seconds}::float8))`;
 
 /** A job may return to a version that has done a part of it before. */
 async function latestStage(

@@ -15,17 +15,14 @@ export interface TaskKey extends StageKey {
   readonly task: number;
 }
 
-/** What a job's work needs to know of it. */
-export interface JobAtWork {
-  readonly document: Uint8Array;
-  readonly hash: string;
-}
-
-/** The job of some work, unless it has ended or its work was handed out anew. */
-export async function findJobAtWork(db: Records, key: StageKey): Promise<JobAtWork | undefined> {
+/** The hash of the document of some work's job, unless it has ended or its work was handed out anew. */
+export async function findJobAtWork(
+  db: Records,
+  key: StageKey,
+): Promise<{ readonly hash: string } | undefined> {
   return db
     .selectFrom('jobs')
-    .select(['document', 'hash'])
+    .select('hash')
     .where('id', '=', key.job)
     .where('epoch', '=', key.epoch)
     .where('compute', '=', key.compute)
@@ -159,7 +156,7 @@ async function holdJob(db: RecordTransaction, key: StageKey): Promise<boolean> {
 }
 
 /**
- * Records a stage with all its tasks, to be queued. Does nothing where the stage is there already.
+ * Records a stage with all its tasks, to be queued. A stage that is there already stays as it is.
  * @returns false where the job has ended or its work was handed out anew
  */
 export async function recordStage(
@@ -175,12 +172,11 @@ export async function recordStage(
     .onConflict((conflict) => conflict.doNothing())
     .returning('stage')
     .executeTakeFirst();
-  if (fresh === undefined) return true;
-  for (const [task, input] of stage.tasks.entries()) {
-    await db
-      .insertInto('tasks')
-      .values({ job_id, compute, stage: key.stage, task, input })
-      .execute();
+  if (fresh !== undefined) {
+    for (const [task, input] of stage.tasks.entries()) {
+      const row = { job_id, compute, stage: key.stage, task, input };
+      await db.insertInto('tasks').values(row).execute();
+    }
   }
   await queueLater(db, key);
   await touchJob(db, job_id);

@@ -1,3 +1,10 @@
+export {
+  type InstallationSettings,
+  openServer,
+  openWorker,
+  type Place,
+  type Running,
+} from './installation.js';
 export { ServiceProblem } from './problem.js';
 export type { Readiness, Service } from './service.js';
 export { sheetCsv } from './sheet-csv.js';

@@ -1,0 +1,89 @@
+import { createHash } from 'node:crypto';
+import { CodedError } from '../base/index.js';
+import { type Calculations, ThreadFailure, type ThreadWork } from '../compute/index.js';
+import type { CheckReport, Refused } from '../contract/index.js';
+import { ServiceProblem } from './problem.js';
+
+/** Questions that may wait for a thread. */
+const mostWaiting = 16;
+
+/** Kinds of work that answer a question at once. */
+type Question = 'read' | 'check' | 'evaluate';
+
+/** Answers questions about documents on threads of its own, apart from the work of jobs. */
+export class CalculationDesk {
+  private waiting = 0;
+
+  constructor(
+    private readonly calculations: Calculations,
+    private readonly compute: string,
+    /** How many threads work on a job: what a check's estimate is for. */
+    private readonly threads: number,
+  ) {}
+
+  read(document: Uint8Array) {
+    return this.ask('read', { document });
+  }
+
+  check(document: Uint8Array, signal: AbortSignal): Promise<CheckReport> {
+    return this.ask('check', { ...this.stored(document), threads: this.threads }, signal);
+  }
+
+  /** @param settings  a settings document to score; the present ones where null */
+  evaluate(
+    document: Uint8Array,
+    settings: Uint8Array | null,
+    signal: AbortSignal,
+  ): Promise<Uint8Array> {
+    return this.ask('evaluate', { ...this.stored(document), settings }, signal);
+  }
+
+  private stored(document: Uint8Array) {
+    const job = createHash('sha256').update(document).digest('hex');
+    return { document, provenance: { job, compute: this.compute } };
+  }
+
+  private async ask<Kind extends Question>(
+    kind: Kind,
+    given: ThreadWork[Kind]['given'],
+    signal?: AbortSignal,
+  ): Promise<Exclude<ThreadWork[Kind]['answer'], Refused>> {
+    if (this.waiting >= mostWaiting) throw busy();
+    this.waiting += 1;
+    try {
+      const answer = await this.calculations.run(kind, given, signal);
+      if (isRefused(answer)) throw refusal(answer);
+      return answer as Exclude<ThreadWork[Kind]['answer'], Refused>;
+    } catch (error) {
+      throw problemOf(error);
+    } finally {
+      this.waiting -= 1;
+    }
+  }
+}
+
+function isRefused(answer: unknown): answer is Refused {
+  return typeof answer === 'object' && answer !== null && 'ok' in answer && answer.ok === false;
+}
+
+function refusal(refused: Refused): ServiceProblem {
+  const count = refused.faults.length + refused.more;
+  const detail = `${count === 1 ? 'one fault' : `${count} faults`}; nothing was accepted`;
+  return new ServiceProblem('DOCUMENT_REFUSED', detail, { refused });
+}
+
+const busy = (): ServiceProblem =>
+  new ServiceProblem('BUSY', `${mostWaiting} questions wait for an answer already; try again soon`);
+
+function problemOf(error: unknown): unknown {
+  if (error instanceof CodedError && error.code === 'WORK_ABANDONED') {
+    return new ServiceProblem('STOPPING', 'the calculation was stopped', { cause: error });
+  }
+  if (error instanceof CodedError) {
+    return new ServiceProblem('CALCULATION_REFUSED', error.message, { cause: error });
+  }
+  if (error instanceof ThreadFailure && error.code === 'THREAD_LOST') {
+    return new ServiceProblem('CALCULATION_REFUSED', error.message, { cause: error });
+  }
+  return error;
+}
