@@ -1,21 +1,17 @@
-import { createThreadPool } from '../compute/index.js';
+import { startCalculations } from '../compute/index.js';
 import {
   runStudy,
   type StudyContext,
   type StudyOutcome,
   type StudyProgress,
-  type Task,
-  type TaskResult,
 } from '../study/index.js';
 import type { Cost } from './tables/front-page.js';
+import { threadEntry } from './thread-entry.js';
 
 export interface JobRun {
   readonly outcome: StudyOutcome;
   readonly cost: Cost;
 }
-
-/** The compiled entry of a calculation thread, beside this program. */
-const threadEntry = new URL('../../workers/compute-thread.js', import.meta.url);
 
 /**
  * Runs a whole job in this process, its tasks on threads, none of which is left when this is over.
@@ -29,13 +25,13 @@ export async function runJob(
 ): Promise<JobRun> {
   const start = performance.now();
   const cpu = process.cpuUsage();
-  const pool = createThreadPool<{ context: StudyContext; task: Task }, TaskResult>({
-    threads,
-    entry: threadEntry,
-  });
+  const calculations = startCalculations({ threads, entry: threadEntry });
   try {
-    const run = (task: Task): Promise<TaskResult> => pool.run({ context, task }, signal);
-    const outcome = await runStudy(context, run, onProgress);
+    const outcome = await runStudy(
+      context,
+      (task) => calculations.run('task', { context, task }, signal),
+      onProgress,
+    );
     const used = process.cpuUsage(cpu);
     return {
       outcome,
@@ -46,6 +42,6 @@ export async function runJob(
       },
     };
   } finally {
-    await pool.close();
+    await calculations.close();
   }
 }
