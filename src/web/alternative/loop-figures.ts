@@ -1,0 +1,161 @@
+import type { LoopLimitName, LoopMetrics, Metrics } from '../../contract/index.js';
+import { figure, noFigure } from '../text/figures.js';
+import type { LoopView } from '../text/unit-view.js';
+
+type FigureName = Exclude<keyof LoopMetrics, 'stableInManual'>;
+
+interface FigureKind {
+  readonly name: FigureName;
+  readonly words: string;
+  readonly unit: (loop: LoopView, timeUnit: string) => string;
+  /** A larger value is the better one. */
+  readonly isMargin?: boolean;
+  readonly limits: readonly LoopLimitName[];
+  /** Shown only where the job states a limit on it. */
+  readonly isOnDemand?: boolean;
+}
+
+const none = (): string => '';
+const pv = ({ pvUnit }: LoopView): string => pvUnit;
+const output = ({ outputUnit }: LoopView): string => outputUnit;
+const time = (_: LoopView, timeUnit: string): string => timeUnit;
+
+const kinds: readonly FigureKind[] = [
+  {
+    name: 'peakSensitivity',
+    words: 'Peak sensitivity Ms',
+    unit: none,
+    limits: ['peakSensitivity'],
+  },
+  { name: 'gainMargin', words: 'Gain margin', unit: none, isMargin: true, limits: ['gainMargin'] },
+  {
+    name: 'phaseMargin',
+    words: 'Phase margin',
+    unit: () => 'deg',
+    isMargin: true,
+    limits: ['phaseMargin'],
+  },
+  { name: 'overshoot', words: 'Overshoot', unit: () => '%', limits: ['overshoot'] },
+  { name: 'settlingTime', words: 'Settling time', unit: time, limits: ['settlingTime'] },
+  {
+    name: 'peakDeviation',
+    words: 'Peak deviation',
+    unit: pv,
+    limits: ['peakDeviation', 'levelBand'],
+  },
+  { name: 'outputNoise', words: 'Output noise', unit: output, limits: ['outputNoise'] },
+  { name: 'travel', words: 'Output travel', unit: output, limits: ['travel'] },
+  {
+    name: 'peakRate',
+    words: 'Output rate',
+    unit: (loop, timeUnit) => `${loop.outputUnit}/${timeUnit}`,
+    limits: ['outputRate'],
+    isOnDemand: true,
+  },
+  {
+    name: 'peakMove',
+    words: 'Output move a scan',
+    unit: output,
+    limits: ['outputMove'],
+    isOnDemand: true,
+  },
+  {
+    name: 'upsetToOthers',
+    words: 'Upset to other loops',
+    unit: () => 'tolerances',
+    limits: ['upsetToOthers'],
+    isOnDemand: true,
+  },
+];
+
+/** Nominal and worst of one tuning set. */
+export interface Scored {
+  readonly nominal: Metrics;
+  readonly worst: Metrics;
+}
+
+/** One figure of one loop, today and after the change, as shown. */
+export interface FigureRow {
+  readonly words: string;
+  readonly unit: string;
+  readonly today: readonly [nominal: string, worst: string];
+  readonly chosen: readonly [nominal: string, worst: string];
+  readonly verdict: 'better' | 'worse' | 'alike' | null;
+  readonly limit: string;
+  /** The chosen tuning is beyond the limit, on the worst model or, for a nominal limit, the nominal. */
+  readonly isBroken: boolean;
+}
+
+/** A difference of the worst figures that is worth a word. */
+const worthSaying = 0.02;
+
+/** @param horizon  how long an upset is simulated, for what has not settled within it */
+export function loopFigures(
+  loop: LoopView,
+  today: Scored | null,
+  chosen: Scored,
+  { timeUnit, horizon }: { readonly timeUnit: string; readonly horizon: number },
+): readonly FigureRow[] {
+  return kinds
+    .filter((kind) => !kind.isOnDemand || limitOf(loop, kind) !== undefined)
+    .map((kind) => {
+      const shown = (scored: Scored | null): [string, string] => [
+        shownFigure(kind, scored?.nominal, loop, horizon),
+        shownFigure(kind, scored?.worst, loop, horizon),
+      ];
+      const limit = limitOf(loop, kind);
+      const after = numberOf(kind, limit?.nominal ? chosen.nominal : chosen.worst, loop);
+      return {
+        words: kind.words,
+        unit: kind.unit(loop, timeUnit),
+        today: shown(today),
+        chosen: shown(chosen),
+        verdict: verdict(
+          kind,
+          numberOf(kind, today?.worst, loop),
+          numberOf(kind, chosen.worst, loop),
+        ),
+        limit:
+          limit === undefined
+            ? noFigure
+            : `${kind.isMargin ? '\u2265' : '\u2264'} ${figure(limit.bound)}${limit.nominal ? ', nominal' : ''}`,
+        isBroken: limit !== undefined && after !== null && isBeyond(kind, after, limit.bound),
+      };
+    });
+}
+
+const limitOf = (loop: LoopView, { limits }: FigureKind) =>
+  limits.map((name) => loop.limits[name]).find((limit) => limit !== undefined);
+
+const numberOf = (kind: FigureKind, metrics: Metrics | undefined, loop: LoopView): number | null =>
+  metrics?.loops[loop.tag]?.[kind.name] ?? null;
+
+/** What is beyond a limit by more than rounding. */
+const isBeyond = (kind: FigureKind, value: number, bound: number): boolean =>
+  kind.isMargin ? value < bound * (1 - 1e-9) : value > bound * (1 + 1e-9);
+
+function shownFigure(
+  kind: FigureKind,
+  metrics: Metrics | undefined,
+  loop: LoopView,
+  horizon: number,
+): string {
+  const value = numberOf(kind, metrics, loop);
+  if (value !== null || metrics === undefined) return figure(value);
+  if (!metrics.unit.stable) return 'unstable';
+  if (kind.isMargin && metrics.loops[loop.tag] !== undefined) return '\u221e';
+  // Overshoot is there where the loop's own setpoint was stepped: then it has not settled.
+  const isStepped = (metrics.loops[loop.tag]?.overshoot ?? null) !== null;
+  return kind.name === 'settlingTime' && isStepped ? `> ${figure(horizon)}` : noFigure;
+}
+
+function verdict(
+  kind: FigureKind,
+  before: number | null,
+  after: number | null,
+): FigureRow['verdict'] {
+  if (before === null || after === null) return null;
+  const scale = Math.max(Math.abs(before), Math.abs(after));
+  if (scale === 0 || Math.abs(after - before) <= worthSaying * scale) return 'alike';
+  return after < before === (kind.isMargin ?? false) ? 'worse' : 'better';
+}

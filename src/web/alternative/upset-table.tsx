@@ -1,0 +1,92 @@
+import type { AlternativeDetail, Trend, UpsetMetrics } from '../../contract/index.js';
+import { ScrollBox } from '../parts/scroll-box.js';
+import { figure } from '../text/figures.js';
+import type { LoopView, UnitView } from '../text/unit-view.js';
+import { upsetInWords } from '../text/words.js';
+
+interface UpsetTableProps {
+  readonly chosen: AlternativeDetail;
+  readonly present: AlternativeDetail | null;
+  readonly upset: Pick<Trend, 'kind' | 'tag'>;
+  readonly unit: UnitView;
+}
+
+interface Column {
+  readonly name: keyof UpsetMetrics;
+  readonly words: string;
+  readonly unit: (loop: LoopView, timeUnit: string) => string;
+}
+
+const columns: readonly Column[] = [
+  { name: 'peakDeviation', words: 'Peak deviation', unit: ({ pvUnit }) => pvUnit },
+  {
+    name: 'iae',
+    words: 'IAE',
+    unit: ({ pvUnit }, timeUnit) => `${pvUnit}\u00b7${timeUnit}`,
+  },
+  { name: 'settlingTime', words: 'Settling time', unit: (_, timeUnit) => timeUnit },
+  { name: 'travel', words: 'Output travel', unit: ({ outputUnit }) => outputUnit },
+];
+
+/** The responses in figures: what the upset does to each loop, today and with the alternative. */
+export function UpsetTable({ chosen, present, upset, unit }: UpsetTableProps) {
+  const after = lookUp(chosen, upset);
+  const before = present === null ? undefined : lookUp(present, upset);
+  if (after === undefined) return null;
+  return (
+    <ScrollBox label="The responses in figures">
+      <table class="upset-table">
+        <caption>{upsetInWords(upset.kind, upset.tag)}: the responses in figures</caption>
+        <thead>
+          <tr>
+            <th scope="col" rowSpan={2}>
+              Loop
+            </th>
+            {columns.map(({ name, words }) => (
+              <th key={name} scope="colgroup" colSpan={3}>
+                {words}
+              </th>
+            ))}
+          </tr>
+          <tr>
+            {columns.flatMap(({ name }) => [
+              <th key={`${name} today`} scope="col" class="number">
+                today
+              </th>,
+              <th key={`${name} chosen`} scope="col" class="number">
+                {chosen.id}
+              </th>,
+              <th key={`${name} unit`} scope="col">
+                unit
+              </th>,
+            ])}
+          </tr>
+        </thead>
+        <tbody>
+          {unit.loops.map(
+            (loop) =>
+              after[loop.tag] !== undefined && (
+                <tr key={loop.tag}>
+                  <th scope="row">{loop.tag}</th>
+                  {columns.flatMap(({ name, unit: unitOf }) => [
+                    <td key={`${name} today`} class="number">
+                      {figure(before?.[loop.tag]?.[name])}
+                    </td>,
+                    <td key={`${name} chosen`} class="number new">
+                      {figure(after[loop.tag]?.[name])}
+                    </td>,
+                    <td key={`${name} unit`} class="unit">
+                      {unitOf(loop, unit.timeUnit)}
+                    </td>,
+                  ])}
+                </tr>
+              ),
+          )}
+        </tbody>
+      </table>
+    </ScrollBox>
+  );
+}
+
+const lookUp = (detail: AlternativeDetail, { kind, tag }: UpsetTableProps['upset']) =>
+  detail.scored.nominal.upsets?.find((one) => one.kind === kind && one.tag === tag)?.loops;
