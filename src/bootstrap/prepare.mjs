@@ -138,7 +138,8 @@ async function build() {
 function copyAssets() {
   const assets = ['src', 'workers']
     .flatMap((folder) => listFiles(root, folder))
-    .filter((path) => !path.startsWith('src/bootstrap/'));
+    // The page is built by itself, its assets with it.
+    .filter((path) => !/^src\/(bootstrap|web)\//.test(path));
   for (const path of assets.filter((name) => !/\.[cm]?[jt]sx?$/.test(name))) {
     const target = join(root, 'dist', path);
     mkdirSync(dirname(target), { recursive: true });
