@@ -12,12 +12,7 @@ import { serializerCompiler, type ZodTypeProvider } from 'fastify-type-provider-
 import { excerpt, mostDocumentBytes } from '../contract/index.js';
 import { type Service, ServiceProblem } from '../service/index.js';
 import { mostMessageBytes, readBodies, refusePacked } from './bodies.js';
-import {
-  announcesTooMuch,
-  BrokenConnections,
-  connectionProblem,
-  leaveBodyUnread,
-} from './broken-connections.js';
+import { announcesTooMuch, BrokenConnections, leaveBodyUnread } from './broken-connections.js';
 import { changeRoutes } from './change-routes.js';
 import { checkRoutes } from './check-routes.js';
 import { describeRoutes, descriptionRoute } from './description.js';
@@ -82,7 +77,7 @@ export async function buildApi(options: ApiOptions): Promise<FastifyInstance> {
   app.setErrorHandler(answerError);
   takeConnections(app, connections);
   await app.register(helmet, securityHeaders);
-  guardRequests(app, { open, connections, allowedHosts: options.allowedHosts ?? [] });
+  guardRequests(app, open, options.allowedHosts ?? []);
   finishAnswers(app, open, Math.max(times.reading, 2 * times.heartbeat));
   endWithServer(app, open, times.closing);
   readBodies(app);
@@ -114,7 +109,7 @@ function serverOptions(times: ApiTimes, connections: BrokenConnections) {
     return503OnClosing: false,
     frameworkErrors: answerEarly,
     clientErrorHandler: (error: NodeJS.ErrnoException, socket: Socket) =>
-      connections.refuse(connectionProblem(error), socket),
+      connections.refuseBroken(error, socket),
     http: {
       headersTimeout: Math.min(times.headers, times.request),
       connectionsCheckingInterval: Math.min(1_000, Math.ceil(times.headers / 4)),
@@ -133,7 +128,11 @@ function answerEarly(error: Error, request: FastifyRequest, reply: FastifyReply)
 
 /** Connections that do not simply carry a request. */
 function takeConnections(app: FastifyInstance, connections: BrokenConnections): void {
+  app.server.prependListener('request', (request, response) =>
+    connections.watch(request, response),
+  );
   app.server.on('checkContinue', (request, response) => {
+    connections.watch(request, response);
     if (!announcesTooMuch(request, mostDocumentBytes)) response.writeContinue();
     app.routing(request, response);
   });
@@ -144,19 +143,16 @@ function takeConnections(app: FastifyInstance, connections: BrokenConnections): 
   });
 }
 
-interface Guards {
-  readonly open: OpenRequests;
-  readonly connections: BrokenConnections;
-  readonly allowedHosts: readonly string[];
-}
-
 /** Refuses what no route needs to see, before any of its body is read. */
-function guardRequests(app: FastifyInstance, { open, connections, allowedHosts }: Guards): void {
+function guardRequests(
+  app: FastifyInstance,
+  open: OpenRequests,
+  allowedHosts: readonly string[],
+): void {
   const table = new RouteTable();
   table.watch(app);
   app.addHook('onRequest', async (request, reply) => {
     reply.header('request-id', request.id);
-    connections.watch(request, reply);
     if (open.isClosing) throw stopping();
     refuseRepeated(request);
     refuseForeignHost(request, allowedHosts);

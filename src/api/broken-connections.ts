@@ -9,24 +9,35 @@ import { problemBytes, problemMediaType } from './problem-answer.js';
 /** How long a connection that was refused stays open for the caller to read why, in ms. */
 const lingering = 1000;
 
+interface Exchange {
+  readonly request: IncomingMessage;
+  readonly answer: ServerResponse;
+}
+
 /**
  * Connections that cannot be read on: what came is no HTTP, came too slowly, or is a body nobody
  * wants. Each is told why and closed; the rest of what it sends is never read.
  */
 export class BrokenConnections {
-  private readonly answers = new WeakMap<Duplex, ServerResponse>();
+  private readonly exchanges = new WeakMap<Duplex, Exchange>();
   private readonly told = new WeakSet<Duplex>();
 
   /** Remembers what is being answered, so that no refusal lands in the middle of it. */
-  watch(request: FastifyRequest, reply: FastifyReply): void {
-    this.answers.set(request.raw.socket, reply.raw);
+  watch(request: IncomingMessage, answer: ServerResponse): void {
+    this.exchanges.set(request.socket, { request, answer });
+  }
+
+  /** Tells a connection what the parser of requests found wrong with it. */
+  refuseBroken(error: NodeJS.ErrnoException, socket: Duplex): void {
+    const inBody = this.exchanges.get(socket)?.request.complete === false;
+    this.refuse(connectionProblem(error, inBody), socket);
   }
 
   /** Tells a connection why it is closed, where nothing else is being written on it. */
   refuse(problem: ServiceProblem, socket: Duplex): void {
     if (this.told.has(socket)) return;
     this.told.add(socket);
-    const answer = this.answers.get(socket);
+    const answer = this.exchanges.get(socket)?.answer;
     const begun = answer?.headersSent === true && !answer.writableFinished;
     if (begun || socket.destroyed || !socket.writable) {
       socket.destroy();
@@ -64,29 +75,28 @@ export function leaveBodyUnread({ raw }: FastifyRequest, reply: FastifyReply): v
   socket.destroySoon = () => endSlowly(socket);
 }
 
-/** What the parser of requests reports of a connection. */
-export function connectionProblem(error: NodeJS.ErrnoException): ServiceProblem {
+function connectionProblem(error: NodeJS.ErrnoException, inBody: boolean): ServiceProblem {
+  const { code = '' } = error;
   const because = { cause: error };
-  switch (error.code) {
-    case 'ERR_HTTP_REQUEST_TIMEOUT':
-      return new ServiceProblem('BODY_TOO_SLOW', 'the request took too long to arrive', because);
-    case 'HPE_HEADER_OVERFLOW':
-      return new ServiceProblem('HEADERS_TOO_LARGE', 'address and headers: too long', because);
-    case 'HPE_INVALID_CONTENT_LENGTH':
-    case 'HPE_UNEXPECTED_CONTENT_LENGTH':
-    case 'HPE_INVALID_TRANSFER_ENCODING':
-    case 'HPE_INVALID_CHUNK_SIZE':
-    case 'HPE_CHUNK_EXTENSIONS_OVERFLOW':
-    case 'HPE_INVALID_EOF_STATE':
-      return new ServiceProblem(
-        'BODY_INVALID',
-        `the body cannot be taken apart: ${words(error)}`,
-        because,
-      );
-    default:
-      return new ServiceProblem('REQUEST_INVALID', `this is no HTTP/1.1: ${words(error)}`, because);
+  if (code === 'ERR_HTTP_REQUEST_TIMEOUT') {
+    return new ServiceProblem('BODY_TOO_SLOW', 'the request took too long to arrive', because);
   }
+  if (code === 'HPE_HEADER_OVERFLOW') {
+    return new ServiceProblem('HEADERS_TOO_LARGE', 'address and headers are too long', because);
+  }
+  if (inBody || ofFraming.includes(code)) {
+    const detail = `the body cannot be taken apart: ${words(error)}`;
+    return new ServiceProblem('BODY_INVALID', detail, because);
+  }
+  return new ServiceProblem('REQUEST_INVALID', `this is no HTTP/1.1: ${words(error)}`, because);
 }
+
+/** What is wrong with how a body is announced. */
+const ofFraming: readonly string[] = [
+  'HPE_INVALID_CONTENT_LENGTH',
+  'HPE_UNEXPECTED_CONTENT_LENGTH',
+  'HPE_INVALID_TRANSFER_ENCODING',
+];
 
 function words(error: Error & { readonly reason?: unknown }): string {
   return typeof error.reason === 'string' ? error.reason : 'it cannot be read';

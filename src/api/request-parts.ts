@@ -22,7 +22,9 @@ const mostInWords = 3;
 /** Judges each part of a request by its schema, and refuses in the words of the contract. */
 export const judgePart: FastifySchemaCompiler<z.ZodType> =
   ({ schema, httpPart = 'body' }) =>
-  (written: unknown) => {
+  (found: unknown) => {
+    // A body that is absent is handed over as null.
+    const written = httpPart === 'body' ? (found ?? undefined) : found;
     const read = readMessage(schema, written);
     if (read.ok) return { value: read.message };
     if (httpPart === 'params') return { error: unknownName(read) };

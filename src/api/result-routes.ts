@@ -36,7 +36,9 @@ export function resultRoutes(app: Api, { service }: Skin): void {
         operationId: 'getAlternative',
         tags,
         summary: 'Get one alternative with its responses',
-        description: "The alternative's own document; `present` gives that of today's settings.",
+        description:
+          "The alternative's own document; `present` gives that of today's settings, `B01` and on those " +
+          'of the published rules, in the order of the front.',
         params: alternativePath,
         querystring: noQuery,
         response: {
