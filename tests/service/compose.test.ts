@@ -200,6 +200,13 @@ describe('the program', () => {
     expect(meant.filter((word) => !said.has(word))).toEqual([]);
   });
 
+  it('is given longer to stop than its worker takes to finish tasks', async () => {
+    const { stdout } = await heddle(['worker', '--help']);
+    const drain = Number(/--drain[^(]*\(default:\s+(\d+)/.exec(stdout)?.[1]);
+    const grace = Number(/^(\d+)s$/.exec(String(serviceOf('worker')['stop_grace_period']))?.[1]);
+    expect(grace).toBeGreaterThan(drain);
+  });
+
   it('is asked for its health where it serves', () => {
     const { command, healthcheck } = serviceOf('api');
     expect(command?.slice(-2)).toEqual(['--port', '8080']);
