@@ -77,7 +77,8 @@ export async function buildApi(options: ApiOptions): Promise<FastifyInstance> {
   app.setErrorHandler(answerError);
   takeConnections(app, connections);
   await app.register(helmet, securityHeaders);
-  guardRequests(app, open, options.allowedHosts ?? []);
+  const allowedHosts = (options.allowedHosts ?? []).map((name) => name.toLowerCase());
+  guardRequests(app, open, allowedHosts);
   finishAnswers(app, open, Math.max(times.reading, 2 * times.heartbeat));
   endWithServer(app, open, times.closing);
   readBodies(app);

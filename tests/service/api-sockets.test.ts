@@ -350,3 +350,44 @@ describe('a caller that leaves', () => {
     await expectServing(api);
   });
 });
+
+describe('a name that was made to point here', () => {
+  it('is not answered for', async () => {
+    const api = await listeningApi();
+    const text = 'GET /api/jobs HTTP/1.1\r\nHost: rebound.example\r\nConnection: close\r\n\r\n';
+    expect(problemOf(await answerTo(api, text)).code).toBe('HOST_REFUSED');
+  });
+});
+
+describe('an answer nobody reads', () => {
+  it('is not kept for ever: the connection is cut', async () => {
+    const api = await listeningApi({ times: { reading: 100, heartbeat: 50 } });
+    const padded = Buffer.concat([
+      jobBytes,
+      Buffer.alloc(mostDocumentBytes - jobBytes.length, ' '),
+    ]);
+    const { job } = await api.service.submit(padded);
+    const accepted = once(api.app.server, 'connection');
+    const socket = api.open();
+    socket.pause();
+    const [served] = await accepted;
+    const cut = once(served, 'close');
+    socket.write(head(`GET /api/jobs/${job.id}/document HTTP/1.1`));
+    await cut;
+    await expectServing(api);
+  });
+});
+
+describe('a document', () => {
+  it('of exactly the largest size is taken, and one byte more is not', async () => {
+    const api = await listeningApi();
+    const submit = (bytes: number) =>
+      fetch(`${api.address}/api/jobs`, {
+        method: 'POST',
+        headers: { 'content-type': 'application/json' },
+        body: Buffer.concat([jobBytes, Buffer.alloc(bytes - jobBytes.length, ' ')]),
+      });
+    expect((await submit(mostDocumentBytes)).status).toBe(202);
+    expect((await submit(mostDocumentBytes + 1)).status).toBe(413);
+  });
+});
