@@ -6,6 +6,15 @@ import { dropEmptyVariables, wantsJson } from './options.js';
 import { endQuietlyWithoutReader, paperOf, writeJson } from './output.js';
 import { printable } from './printable.js';
 import { complaintLine, type ExitCode, exitCode, Refusal } from './refusal.js';
+import { cancelCommand } from './remote/cancel-command.js';
+import { approveCommand, proposeCommand, rejectCommand } from './remote/change-commands.js';
+import { frontCommand } from './remote/front-command.js';
+import { jobsCommand } from './remote/jobs-command.js';
+import { sheetCommand } from './remote/sheet-command.js';
+import { submitCommand } from './remote/submit-command.js';
+import { watchCommand } from './remote/watch-command.js';
+import { serveCommand } from './serving/serve-command.js';
+import { workerCommand } from './serving/worker-command.js';
 import { solveCommand } from './solve-command.js';
 
 /**
@@ -33,8 +42,8 @@ function build(finish: (code: ExitCode) => void, usage: string[]): Command {
   const program = new Command('heddle')
     .description('Retunes all the PID loops of one process unit together.')
     .addHelpText('after', helpClosing);
-  for (const command of [checkCommand, evaluateCommand, solveCommand]) {
-    program.addCommand(command(finish));
+  for (const [group, commands] of Object.entries(commandGroups)) {
+    for (const command of commands) program.addCommand(command(finish).helpGroup(group));
   }
   const { width } = paperOf(process.stdout);
   for (const command of [program, ...program.commands]) {
@@ -50,6 +59,13 @@ function build(finish: (code: ExitCode) => void, usage: string[]): Command {
   }
   return program.helpCommand(false);
 }
+
+const commandGroups = {
+  'Here, in this process:': [checkCommand, evaluateCommand, solveCommand],
+  'As a service:': [serveCommand, workerCommand],
+  'Jobs at a server:': [submitCommand, watchCommand, jobsCommand, frontCommand, cancelCommand],
+  'Changes at a server:': [proposeCommand, approveCommand, rejectCommand, sheetCommand],
+} as const;
 
 const helpClosing = `
 Ends with 0 when done, 1 when it failed, 2 for a bad document or a command not
@@ -98,7 +114,10 @@ function tell({ complaints, subject, more, exitCode: code }: Refusal, json: bool
 /** What the reader of options says, in the shape of every other complaint. */
 function usageRefusal(error: CommanderError): Refusal {
   const text = error.code === 'commander.help' ? 'no command is named' : error.message;
-  const [problem = '', allowed] = text.replace(/^error: /, '').split('. Allowed: ');
+  const [problem = '', allowed] = text
+    .replace(/^error: /, '')
+    .replace(/Allowed choices are (.*)\.$/, 'Allowed: $1')
+    .split('. Allowed: ');
   return new Refusal(exitCode.refused, [
     {
       code: 'OPTION_INVALID',

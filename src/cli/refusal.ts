@@ -1,6 +1,6 @@
 import type { ErrorCode } from '../base/index.js';
 import type { ThreadFailureCode } from '../compute/index.js';
-import { describeFault, type Fault, type Refused } from '../contract/index.js';
+import { describeFault, type Fault, type ProblemCode, type Refused } from '../contract/index.js';
 import { printable } from './printable.js';
 
 /** How a command ends. */
@@ -20,7 +20,14 @@ export type ExitCode = (typeof exitCode)[keyof typeof exitCode];
 
 /** Something wrong with a document, a file or an option: the same shape for all of them. */
 export type Complaint = Omit<Fault, 'code'> & {
-  readonly code: Fault['code'] | ErrorCode | ThreadFailureCode | 'UNFORESEEN';
+  readonly code:
+    | Fault['code']
+    | ErrorCode
+    | ThreadFailureCode
+    | ProblemCode
+    | 'SERVER_UNREACHABLE'
+    | 'SERVER_UNKNOWN'
+    | 'UNFORESEEN';
 };
 
 /** An end that is nobody's bug: what is wrong, each thing on a line, and the exit code it means. */
@@ -61,9 +68,10 @@ export function refuseOption(
   return new Refusal(exitCode.refused, [complaint]);
 }
 
-/** A complaint on one line: path, what is wrong, what was found where that says more, what is allowed. */
+/** A complaint on one line: path, what is wrong, what was found and what is allowed where that says more. */
 export function complaintLine(complaint: Complaint): string {
   const { path, value, problem, allowed } = complaint;
+  if (allowed === '') return `${path}: ${problem}`;
   if (value === '') return `${path}: ${problem}; allowed: ${allowed}`;
   return describeFault(complaint as Fault);
 }

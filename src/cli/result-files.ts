@@ -68,25 +68,29 @@ async function tryOutFolderOf(path: string): Promise<void> {
  * Writes a file in one step; a pipe or device is written to as it is.
  * @throws {Refusal} naming the option, the path and the reason
  */
-export async function writeWhole(option: string, path: string, text: string): Promise<void> {
+export async function writeWhole(
+  option: string,
+  path: string,
+  content: string | Uint8Array,
+): Promise<void> {
   try {
     const about = await statOf(path);
     if (about !== null && !about.isFile()) {
-      await writeFile(path, text);
+      await writeFile(path, content);
       return;
     }
-    await moveIntoPlace(await whereTo(path), text);
+    await moveIntoPlace(await whereTo(path), content);
   } catch (error) {
     throw error instanceof Refusal ? error : unwritable(option, path, error);
   }
 }
 
-async function moveIntoPlace(target: string, text: string): Promise<void> {
+async function moveIntoPlace(target: string, content: string | Uint8Array): Promise<void> {
   const draft = neighbourOf(target);
   try {
     const handle = await open(draft, 'wx');
     try {
-      await handle.writeFile(text);
+      await handle.writeFile(content);
       await handle.sync();
     } finally {
       await handle.close();
@@ -105,13 +109,16 @@ export async function isSameFile(a: string, b: string): Promise<boolean> {
   return first.dev === second.dev && first.ino === second.ino;
 }
 
-/** Documents of alternatives in a folder that are not among those just written. */
-export async function leftOverDocuments(
-  folder: string,
-  written: ReadonlySet<string>,
-): Promise<string[]> {
-  const names = await readdir(folder);
-  return names.filter((name) => /^A\d{2,3}\.json$/.test(name) && !written.has(name)).sort();
+/** Notes that a folder also holds documents of alternatives that are not among those just written. */
+export async function tellLeftOver(folder: string, written: ReadonlySet<string>): Promise<void> {
+  const others = (await readdir(folder))
+    .filter((name) => /^A\d{2,3}\.json$/.test(name) && !written.has(name))
+    .sort();
+  if (others.length === 0) return;
+  const names = others.length > 3 ? `${others.slice(0, 3).join(', ')}, ...` : others.join(', ');
+  process.stderr.write(
+    `heddle: ${printable(folder)} also holds documents of an earlier front: ${names}\n`,
+  );
 }
 
 /** The file itself where the path is a link to it. */

@@ -10,13 +10,7 @@ import { paperOf, writeJson } from './output.js';
 import { printable } from './printable.js';
 import { standardInput } from './read-document.js';
 import { type ExitCode, exitCode, refuseOption } from './refusal.js';
-import {
-  isSameFile,
-  leftOverDocuments,
-  tryOutFile,
-  tryOutFolder,
-  writeWhole,
-} from './result-files.js';
+import { isSameFile, tellLeftOver, tryOutFile, tryOutFolder, writeWhole } from './result-files.js';
 import { type JobRun, runJob } from './run-job.js';
 import { stageDisplay } from './stage-display.js';
 import { costLine, frontPage } from './tables/front-page.js';
@@ -105,13 +99,7 @@ async function writeDetails(folder: string, details: readonly AlternativeDetail[
     await writeWhole('--responses', join(folder, name), canonicalText(detail));
     written.add(name);
   }
-  const others = await leftOverDocuments(folder, written);
-  if (others.length > 0) {
-    const names = others.length > 3 ? `${others.slice(0, 3).join(', ')}, ...` : others.join(', ');
-    process.stderr.write(
-      `heddle: ${printable(folder)} also holds documents of an earlier front: ${names}\n`,
-    );
-  }
+  await tellLeftOver(folder, written);
 }
 
 function printResult(

@@ -156,11 +156,12 @@ function infeasiblePart(infeasible: Infeasibility, job: JobDocument, paper: Pape
   return parts.join('\n\n');
 }
 
-/** What a job has spent, in a line. */
-export function costLine(cost: Cost, threads: number): string {
+/** What a job has spent, in a line; on how many threads where that is known. */
+export function costLine(cost: Cost, threads?: number): string {
   const evaluations = cost.evaluations.toLocaleString('en-GB').replaceAll(',', ' ');
   return (
-    `${evaluations} tuning sets evaluated in ${duration(cost.wallSeconds)} on ` +
-    `${counted(threads, 'thread')}, ${duration(cost.cpuSeconds)} of processor time`
+    `${evaluations} tuning sets evaluated in ${duration(cost.wallSeconds)}` +
+    `${threads === undefined ? '' : ` on ${counted(threads, 'thread')}`}, ` +
+    `${duration(cost.cpuSeconds)} of processor time`
   );
 }
