@@ -18,6 +18,8 @@ interface Options {
   /** Seconds after which the work of a lost worker goes to another. */
   readonly lock?: number;
   readonly environment?: NodeJS.ProcessEnv;
+  /** The data folder of an embedded one; one of its own where not given. */
+  readonly folder?: string;
 }
 
 /** A whole installation of the built program in one of its sizes, each part a process of its own. */
@@ -25,11 +27,11 @@ export class Installation {
   readonly workers: KeptProcess[] = [];
   server!: KeptProcess;
   client!: Client;
-  private readonly scratch = new Scratch();
-
   private constructor(
     readonly size: Size,
-    private readonly options: Required<Options>,
+    private readonly options: { readonly lock: number; readonly environment: NodeJS.ProcessEnv },
+    readonly folder: string,
+    private readonly scratch: Scratch,
     private readonly addresses: NodeJS.ProcessEnv,
     readonly redis: RedisServer | undefined,
   ) {}
@@ -40,7 +42,10 @@ export class Installation {
     const addresses: NodeJS.ProcessEnv = {};
     if (size !== 'embedded') addresses['DATABASE_URL'] = await createDatabase();
     if (redis !== undefined) addresses['REDIS_URL'] = redis.url;
-    const installation = new Installation(size, { workers, lock, environment }, addresses, redis);
+    const scratch = new Scratch();
+    const folder = options.folder ?? join(scratch.folder, 'data');
+    const settings = { lock, environment };
+    const installation = new Installation(size, settings, folder, scratch, addresses, redis);
     try {
       await installation.startServer();
       if (size !== 'embedded') {
@@ -51,11 +56,6 @@ export class Installation {
       await installation.stop();
       throw error;
     }
-  }
-
-  /** The data folder of an embedded installation. */
-  get folder(): string {
-    return join(this.scratch.folder, 'data');
   }
 
   async startServer(): Promise<void> {

@@ -3,6 +3,7 @@ import { Command } from 'commander';
 import { listenForInterruption } from '../interruption.js';
 import { threadsOption } from '../options.js';
 import { type ExitCode, exitCode } from '../refusal.js';
+import { addressHelp } from './address-help.js';
 import { placeOf } from './place.js';
 import {
   allowedHostsOption,
@@ -38,6 +39,7 @@ export function serveCommand(finish: (code: ExitCode) => void): Command {
     .addOption(threadsOption())
     .addOption(lockOption())
     .addOption(floorOption())
+    .addHelpText('after', addressHelp)
     .action(async (options: Options) => {
       finish(await serve(options));
     });

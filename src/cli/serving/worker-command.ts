@@ -5,6 +5,7 @@ import { listenForInterruption } from '../interruption.js';
 import { threadsOption } from '../options.js';
 import { type ExitCode, exitCode } from '../refusal.js';
 import { threadEntry } from '../thread-entry.js';
+import { addressHelp } from './address-help.js';
 import { servedPlaceOf } from './place.js';
 import { drainOption, lockOption, sweepSettings } from './serving-options.js';
 import { refusingCoded } from './serving-refusals.js';
@@ -22,6 +23,7 @@ export function workerCommand(finish: (code: ExitCode) => void): Command {
     .addOption(threadsOption())
     .addOption(lockOption())
     .addOption(drainOption())
+    .addHelpText('after', addressHelp)
     .action(async (options: Options) => {
       finish(await work(options));
     });
