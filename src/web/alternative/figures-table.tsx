@@ -28,7 +28,7 @@ export function FiguresTable({ loop, rows, name }: FiguresTableProps) {
                 {name}
               </th>
               <th scope="col" rowSpan={2}>
-                Worst
+                Worst is
               </th>
               <th scope="col" rowSpan={2} class="number">
                 Limit

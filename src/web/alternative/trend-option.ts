@@ -1,4 +1,4 @@
-import { extent, type Range, rounded, widened } from '../parts/axis-range.js';
+import { extent, type Range, roundWithin, scaleFor, widened } from '../parts/axis-range.js';
 import type { Ink } from '../parts/ink.js';
 import type { PlotOption } from '../parts/plot.js';
 import { axisStyle, tooltipStyle } from '../parts/plot-style.js';
@@ -25,7 +25,9 @@ interface TrendDrawing {
 
 /** A few lines over time; the tuning chosen is solid, today's dashed, the setpoint thin and dotted. */
 export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDrawing): PlotOption {
-  const [low, high] = heightOf(lines, span, least);
+  const height = heightOf(lines, span, least);
+  const width = scaleFor([0, span], 5);
+  const marked = roundWithin(height, 4);
   const strokes = {
     chosen: { color: ink.chosen, width: 2, type: 'solid' as const },
     today: { color: ink.ink, width: 1.5, type: [5, 4] },
@@ -35,7 +37,7 @@ export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDr
   return {
     animation: false,
     grid: { left: 58, right: 14, top: 8, bottom: 24 },
-    textStyle: { fontFamily: 'inherit', color: ink.ink },
+    textStyle: { fontFamily: ink.font, color: ink.ink },
     tooltip: {
       ...tooltipStyle(ink),
       trigger: 'axis',
@@ -48,16 +50,17 @@ export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDr
       type: 'value',
       min: 0,
       max: span,
-      splitNumber: 4,
+      interval: width.step,
       splitLine: { show: false },
+      axisLine: { ...base.axisLine, onZero: false },
     },
     yAxis: {
       ...base,
       type: 'value',
-      min: low,
-      max: high,
-      splitNumber: 3,
-      axisLabel: { ...base.axisLabel, formatter: (value: number) => figure(value, 2) },
+      min: height[0],
+      max: height[1],
+      axisTick: { ...base.axisTick, customValues: marked },
+      axisLabel: { ...base.axisLabel, customValues: marked },
     },
     series: lines.map((line) => ({
       type: 'line',
@@ -78,7 +81,7 @@ function heightOf(lines: readonly TrendLine[], span: number, least: number): Ran
   const values = lines.flatMap((line) => shownPart(line, span).map(([, value]) => value));
   const [low, high] = extent([0, ...values]);
   const lack = Math.max(0, least - (high - low)) / 2;
-  return rounded(widened([low - lack, high + lack], 0.05));
+  return widened([low - lack, high + lack], 0.08);
 }
 
 /** What of a line lies within the time shown, and one sample more, so that it reaches the edge. */

@@ -87,10 +87,12 @@ export function FrontChart({ points, chosen, reference, onChoose }: FrontChartPr
       </div>
       <figcaption>
         <MarkKey />
-        <p>
-          Click a shuttle, or take the arrow keys along the front. The thread above a shuttle ends
-          at its speed on the worst model.
-        </p>
+        {alternatives.length > 0 && (
+          <p>
+            Click a shuttle, or take the arrow keys along the front. The thread above a shuttle ends
+            at its speed on the worst model.
+          </p>
+        )}
         <Beyond points={window.beyond} words="outside the drawing" />
         {window.unstable.length > 0 && (
           <p>Not drawn, for unstable: {window.unstable.map(({ name }) => name).join(', ')}.</p>

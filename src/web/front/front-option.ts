@@ -1,9 +1,10 @@
+import type { Scale } from '../parts/axis-range.js';
 import type { Ink } from '../parts/ink.js';
 import type { PlotOption } from '../parts/plot.js';
 import { axisStyle, tooltipStyle } from '../parts/plot-style.js';
 import { figure } from '../text/figures.js';
+import { marks, type Series } from './front-marks.js';
 import type { FrontWindow, PlacedPoint } from './front-points.js';
-import { markShapes } from './mark-shapes.js';
 
 interface FrontDrawing {
   readonly window: FrontWindow;
@@ -13,65 +14,48 @@ interface FrontDrawing {
   readonly ink: Ink;
 }
 
-type Series = Extract<NonNullable<PlotOption['series']>, readonly unknown[]>[number];
-
 /** The plane of speed and robustness as a drawing; the chosen point has a thread to either axis. */
 export function frontOption({ window, chosen, reference, ink }: FrontDrawing): PlotOption {
   const ofKind = (kind: PlacedPoint['kind']): PlacedPoint[] =>
     window.inside.filter((point) => point.kind === kind && point.key !== chosen);
   const picked = window.inside.filter((point) => point.key === chosen);
-  const outlined = { color: 'transparent', borderWidth: 2 };
   return {
     animation: false,
-    grid: { left: 62, right: 22, top: 18, bottom: 52 },
-    textStyle: { fontFamily: 'inherit', color: ink.ink },
+    grid: { left: 66, right: 26, top: 18, bottom: 56 },
+    textStyle: { fontFamily: ink.font, color: ink.ink },
     tooltip: { ...tooltipStyle(ink), trigger: 'item', formatter: tooltipText },
     xAxis: {
       ...axisStyle(ink),
       type: 'value',
       name: 'Robustness: worst peak sensitivity Ms (less is more robust)',
-      nameGap: 30,
-      min: window.robustness[0],
-      max: window.robustness[1],
+      nameGap: 34,
+      ...marksOf(window.robustness),
     },
     yAxis: {
       ...axisStyle(ink),
       type: 'value',
       name: `Speed: E relative to ${reference} (less is faster)`,
-      nameGap: 44,
-      min: window.speed[0],
-      max: window.speed[1],
+      nameGap: 46,
+      ...marksOf(window.speed),
     },
     series: [
       reaches(
         window.inside.filter(({ kind }) => kind === 'alternative'),
         ink,
       ),
+      marks({ shape: 'rule', points: ofKind('rule'), colour: ink.rule, window, ink }),
+      marks({ shape: 'present', points: ofKind('present'), colour: ink.ink, window, ink }),
+      marks({ shape: 'alternative', points: ofKind('alternative'), colour: ink.weft, window, ink }),
       {
-        ...marks('rule', ofKind('rule'), ink.rule, [13, 13], ink),
-        itemStyle: { ...outlined, borderColor: ink.rule },
-      },
-      {
-        ...marks('present', ofKind('present'), ink.ink, [20, 22], ink),
-        itemStyle: { ...outlined, borderColor: ink.ink },
-      },
-      {
-        ...marks('alternative', ofKind('alternative'), ink.weft, [17, 10], ink),
-        itemStyle: { color: ink.weft, borderColor: ink.paper, borderWidth: 1 },
-        z: 4,
-      },
-      {
-        ...marks('alternative', picked, ink.chosen, [26, 16], ink),
-        itemStyle: { color: ink.chosen, borderColor: ink.paper, borderWidth: 1.5 },
-        z: 6,
+        ...marks({ shape: 'chosen', points: picked, colour: ink.chosen, window, ink }),
         markLine: {
           silent: true,
           symbol: 'none',
           label: { show: false },
           lineStyle: { color: ink.chosen, width: 1.5, type: 'solid' },
           data: picked.flatMap(({ robustness, speed }) => [
-            [{ coord: [robustness, window.speed[0]] }, { coord: [robustness, speed] }],
-            [{ coord: [window.robustness[0], speed] }, { coord: [robustness, speed] }],
+            [{ coord: [robustness, window.speed.low] }, { coord: [robustness, speed] }],
+            [{ coord: [window.robustness.low, speed] }, { coord: [robustness, speed] }],
           ]),
         },
       },
@@ -94,37 +78,7 @@ function reaches(points: readonly PlacedPoint[], ink: Ink): Series {
   };
 }
 
-function marks(
-  shape: keyof typeof markShapes,
-  points: readonly PlacedPoint[],
-  colour: string,
-  size: [number, number],
-  ink: Ink,
-): Extract<Series, { type?: 'scatter' }> {
-  return {
-    type: 'scatter',
-    symbol: `path://${markShapes[shape]}`,
-    symbolSize: size,
-    cursor: shape === 'alternative' ? 'pointer' : 'default',
-    emphasis: { scale: 1.25 },
-    label: {
-      show: true,
-      position: shape === 'alternative' ? 'bottom' : 'right',
-      distance: 5,
-      color: colour,
-      textBorderColor: ink.paper,
-      textBorderWidth: 3,
-      fontSize: 12,
-      formatter: '{b}',
-    },
-    labelLayout: { hideOverlap: true, moveOverlap: 'shiftY' },
-    data: points.map((point) => ({
-      name: point.name,
-      value: [point.robustness, point.speed],
-      worstSpeed: point.worstSpeed,
-    })),
-  };
-}
+const marksOf = ({ low, high, step }: Scale) => ({ min: low, max: high, interval: step });
 
 function tooltipText(item: unknown): string {
   const { name, value, data } = item as {

@@ -1,5 +1,5 @@
 import type { FrontDocument, ScoredSettings } from '../../contract/index.js';
-import { extent, type Range, rounded, widened } from '../parts/axis-range.js';
+import { extent, type Range, type Scale, scaleFor, widened } from '../parts/axis-range.js';
 
 /** One tuning set as the front shows it. */
 export interface FrontPoint {
@@ -70,8 +70,8 @@ const isPlaced = (point: FrontPoint): point is PlacedPoint =>
 
 /** The part of the plane that is drawn, and what lies within and beyond it. */
 export interface FrontWindow {
-  readonly speed: Range;
-  readonly robustness: Range;
+  readonly speed: Scale;
+  readonly robustness: Scale;
   readonly inside: readonly PlacedPoint[];
   /** Stable, but too far from the front to be drawn without squeezing it. */
   readonly beyond: readonly FrontPoint[];
@@ -85,7 +85,7 @@ const reach = 0.6;
 export function frontWindow(points: readonly FrontPoint[]): FrontWindow {
   const placed = points.filter(isPlaced);
   const leading = placed.filter(({ kind }) => kind !== 'rule');
-  const core = leading.length > 1 ? leading : placed;
+  const core = leading.length > 1 ? leading : sober(placed);
   const speeds = core.flatMap((point) => [point.speed, point.worstSpeed ?? point.speed]);
   const speed = extent(speeds);
   const robustness = extent(core.map((point) => point.robustness));
@@ -102,10 +102,17 @@ export function frontWindow(points: readonly FrontPoint[]): FrontWindow {
   };
 }
 
+/** Without a front to look at: all but those that are far less robust than the middle one. */
+function sober(placed: readonly PlacedPoint[]): readonly PlacedPoint[] {
+  const ordered = placed.map(({ robustness }) => robustness).sort((a, b) => a - b);
+  const middle = ordered[Math.floor(ordered.length / 2)] ?? 0;
+  return placed.filter(({ robustness }) => robustness <= 2 * middle);
+}
+
 const within = (value: number, [low, high]: Range): boolean => value >= low && value <= high;
 
-/** The range of an axis: a little more than what is on it; no figure here is below zero. */
-function drawn(values: readonly number[]): Range {
-  const [low, high] = rounded(widened(extent(values), 0.06));
-  return [Math.max(0, low), high];
+/** The scale of an axis: a little more than what is on it; no figure here is below zero. */
+function drawn(values: readonly number[]): Scale {
+  const scale = scaleFor(widened(extent(values), 0.06), 6);
+  return { ...scale, low: Math.max(0, scale.low) };
 }

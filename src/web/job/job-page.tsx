@@ -67,22 +67,6 @@ function JobHead({ job }: { readonly job: JobRecord }) {
           <dd>{job.loops}</dd>
         </div>
         <div>
-          <dt>Started</dt>
-          <dd>
-            <Moment at={job.startedAt} />
-          </dd>
-        </div>
-        <div>
-          <dt>Ended</dt>
-          <dd>
-            <Moment at={job.endedAt} />
-          </dd>
-        </div>
-        <div>
-          <dt>Spent</dt>
-          <dd>{spent(job)}</dd>
-        </div>
-        <div>
           <dt>Documents</dt>
           <dd>
             <a href={addresses.document(job.id)} download={`${job.id}.json`}>
@@ -98,6 +82,22 @@ function JobHead({ job }: { readonly job: JobRecord }) {
             )}
           </dd>
         </div>
+        <div>
+          <dt>Started</dt>
+          <dd>
+            <Moment at={job.startedAt} />
+          </dd>
+        </div>
+        <div>
+          <dt>Ended</dt>
+          <dd>
+            <Moment at={job.endedAt} />
+          </dd>
+        </div>
+        <div>
+          <dt>Spent</dt>
+          <dd>{spent(job)}</dd>
+        </div>
       </dl>
     </header>
   );
@@ -106,8 +106,7 @@ function JobHead({ job }: { readonly job: JobRecord }) {
 function spent({ cost, startedAt, endedAt }: JobRecord): string {
   if (startedAt === null) return 'nothing yet';
   const wall = duration(secondsBetween(startedAt, endedAt));
-  const evaluated = `${count(cost.evaluations)} tunings evaluated`;
-  return `${wall}, ${evaluated}, ${duration(cost.cpuSeconds)} of processor time`;
+  return `${wall}, ${count(cost.evaluations)} tunings, ${duration(cost.cpuSeconds)} of processor time`;
 }
 
 interface JobBodyProps {

@@ -93,7 +93,7 @@ export function HandIn() {
           </p>
         </div>
         <div class="field">
-          <label for="job-text">or as text</label>
+          <label for="job-text">Or the document as text</label>
           <textarea
             id="job-text"
             rows={10}

@@ -3,12 +3,16 @@ import { useEffect, useState } from 'preact/hooks';
 const names = ['ink', 'quiet', 'line', 'grid', 'paper', 'weft', 'chosen', 'rule'] as const;
 
 /** Colours that charts are drawn in: those of the style sheet, light or dark as the reader has it. */
-export type Ink = Readonly<Record<(typeof names)[number], string>>;
+export type Ink = Readonly<Record<(typeof names)[number], string>> & {
+  /** The family of the page's text: a canvas inherits none. */
+  readonly font: string;
+};
 
 function readInk(): Ink {
   const style = getComputedStyle(document.documentElement);
   const colour = (name: string): string => style.getPropertyValue(`--${name}`).trim();
-  return Object.fromEntries(names.map((name) => [name, colour(name)])) as Ink;
+  const colours = Object.fromEntries(names.map((name) => [name, colour(name)]));
+  return { ...colours, font: style.fontFamily } as Ink;
 }
 
 /** The colours of now; read again when the reader goes from light to dark. */

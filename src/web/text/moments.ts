@@ -1,17 +1,18 @@
 import { figure } from './figures.js';
 
-const instant = new Intl.DateTimeFormat('en-GB', {
-  day: '2-digit',
-  month: 'short',
-  year: 'numeric',
+const day = new Intl.DateTimeFormat('en-GB', { day: 'numeric', month: 'short', year: 'numeric' });
+const clock = new Intl.DateTimeFormat('en-GB', {
   hour: '2-digit',
   minute: '2-digit',
   second: '2-digit',
   timeZoneName: 'short',
 });
 
-/** A moment of the record, kept in UTC, in the reader's own zone, which is named. */
-export const momentInWords = (utc: string): string => instant.format(new Date(utc));
+/** A moment of the record, kept in UTC: day and time in the reader's own zone, which is named. */
+export function momentInWords(utc: string): { readonly day: string; readonly time: string } {
+  const at = new Date(utc);
+  return { day: day.format(at), time: clock.format(at) };
+}
 
 /** Seconds as people say them: 8.20 s, 2 min 30 s, 1 h 5 min. */
 export function duration(seconds: number): string {
