@@ -50,7 +50,7 @@ function build(finish: (code: ExitCode) => void, usage: string[]): Command {
     command
       .exitOverride()
       .helpOption('-h, --help', 'show this')
-      .configureHelp({ showGlobalOptions: false })
+      .configureHelp({ showGlobalOptions: false, subcommandTerm: termOf })
       .configureOutput({
         writeErr: (text) => usage.push(text),
         getOutHelpWidth: () => width,
@@ -59,6 +59,10 @@ function build(finish: (code: ExitCode) => void, usage: string[]): Command {
   }
   return program.helpCommand(false);
 }
+
+/** A command as it is listed: every one of them takes options. */
+const termOf = (command: Command): string =>
+  [command.name(), ...command.registeredArguments.map((taken) => `<${taken.name()}>`)].join(' ');
 
 const commandGroups = {
   'Here, in this process:': [checkCommand, evaluateCommand, solveCommand],

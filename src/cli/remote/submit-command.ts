@@ -1,7 +1,7 @@
 import { randomUUID } from 'node:crypto';
 import { Command } from 'commander';
 import type { AcceptedJob } from '../../contract/index.js';
-import { jsonOption, option, wantsJson } from '../options.js';
+import { jsonOption, wantsJson } from '../options.js';
 import { paperOf, writeJson } from '../output.js';
 import { printable } from '../printable.js';
 import { readDocument } from '../read-document.js';
@@ -27,9 +27,7 @@ export function submitCommand(finish: (code: ExitCode) => void): Command {
     .description('hand in a job document; the server computes it')
     .argument('<file>', 'job document, - for standard input')
     .addOption(serverOption())
-    .addOption(
-      option('--key <text>', 'the same key hands in the same job once (default: a new one)'),
-    )
+    .option('--key <text>', 'the same key and document make one job (default: a new key)')
     .option('--watch', 'then follow the job to its end')
     .addOption(patienceOption())
     .addOption(jsonOption())
