@@ -29,7 +29,6 @@ import { newJobId } from './identifiers.js';
 import { jobView } from './job-views.js';
 import type { Ledger } from './ledger.js';
 import { ServiceProblem } from './problem.js';
-import { changesOf } from './watching.js';
 
 /** Takes jobs in, says how they stand, and hands out what they gave. */
 export class JobDesk {
@@ -75,10 +74,6 @@ export class JobDesk {
     const document = await findDocument(this.parts.database.records, id);
     if (document === undefined) throw unknownJob(id);
     return document;
-  }
-
-  watch(id: string, signal: AbortSignal): AsyncIterable<JobRecord> {
-    return changesOf(this.parts.database, id, signal, () => this.job(id));
   }
 
   /** Cancels a job that has not ended; workers hear of it, and stop the threads that work on it. */

@@ -5,6 +5,7 @@ import type { ChangeDesk } from './change-desk.js';
 import type { JobDesk } from './job-desk.js';
 import { ServiceProblem } from './problem.js';
 import type { Readiness, Service } from './service.js';
+import { changesOf } from './watching.js';
 
 export interface ServiceParts {
   readonly database: Database;
@@ -29,7 +30,8 @@ export function recordService(parts: ServiceParts): Service {
     jobs: (query) => reaching(() => jobs.jobs(query)),
     job: (id) => reaching(() => jobs.job(id)),
     document: (id) => reaching(() => jobs.document(id)),
-    watch: (id, signal) => jobs.watch(id, signal),
+    watch: (id, signal) =>
+      changesOf(parts.database, id, signal, () => reaching(() => jobs.job(id))),
     cancel: (id, cancellation) => reaching(() => jobs.cancel(id, cancellation)),
     front: (id) => reaching(async () => (await jobs.front(id)).document),
     alternative: (id, alternative) => reaching(() => jobs.alternative(id, alternative)),

@@ -20,6 +20,8 @@ interface Options {
   readonly environment?: NodeJS.ProcessEnv;
   /** The data folder of an embedded one; one of its own where not given. */
   readonly folder?: string;
+  /** An empty database, where the size has one; one on the shared server where not given. */
+  readonly databaseUrl?: string;
 }
 
 /** A whole installation of the built program in one of its sizes, each part a process of its own. */
@@ -27,6 +29,7 @@ export class Installation {
   readonly workers: KeptProcess[] = [];
   server!: KeptProcess;
   client!: Client;
+
   private constructor(
     readonly size: Size,
     private readonly options: { readonly lock: number; readonly environment: NodeJS.ProcessEnv },
@@ -40,7 +43,9 @@ export class Installation {
     const { workers = 2, lock = 1, environment = {} } = options;
     const redis = size === 'PostgreSQL and Redis' ? await startRedis() : undefined;
     const addresses: NodeJS.ProcessEnv = {};
-    if (size !== 'embedded') addresses['DATABASE_URL'] = await createDatabase();
+    if (size !== 'embedded') {
+      addresses['DATABASE_URL'] = options.databaseUrl ?? (await createDatabase());
+    }
     if (redis !== undefined) addresses['REDIS_URL'] = redis.url;
     const scratch = new Scratch();
     const folder = options.folder ?? join(scratch.folder, 'data');
