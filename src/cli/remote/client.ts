@@ -19,6 +19,9 @@ import { jobEvents } from './job-events.js';
 import { jsonValue } from './json-value.js';
 import { mediaType, notHeddle } from './remote-refusals.js';
 
+/** A job handed in; `isNew` is false where its key had been seen. */
+export type HandedIn = AcceptedJob & { readonly isNew: boolean };
+
 /**
  * A Heddle server as a program asks it. Every answer is checked by its schema, documents come as the
  * bytes they are.
@@ -29,16 +32,21 @@ import { mediaType, notHeddle } from './remote-refusals.js';
 export class Client {
   constructor(readonly server: string) {}
 
-  /** Hands in a job document. The same key and document give the first job again. */
-  async submit(document: Uint8Array, key: string, name: string): Promise<AcceptedJob> {
+  /**
+   * Hands in a job document. The same key and document give the first job again.
+   * @param name  what the document is called where it has faults
+   */
+  async submit(document: Uint8Array, key: string, name: string): Promise<HandedIn> {
     const headers = { 'content-type': 'application/json', 'idempotency-key': key };
-    return this.read(acceptedJobSchema, {
+    const response = await exchange(this.server, {
       method: 'POST',
       path: 'api/jobs',
       headers,
       body: document,
       subject: name,
     });
+    const accepted = await this.readAnswer(acceptedJobSchema, 'api/jobs', response);
+    return { ...accepted, isNew: response.headers.get('idempotency-replayed') === null };
   }
 
   jobs(query: Readonly<Record<string, string>>): Promise<JobList> {
@@ -109,18 +117,29 @@ export class Client {
     schema: Schema,
     asked: Asked,
   ): Promise<z.output<Schema>> {
-    const bytes = await this.bytes(asked);
+    return this.readAnswer(schema, asked.path, await exchange(this.server, asked));
+  }
+
+  private async readAnswer<Schema extends z.ZodType>(
+    schema: Schema,
+    path: string,
+    response: Response,
+  ): Promise<z.output<Schema>> {
+    const bytes = await this.bytesOf(path, response, 'application/json');
     const read = schema.safeParse(jsonValue(bytes));
     if (read.success) return read.data;
-    const place = read.error.issues[0]?.path.join('.') || 'its answer';
-    throw notHeddle(this.server, `${asked.path} does not answer as it should (${place})`);
+    const place = read.error.issues[0]?.path.join('.') || 'the whole of it';
+    throw notHeddle(this.server, `${path} does not answer as it should (${place})`);
   }
 
   private async bytes(asked: Asked, kind = 'application/json'): Promise<Uint8Array> {
-    const response = await exchange(this.server, asked);
+    return this.bytesOf(asked.path, await exchange(this.server, asked), kind);
+  }
+
+  private async bytesOf(path: string, response: Response, kind: string): Promise<Uint8Array> {
     const found = mediaType(response);
     if (found === kind) return bodyOf(this.server, response);
     await response.body?.cancel().catch(() => undefined);
-    throw notHeddle(this.server, `${asked.path} answers with ${found || 'nothing'}`);
+    throw notHeddle(this.server, `${path} answers with ${found || 'nothing'}`);
   }
 }

@@ -1,7 +1,6 @@
-import type { AcceptedJob } from '../../contract/index.js';
 import type { DocumentBytes } from '../read-document.js';
 import { exitCode, Refusal } from '../refusal.js';
-import type { Client } from './client.js';
+import type { Client, HandedIn } from './client.js';
 import { Patience } from './patience.js';
 import { mayPass, ServerUnreachable } from './remote-refusals.js';
 
@@ -17,7 +16,7 @@ export async function handIn(
   { bytes, name }: DocumentBytes,
   key: string,
   seconds: number,
-): Promise<AcceptedJob> {
+): Promise<HandedIn> {
   const patience = new Patience(seconds);
   let arrived = false;
   for (;;) {

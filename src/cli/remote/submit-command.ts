@@ -41,8 +41,8 @@ async function submit(file: string, options: Options): Promise<ExitCode> {
   const { server, patience } = options;
   const key = keyOf(options);
   const client = new Client(server);
-  const accepted = await handIn(client, await readDocument(file), key, patience);
-  if (!json) printAccepted(accepted, server);
+  const { isNew, ...accepted } = await handIn(client, await readDocument(file), key, patience);
+  if (!json) printAccepted(accepted, isNew, server);
   else if (!options.watch) writeJson(accepted);
   if (!options.watch) return exitCode.done;
   return watchToEnd(client, accepted.job.id, { patience, json });
@@ -55,10 +55,10 @@ function keyOf({ key }: Options): string {
   throw refuseOption('--key', key, 'no such key', '1 to 200 printable ASCII characters, no blanks');
 }
 
-function printAccepted({ job, warnings }: AcceptedJob, server: string): void {
+function printAccepted({ job, warnings }: AcceptedJob, isNew: boolean, server: string): void {
   const paper = paperOf(process.stdout);
   const lines = [
-    `${paper.paint.good('accepted')} as job ${paper.paint.strong(job.id)}: ${printable(job.unitName)}`,
+    `${paper.paint.good(isNew ? 'accepted' : 'accepted before')} as job ${paper.paint.strong(job.id)}: ${printable(job.unitName)}`,
     `look at ${jobPage(server, job.id)}, or: heddle watch ${job.id}`,
   ];
   if (warnings.length > 0) {
