@@ -190,7 +190,7 @@ export async function queueLater(db: RecordTransaction, key: StageKey): Promise<
   await db.insertInto('outbox').values({ job_id, compute, epoch, stage }).execute();
 }
 
-export async function touchJob(db: RecordTransaction, job: string): Promise<void> {
+async function touchJob(db: RecordTransaction, job: string): Promise<void> {
   await db
     .updateTable('jobs')
     .set({ touched_at: sql<Date>`now()` })

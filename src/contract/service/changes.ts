@@ -9,7 +9,7 @@ export const changeIdSchema = z
   .string()
   .regex(/^C[0-9a-z]{12}$/, 'C and twelve digits or small letters');
 
-export const changeStateSchema = z.enum(['proposed', 'approved', 'rejected']);
+const changeStateSchema = z.enum(['proposed', 'approved', 'rejected']);
 
 const personSchema = text(1, 120);
 const reasonSchema = text(1, 2000);

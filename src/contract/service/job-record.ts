@@ -17,7 +17,7 @@ const count = z.number().int().min(0);
 const instant = z.iso.datetime();
 
 /** How far a job has come. */
-export const progressSchema = keyed({
+const progressSchema = keyed({
   stage: z.string(),
   stageIndex: count,
   stageCount: count,
