@@ -1,6 +1,5 @@
 import { once } from 'node:events';
 import { Command } from 'commander';
-import { openWorker } from '../../service/index.js';
 import { listenForInterruption } from '../interruption.js';
 import { threadsOption } from '../options.js';
 import { type ExitCode, exitCode } from '../refusal.js';
@@ -31,6 +30,8 @@ export function workerCommand(finish: (code: ExitCode) => void): Command {
 
 async function work({ threads, lockDuration, drain }: Options): Promise<ExitCode> {
   const place = servedPlaceOf(process.env);
+  // Every other command starts a second sooner without what a service is made of.
+  const { openWorker } = await import('../../service/index.js');
   const interruption = listenForInterruption();
   try {
     const worker = await refusingCoded(() =>
