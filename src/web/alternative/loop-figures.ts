@@ -1,5 +1,5 @@
 import type { LoopLimitName, LoopMetrics, Metrics } from '../../contract/index.js';
-import { figure, noFigure } from '../text/figures.js';
+import { dialled, figure, noFigure } from '../text/figures.js';
 import type { LoopView } from '../text/unit-view.js';
 
 type FigureName = Exclude<keyof LoopMetrics, 'stableInManual'>;
@@ -86,6 +86,9 @@ export interface FigureRow {
   readonly isBroken: boolean;
 }
 
+/** Percent of a step below which nobody would call it an overshoot. */
+const leastOvershoot = 0.1;
+
 /** A difference of the worst figures that is worth a word. */
 const worthSaying = 0.02;
 
@@ -118,7 +121,7 @@ export function loopFigures(
         limit:
           limit === undefined
             ? noFigure
-            : `${kind.isMargin ? '\u2265' : '\u2264'} ${figure(limit.bound)}${limit.nominal ? ', nominal' : ''}`,
+            : `${kind.isMargin ? '\u2265' : '\u2264'} ${dialled(limit.bound)}${limit.nominal ? ', nominal' : ''}`,
         isBroken: limit !== undefined && after !== null && isBeyond(kind, after, limit.bound),
       };
     });
@@ -141,6 +144,9 @@ function shownFigure(
   horizon: number,
 ): string {
   const value = numberOf(kind, metrics, loop);
+  if (kind.name === 'overshoot' && value !== null && value > 0 && value < leastOvershoot) {
+    return `< ${leastOvershoot}`;
+  }
   if (value !== null || metrics === undefined) return figure(value);
   if (!metrics.unit.stable) return 'unstable';
   if (kind.isMargin && metrics.loops[loop.tag] !== undefined) return '\u221e';

@@ -26,7 +26,7 @@ interface TrendDrawing {
 /** A few lines over time; the tuning chosen is solid, today's dashed, the setpoint thin and dotted. */
 export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDrawing): PlotOption {
   const height = heightOf(lines, span, least);
-  const width = scaleFor([0, span], 5);
+  const width = scaleFor([0, span], 6);
   const marked = roundWithin(height, 4);
   const strokes = {
     chosen: { color: ink.chosen, width: 2, type: 'solid' as const },

@@ -1,3 +1,4 @@
+import { useEffect, useRef, useState } from 'preact/hooks';
 import type { Act, ChangeRecord, JobRecord } from '../../contract/index.js';
 import { Moment } from '../parts/moment.js';
 import { TroubleNotice } from '../parts/notices.js';
@@ -22,11 +23,15 @@ export function ChangesSection({ job, alternative }: ChangesProps) {
     fetchChanges(job.id, signal),
   );
   const changes = value?.changes ?? [];
+  // What was signed here last: whoever signed is led to it, wherever it now stands.
+  const [signed, setSigned] = useState<string | null>(null);
 
   const propose = async (act: Act): Promise<Trouble | null> => {
     const answer = await proposeChange(job.id, { alternative: alternative ?? '', ...act });
     reload();
-    return answer.ok ? null : answer.trouble;
+    if (!answer.ok) return answer.trouble;
+    setSigned(answer.value.id);
+    return null;
   };
 
   if (alternative === null && changes.length === 0 && trouble === null) return null;
@@ -45,7 +50,15 @@ export function ChangesSection({ job, alternative }: ChangesProps) {
       {changes.length > 0 && (
         <ol class="changes" aria-label="Changes proposed for this unit, the latest first">
           {changes.map((change) => (
-            <Change key={change.id} change={change} onDecided={reload} />
+            <Change
+              key={change.id}
+              change={change}
+              isSigned={change.id === signed}
+              onDecided={() => {
+                setSigned(change.id);
+                reload();
+              }}
+            />
           ))}
         </ol>
       )}
@@ -69,11 +82,18 @@ export function ChangesSection({ job, alternative }: ChangesProps) {
 
 interface ChangeProps {
   readonly change: ChangeRecord;
+  /** It was signed here last. */
+  readonly isSigned: boolean;
   readonly onDecided: () => void;
 }
 
 /** One change: how it stands, who signed, and what is to be done next. */
-function Change({ change, onDecided }: ChangeProps) {
+function Change({ change, isSigned, onDecided }: ChangeProps) {
+  const head = useRef<HTMLHeadingElement>(null);
+  const { state } = change;
+  useEffect(() => {
+    if (isSigned) head.current?.focus();
+  }, [isSigned, state]);
   const decide =
     (decision: 'approve' | 'reject') =>
     async (act: Act): Promise<Trouble | null> => {
@@ -83,7 +103,7 @@ function Change({ change, onDecided }: ChangeProps) {
     };
   return (
     <li class="change">
-      <h3>
+      <h3 ref={head} tabIndex={-1}>
         {change.alternative} <StateMark state={change.state} />
         <span class="under">{change.id}</span>
       </h3>

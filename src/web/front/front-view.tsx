@@ -94,10 +94,12 @@ function FrontSection({ front, points, chosen, onChoose }: FrontSectionProps) {
   return (
     <Section title="Front" note={<FrontNote front={front} reference={reference} />}>
       <div class="front">
-        <FrontChart points={points} chosen={chosen} reference={reference} onChoose={onChoose} />
+        <div>
+          <FrontChart points={points} chosen={chosen} reference={reference} onChoose={onChoose} />
+          <Background front={front} />
+        </div>
         <FrontTable points={points} chosen={chosen} onChoose={onChoose} />
       </div>
-      <Background front={front} />
     </Section>
   );
 }

@@ -7,7 +7,7 @@ import { StateMark } from '../parts/state-mark.js';
 import { links } from '../route.js';
 import { fetchJobs } from '../server/heddle.js';
 import { useResource } from '../server/resource.js';
-import { count, counted, noFigure, percent } from '../text/figures.js';
+import { counted, noFigure, percent } from '../text/figures.js';
 import { duration, secondsBetween } from '../text/moments.js';
 
 /** How often the list is asked for while a job is under way, and while none is, ms. */
@@ -82,10 +82,7 @@ function JobTable({ jobs }: { readonly jobs: readonly JobRecord[] }) {
             <th scope="col">Started</th>
             <th scope="col">Ended</th>
             <th scope="col" class="number">
-              Time
-            </th>
-            <th scope="col" class="number">
-              Tunings evaluated
+              Spent
             </th>
           </tr>
         </thead>
@@ -121,8 +118,8 @@ function JobRow({ job }: { readonly job: JobRecord }) {
       </td>
       <td class="number">
         {job.startedAt === null ? noFigure : duration(secondsBetween(job.startedAt, job.endedAt))}
+        <span class="under">{counted(job.cost.evaluations, 'tuning')}</span>
       </td>
-      <td class="number">{count(job.cost.evaluations)}</td>
     </tr>
   );
 }
