@@ -14,7 +14,11 @@ export function FiguresTable({ loop, rows, name }: FiguresTableProps) {
   return (
     <div class="loop-figures">
       <h3>
-        {loop.tag} <span class="quiet">{loop.measurement}</span>
+        {loop.tag}{' '}
+        <span class="quiet">
+          {loop.measurement}
+          {loop.averaging && ', averaging'}
+        </span>
       </h3>
       <ScrollBox label={`Figures of ${loop.tag}`}>
         <table class="figures">

@@ -11,8 +11,8 @@ interface FigureKind {
   /** A larger value is the better one. */
   readonly isMargin?: boolean;
   readonly limits: readonly LoopLimitName[];
-  /** Shown only where the job states a limit on it. */
-  readonly isOnDemand?: boolean;
+  /** Shown only where the job states a limit on it, or where there is such a figure at all. */
+  readonly isShownFor?: 'limit' | 'figure';
 }
 
 const none = (): string => '';
@@ -28,6 +28,13 @@ const kinds: readonly FigureKind[] = [
     limits: ['peakSensitivity'],
   },
   { name: 'gainMargin', words: 'Gain margin', unit: none, isMargin: true, limits: ['gainMargin'] },
+  {
+    name: 'gainReduction',
+    words: 'Gain reduction',
+    unit: none,
+    limits: [],
+    isShownFor: 'figure',
+  },
   {
     name: 'phaseMargin',
     words: 'Phase margin',
@@ -50,21 +57,21 @@ const kinds: readonly FigureKind[] = [
     words: 'Output rate',
     unit: (loop, timeUnit) => `${loop.outputUnit}/${timeUnit}`,
     limits: ['outputRate'],
-    isOnDemand: true,
+    isShownFor: 'limit',
   },
   {
     name: 'peakMove',
     words: 'Output move a scan',
     unit: output,
     limits: ['outputMove'],
-    isOnDemand: true,
+    isShownFor: 'limit',
   },
   {
     name: 'upsetToOthers',
     words: 'Upset to other loops',
     unit: () => 'tolerances',
     limits: ['upsetToOthers'],
-    isOnDemand: true,
+    isShownFor: 'limit',
   },
 ];
 
@@ -100,29 +107,30 @@ export function loopFigures(
   { timeUnit, horizon }: { readonly timeUnit: string; readonly horizon: number },
 ): readonly FigureRow[] {
   return kinds
-    .filter((kind) => !kind.isOnDemand || limitOf(loop, kind) !== undefined)
+    .filter((kind) => isShown(kind, loop, [today, chosen]))
     .map((kind) => {
       const shown = (scored: Scored | null): [string, string] => [
         shownFigure(kind, scored?.nominal, loop, horizon),
         shownFigure(kind, scored?.worst, loop, horizon),
       ];
       const limit = limitOf(loop, kind);
-      const after = numberOf(kind, limit?.nominal ? chosen.nominal : chosen.worst, loop);
       return {
         words: kind.words,
         unit: kind.unit(loop, timeUnit),
         today: shown(today),
         chosen: shown(chosen),
-        verdict: verdict(
-          kind,
-          numberOf(kind, today?.worst, loop),
-          numberOf(kind, chosen.worst, loop),
-        ),
+        // A level that is there to swing is judged by its band, not by how little it swings.
+        verdict:
+          loop.averaging && kind.name === 'peakDeviation'
+            ? null
+            : verdict(kind, numberOf(kind, today?.worst, loop), numberOf(kind, chosen.worst, loop)),
         limit:
           limit === undefined
             ? noFigure
             : `${kind.isMargin ? '\u2265' : '\u2264'} ${dialled(limit.bound)}${limit.nominal ? ', nominal' : ''}`,
-        isBroken: limit !== undefined && after !== null && isBeyond(kind, after, limit.bound),
+        isBroken:
+          limit !== undefined &&
+          isBroken(kind, limit.nominal ? chosen.nominal : chosen.worst, loop, limit.bound),
       };
     });
 }
@@ -133,9 +141,29 @@ const limitOf = (loop: LoopView, { limits }: FigureKind) =>
 const numberOf = (kind: FigureKind, metrics: Metrics | undefined, loop: LoopView): number | null =>
   metrics?.loops[loop.tag]?.[kind.name] ?? null;
 
-/** What is beyond a limit by more than rounding. */
-const isBeyond = (kind: FigureKind, value: number, bound: number): boolean =>
-  kind.isMargin ? value < bound * (1 - 1e-9) : value > bound * (1 + 1e-9);
+function isShown(kind: FigureKind, loop: LoopView, scored: readonly (Scored | null)[]): boolean {
+  if (kind.isShownFor === 'limit') return limitOf(loop, kind) !== undefined;
+  if (kind.isShownFor === undefined) return true;
+  return scored.some((one) => numberOf(kind, one?.worst, loop) !== null);
+}
+
+/** Whether a limit is broken, by more than rounding; a step that never settles breaks its limit. */
+function isBroken(kind: FigureKind, metrics: Metrics, loop: LoopView, bound: number): boolean {
+  const own = numberOf(kind, metrics, loop);
+  const value = kind.name === 'gainMargin' ? bothWays(own, metrics, loop) : own;
+  if (value === null) return kind.name === 'settlingTime' && isStepped(metrics, loop);
+  return kind.isMargin === true ? value < bound * (1 - 1e-9) : value > bound * (1 + 1e-9);
+}
+
+/** A limit on the gain margin holds upwards and downwards: the lesser of the two factors. */
+function bothWays(up: number | null, metrics: Metrics, loop: LoopView): number | null {
+  const down = metrics.loops[loop.tag]?.gainReduction ?? null;
+  return down === null ? up : Math.min(up ?? Number.POSITIVE_INFINITY, 1 / down);
+}
+
+/** Overshoot is there where the loop's own setpoint was stepped. */
+const isStepped = (metrics: Metrics, loop: LoopView): boolean =>
+  (metrics.loops[loop.tag]?.overshoot ?? null) !== null;
 
 function shownFigure(
   kind: FigureKind,
@@ -150,9 +178,9 @@ function shownFigure(
   if (value !== null || metrics === undefined) return figure(value);
   if (!metrics.unit.stable) return 'unstable';
   if (kind.isMargin && metrics.loops[loop.tag] !== undefined) return '\u221e';
-  // Overshoot is there where the loop's own setpoint was stepped: then it has not settled.
-  const isStepped = (metrics.loops[loop.tag]?.overshoot ?? null) !== null;
-  return kind.name === 'settlingTime' && isStepped ? `> ${figure(horizon)}` : noFigure;
+  return kind.name === 'settlingTime' && isStepped(metrics, loop)
+    ? `> ${figure(horizon)}`
+    : noFigure;
 }
 
 function verdict(

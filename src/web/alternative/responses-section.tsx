@@ -132,7 +132,7 @@ function Responses({ chosen, present, unit }: DetailsProps) {
           <svg class="stroke stroke-setpoint" viewBox="0 0 32 8" aria-hidden="true">
             <path d="M0 4H32" />
           </svg>
-          setpoint
+          setpoint, with {chosen.id}
         </li>
       </ul>
       <div class="trends">
@@ -151,7 +151,7 @@ function Responses({ chosen, present, unit }: DetailsProps) {
             />
           ))}
       </div>
-      <UpsetTable chosen={chosen} present={present} upset={trend} unit={unit} />
+      <UpsetTable chosen={chosen} present={present} upset={trend} horizon={horizon} unit={unit} />
     </>
   );
 }

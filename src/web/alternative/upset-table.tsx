@@ -8,6 +8,8 @@ interface UpsetTableProps {
   readonly chosen: AlternativeDetail;
   readonly present: AlternativeDetail | null;
   readonly upset: Pick<Trend, 'kind' | 'tag'>;
+  /** How long the upset is simulated. */
+  readonly horizon: number;
   readonly unit: UnitView;
 }
 
@@ -29,7 +31,7 @@ const columns: readonly Column[] = [
 ];
 
 /** The responses in figures: what the upset does to each loop, today and with the alternative. */
-export function UpsetTable({ chosen, present, upset, unit }: UpsetTableProps) {
+export function UpsetTable({ chosen, present, upset, horizon, unit }: UpsetTableProps) {
   const after = lookUp(chosen, upset);
   const before = present === null ? undefined : lookUp(present, upset);
   if (after === undefined) return null;
@@ -70,10 +72,10 @@ export function UpsetTable({ chosen, present, upset, unit }: UpsetTableProps) {
                   <th scope="row">{loop.tag}</th>
                   {columns.flatMap(({ name, unit: unitOf }) => [
                     <td key={`${name} today`} class="number">
-                      {figure(before?.[loop.tag]?.[name])}
+                      {shownFigure(before?.[loop.tag], name, horizon)}
                     </td>,
                     <td key={`${name} chosen`} class="number new">
-                      {figure(after[loop.tag]?.[name])}
+                      {shownFigure(after[loop.tag], name, horizon)}
                     </td>,
                     <td key={`${name} unit`} class="unit">
                       {unitOf(loop, unit.timeUnit)}
@@ -90,3 +92,14 @@ export function UpsetTable({ chosen, present, upset, unit }: UpsetTableProps) {
 
 const lookUp = (detail: AlternativeDetail, { kind, tag }: UpsetTableProps['upset']) =>
   detail.scored.nominal.upsets?.find((one) => one.kind === kind && one.tag === tag)?.loops;
+
+/** A figure, or that the loop has not settled within the time simulated. */
+function shownFigure(
+  metrics: UpsetMetrics | undefined,
+  name: keyof UpsetMetrics,
+  horizon: number,
+): string {
+  const isStable = (metrics?.peakDeviation ?? null) !== null;
+  const isUnsettled = name === 'settlingTime' && isStable && metrics?.settlingTime === null;
+  return isUnsettled ? `> ${figure(horizon)}` : figure(metrics?.[name]);
+}
