@@ -2,6 +2,7 @@ import { z } from 'zod';
 import {
   acceptedJobSchema,
   cancellationSchema,
+  jobIdSchema,
   jobListSchema,
   jobQuerySchema,
   jobRecordSchema,
@@ -21,6 +22,8 @@ const submissionHeaders = z.looseObject({
     .exactOptional(),
 });
 
+const submissionQuery = z.strictObject({ parent: jobIdSchema.exactOptional() });
+
 /** Jobs: handed in, listed, looked at, stopped. */
 export function jobRoutes(app: Api, { service }: Skin): void {
   app.post(
@@ -36,14 +39,15 @@ export function jobRoutes(app: Api, { service }: Skin): void {
           'Recorded before it is answered; the answer names its address in `Location`. With an ' +
           '`Idempotency-Key` the same document gives the same job again, which the header ' +
           '`Idempotency-Replayed: true` then says, so that a request whose answer was lost can be ' +
-          'sent anew.',
+          'sent anew. `parent` names the job that this one was made from.',
         headers: submissionHeaders,
-        querystring: noQuery,
+        querystring: submissionQuery,
         body: jobDocumentBytes,
         response: {
           202: json('The job is accepted, now or before under the same key', acceptedJobSchema),
           ...problems(
             ...ofBodies,
+            'JOB_UNKNOWN',
             'DOCUMENT_REFUSED',
             'CALCULATION_REFUSED',
             'IDEMPOTENCY_KEY_REUSED',
@@ -56,7 +60,10 @@ export function jobRoutes(app: Api, { service }: Skin): void {
     },
     async (request, reply) => {
       const key = request.headers['idempotency-key'];
-      const { isNew, ...accepted } = await service.submit(request.body, key);
+      const { isNew, ...accepted } = await service.submit(request.body, {
+        ...(key === undefined ? {} : { key }),
+        ...request.query,
+      });
       reply.code(202).header('location', `/api/jobs/${accepted.job.id}`);
       if (!isNew) reply.header('idempotency-replayed', 'true');
       return accepted;

@@ -13,6 +13,7 @@ export type NewJob = Pick<
   | 'unit_name'
   | 'loops'
   | 'idempotency_key'
+  | 'parent'
   | 'compute'
   | 'accepted_at'
 >;
@@ -41,6 +42,7 @@ const shownColumns = [
   'hash',
   'unit_name',
   'loops',
+  'parent',
   'compute',
   'epoch',
   'state',

@@ -1,10 +1,12 @@
 import { type Kysely, type Migration, Migrator, sql } from 'kysely';
 import { CodedError } from '../base/index.js';
 import { firstRecord } from './migrations/0001-first-record.js';
+import { ownSettingsAndParents } from './migrations/0002-own-settings-and-parents.js';
 
 /** Every migration there ever was, in order. */
 const migrations: Readonly<Record<string, Migration>> = {
   '0001-first-record': { up: firstRecord },
+  '0002-own-settings-and-parents': { up: ownSettingsAndParents },
 };
 
 /** The schema that everything of the record lives in. */

@@ -19,6 +19,8 @@ interface JobTable {
   unit_name: string;
   loops: number;
   idempotency_key: string | null;
+  /** The job it was made from, with changes. */
+  parent: string | null;
   /** Version of the calculation that this job is pinned to. */
   compute: string;
   epoch: Generated<number>;
@@ -85,6 +87,20 @@ interface DetailTable {
   hash: string;
 }
 
+/** Settings that somebody tried on a job's unit and kept, verified like an alternative. */
+interface OwnSettingsTable {
+  job_id: string;
+  /** U01 and on. */
+  id: string;
+  name: string;
+  kept_by: string;
+  /** The record of them as JSON: figures and verification, without the responses. */
+  summary: Bytes;
+  document: Bytes;
+  hash: string;
+  kept_at: Moment;
+}
+
 interface ChangeTable {
   id: string;
   sequence: Generated<number>;
@@ -140,6 +156,7 @@ export interface Tables {
   results: ResultTable;
   fronts: FrontTable;
   details: DetailTable;
+  own_settings: OwnSettingsTable;
   changes: ChangeTable;
   outbox: OutboxTable;
   workers: WorkerTable;

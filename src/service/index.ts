@@ -6,5 +6,5 @@ export {
   type Running,
 } from './installation.js';
 export { ServiceProblem } from './problem.js';
-export type { Readiness, Service } from './service.js';
+export type { Readiness, Service, Submission } from './service.js';
 export { sheetCsv } from './sheet-csv.js';

@@ -29,6 +29,7 @@ import { newJobId } from './identifiers.js';
 import { jobView } from './job-views.js';
 import type { Ledger } from './ledger.js';
 import { ServiceProblem } from './problem.js';
+import type { Submission } from './service.js';
 
 /** Takes jobs in, says how they stand, and hands out what they gave. */
 export class JobDesk {
@@ -44,12 +45,14 @@ export class JobDesk {
 
   async submit(
     document: Uint8Array,
-    key?: string,
+    { key, parent }: Submission = {},
   ): Promise<AcceptedJob & { readonly isNew: boolean }> {
+    if (parent !== undefined) await this.find(parent);
     const read = await this.parts.calculations.read(document);
     const hash = createHash('sha256').update(document).digest('hex');
     const warnings = read.warnings.map(({ path, value, problem }) => ({ path, value, problem }));
-    const { row, isNew } = await this.accept(document, hash, read, key ?? null);
+    const named = { key: key ?? null, parent: parent ?? null };
+    const { row, isNew } = await this.accept(document, hash, read, named);
     this.parts.dispatcher.poke();
     return { job: await this.view(row), warnings, isNew };
   }
@@ -117,7 +120,7 @@ export class JobDesk {
     document: Uint8Array,
     hash: string,
     read: { readonly format: string; readonly unitName: string; readonly loops: number },
-    key: string | null,
+    { key, parent }: { readonly key: string | null; readonly parent: string | null },
   ): Promise<{ readonly row: JobRow; readonly isNew: boolean }> {
     const { database, ledger, compute } = this.parts;
     return ledger.inTurn(async (write) => {
@@ -126,7 +129,15 @@ export class JobDesk {
       const id = newJobId();
       const at = new Date();
       const base64 = Buffer.from(document).toString('base64');
-      await write({ kind: 'job', id, at: at.toISOString(), key, compute, document: base64 });
+      await write({
+        kind: 'job',
+        id,
+        at: at.toISOString(),
+        key,
+        parent,
+        compute,
+        document: base64,
+      });
       const isNew = await recordJob(database, {
         id,
         document,
@@ -135,6 +146,7 @@ export class JobDesk {
         unit_name: read.unitName,
         loops: read.loops,
         idempotency_key: key,
+        parent,
         compute,
         accepted_at: at,
       });

@@ -10,6 +10,7 @@ export function jobView(row: JobRow, work: JobWork | undefined): JobRecord {
     compute: row.compute,
     unitName: row.unit_name,
     loops: row.loops,
+    parent: row.parent,
     state: row.state,
     epoch: row.epoch,
     acceptedAt: row.accepted_at.toISOString(),

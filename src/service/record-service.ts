@@ -26,7 +26,7 @@ export function recordService(parts: ServiceParts): Service {
         const document = await jobs.document(job);
         return calculations.evaluate(document, settings, signal);
       }),
-    submit: (document, key) => reaching(() => jobs.submit(document, key)),
+    submit: (document, submission) => reaching(() => jobs.submit(document, submission)),
     jobs: (query) => reaching(() => jobs.jobs(query)),
     job: (id) => reaching(() => jobs.job(id)),
     document: (id) => reaching(() => jobs.document(id)),

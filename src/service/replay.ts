@@ -70,7 +70,7 @@ async function replay(
 
 async function replayJob(
   database: EmbeddedDatabase,
-  { id, key, compute, document: base64 }: Extract<JournalEntry, { kind: 'job' }>,
+  { id, key, parent, compute, document: base64 }: Extract<JournalEntry, { kind: 'job' }>,
   at: Date,
 ): Promise<void> {
   const document = new Uint8Array(Buffer.from(base64, 'base64'));
@@ -83,6 +83,7 @@ async function replayJob(
     unit_name: read.ok ? read.job.unit.name : 'a document that this release refuses',
     loops: read.ok ? read.job.loops.length : 0,
     idempotency_key: key,
+    parent,
     compute,
     accepted_at: at,
   });

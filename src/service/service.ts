@@ -18,6 +18,14 @@ export interface Readiness {
   readonly parts: readonly { readonly name: string; readonly problem: string | null }[];
 }
 
+/** What comes with a job document. */
+export interface Submission {
+  /** The caller's idempotency key: the same key and document give the first job again. */
+  readonly key?: string;
+  /** The job this one was made from, with changes. */
+  readonly parent?: string;
+}
+
 /**
  * What Heddle does for whoever asks, whatever its size: the skins (HTTP, pages, commands) call this
  * and nothing below it.
@@ -35,10 +43,12 @@ export interface Service {
 
   /**
    * Accepts a job: recorded before it is answered, queued after.
-   * @param key  the caller's idempotency key: the same key and document give the first job again
    * @returns `isNew` false where the key had been seen
    */
-  submit(document: Uint8Array, key?: string): Promise<AcceptedJob & { readonly isNew: boolean }>;
+  submit(
+    document: Uint8Array,
+    submission?: Submission,
+  ): Promise<AcceptedJob & { readonly isNew: boolean }>;
   jobs(query: JobQuery): Promise<JobList>;
   job(id: string): Promise<JobRecord>;
   /** The document as it was handed in. */

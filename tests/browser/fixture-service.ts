@@ -16,7 +16,12 @@ import {
   type SheetDocument,
 } from '../../src/contract/index.js';
 import { changeSheet } from '../../src/service/change-sheet.js';
-import { type Readiness, type Service, ServiceProblem } from '../../src/service/index.js';
+import {
+  type Readiness,
+  type Service,
+  ServiceProblem,
+  type Submission,
+} from '../../src/service/index.js';
 import type { StudyOutcome } from '../../src/study/index.js';
 
 interface HeldJob {
@@ -73,7 +78,10 @@ export class FixtureService implements Service {
     });
   }
 
-  async submit(document: Uint8Array, key?: string): Promise<AcceptedJob & { isNew: boolean }> {
+  async submit(
+    document: Uint8Array,
+    { key, parent }: Submission = {},
+  ): Promise<AcceptedJob & { isNew: boolean }> {
     const read = readJob(new Uint8Array(document));
     if (!read.ok) {
       throw new ServiceProblem('DOCUMENT_REFUSED', 'the document has faults', { refused: read });
@@ -87,6 +95,7 @@ export class FixtureService implements Service {
       compute: '0'.repeat(64),
       unitName: read.job.unit.name,
       loops: read.job.loops.length,
+      parent: parent ?? null,
       state: 'accepted',
       epoch: 0,
       acceptedAt: moment(0),

@@ -18,7 +18,12 @@ import {
   type SheetDocument,
   type Warning,
 } from '../../src/contract/index.js';
-import { type Readiness, type Service, ServiceProblem } from '../../src/service/index.js';
+import {
+  type Readiness,
+  type Service,
+  ServiceProblem,
+  type Submission,
+} from '../../src/service/index.js';
 import {
   alternativeBytes,
   checkReport,
@@ -75,7 +80,11 @@ export class FakeService implements Service {
     return evaluationBytes(job, record.hash);
   }
 
-  async submit(document: Uint8Array, key?: string): Promise<AcceptedJob & { isNew: boolean }> {
+  async submit(
+    document: Uint8Array,
+    { key, parent }: Submission = {},
+  ): Promise<AcceptedJob & { isNew: boolean }> {
+    if (parent !== undefined) this.find(parent);
     const { job, warnings } = this.read(document);
     const known = key === undefined ? undefined : this.keys.get(key);
     const hash = hashOf(document);
@@ -85,7 +94,7 @@ export class FakeService implements Service {
       throw new ServiceProblem('IDEMPOTENCY_KEY_REUSED', `the key ${key} has another document`);
     }
     const id = `J${String(this.kept.size).padStart(12, '0')}`;
-    const record = accepted(id, hash, job);
+    const record = { ...accepted(id, hash, job), parent: parent ?? null };
     this.kept.set(id, { bytes: Uint8Array.from(document), job, record });
     if (key !== undefined) this.keys.set(key, id);
     return { job: record, warnings: [...warnings], isNew: true };
@@ -242,6 +251,7 @@ function accepted(id: string, hash: string, job: JobDocument): JobRecord {
     compute: 'fake-1',
     unitName: job.unit.name,
     loops: job.loops.length,
+    parent: null,
     state: 'accepted',
     epoch: 0,
     acceptedAt: instant,

@@ -25,6 +25,7 @@ const entries: fc.Arbitrary<JournalEntry> = fc.oneof(
     id: fc.string({ minLength: 1 }),
     at: fc.constant(at),
     key: fc.option(fc.string()),
+    parent: fc.option(fc.string()),
     compute: fc.string(),
     document: fc.uint8Array().map((bytes) => Buffer.from(bytes).toString('base64')),
   }),

@@ -1,5 +1,6 @@
 import { join } from 'node:path';
-import { sql } from 'kysely';
+import { Kysely, PostgresDialect, sql } from 'kysely';
+import pg from 'pg';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
 import {
   beginTask,
@@ -24,6 +25,8 @@ import {
   type StageKey,
   startJob,
 } from '../../src/records/index.js';
+import { firstRecord } from '../../src/records/migrations/0001-first-record.js';
+import type { Tables } from '../../src/records/tables.js';
 import { createDatabase } from '../servers/shared.js';
 import { untilTrue } from '../servers/waiting.js';
 import { Scratch } from './scratch.js';
@@ -72,6 +75,7 @@ describe.each(Object.entries(databases))('the record %s', (_, open) => {
         unit_name: 'Still',
         loops: 2,
         idempotency_key: key,
+        parent: null,
         compute: 'v1',
         accepted_at: new Date(),
       }),
@@ -255,5 +259,33 @@ describe.each(Object.entries(databases))('the record %s', (_, open) => {
     );
     await first.close();
     await expect(openServed(url)).rejects.toMatchObject({ code: 'RECORD_NEWER' });
+  });
+});
+
+describe('a record of the first release', () => {
+  it('is brought forward with what it holds', async () => {
+    const url = await createDatabase();
+    const pool = new pg.Pool({ connectionString: url });
+    const first = new Kysely<Tables>({ dialect: new PostgresDialect({ pool }) });
+    await sql`create schema heddle`.execute(first);
+    await firstRecord(first as unknown as Kysely<unknown>);
+    await sql`insert into heddle.jobs (id, document, hash, format, unit_name, loops, compute, state)
+      values ('J000000000000', '\\x7b7d', 'h', 'heddle-job/1', 'Still', 2, 'v1', 'accepted')`.execute(
+      first,
+    );
+    await sql`create table heddle.kysely_migration
+      (name varchar(255) primary key, timestamp varchar(255) not null)`.execute(first);
+    await sql`insert into heddle.kysely_migration values ('0001-first-record', now()::text)`.execute(
+      first,
+    );
+    await first.destroy();
+
+    const database = await openServed(url);
+    expect(await findJob(database.records, 'J000000000000')).toMatchObject({
+      unit_name: 'Still',
+      state: 'accepted',
+      parent: null,
+    });
+    await database.close();
   });
 });

@@ -67,6 +67,7 @@ export function record(changes: Partial<JobRecord> = {}): JobRecord {
     compute: '0'.repeat(64),
     unitName: 'Feed heater outlet',
     loops: 1,
+    parent: null,
     state: 'running',
     epoch: 1,
     acceptedAt: '2026-03-01T08:00:00.000Z',

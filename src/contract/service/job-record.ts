@@ -45,6 +45,8 @@ export const jobRecordSchema = keyed({
   compute: z.string(),
   unitName: z.string(),
   loops: count,
+  /** The job it was made from, with changes. */
+  parent: jobIdSchema.nullable(),
   state: jobStateSchema,
   /** Raised whenever the job's work is handed out anew. */
   epoch: count,

@@ -14,6 +14,7 @@ const entrySchema = z.discriminatedUnion('kind', [
     id: z.string(),
     at,
     key: z.string().nullable(),
+    parent: z.string().nullable().default(null),
     compute: z.string(),
     /** The document's bytes, in base 64. */
     document: z.base64(),
