@@ -85,6 +85,9 @@ function isJson(parameters: readonly string[]): boolean {
   }
 }
 
+/** Says what went wrong outside a command, in words, and gives the exit code it means. */
+export const complain = (error: unknown): number => report(error, '', false);
+
 /** Says what went wrong and gives the exit code it means. */
 function report(error: unknown, usage: string, json: boolean): number {
   if (error instanceof CommanderError) {

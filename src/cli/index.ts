@@ -1,4 +1,9 @@
-export { runCommandLine } from './command-line.js';
+export { complain, runCommandLine } from './command-line.js';
+export { type Interruption, listenForInterruption } from './interruption.js';
+export { Client } from './remote/client.js';
+export { jobPage } from './remote/server-option.js';
+export { startEmbeddedServer } from './serving/embedded-server.js';
+export type { RunningServer } from './serving/start-server.js';
 export { checkPage } from './tables/check-page.js';
 export type { EvaluationView } from './tables/evaluation-loops.js';
 export { evaluationPage } from './tables/evaluation-page.js';

@@ -26,11 +26,15 @@ export function writeJson(document: unknown): void {
   process.stdout.write(`${JSON.stringify(document)}\n`);
 }
 
+let isListening = false;
+
 /**
  * Lets a reader leave early: `heddle ... | head` ends quietly once nobody reads what is still to
  * come. Without a reader for its notes a command goes on. Output that cannot be written is a failure.
  */
 export function endQuietlyWithoutReader(): void {
+  if (isListening) return;
+  isListening = true;
   process.stdout.on('error', (error: NodeJS.ErrnoException) => {
     if (error.code === 'EPIPE') process.exit();
     const why =
