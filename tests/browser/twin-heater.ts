@@ -16,7 +16,7 @@ export function twinHeater(): JobInput {
     unit: {
       name: 'Twin heater',
       timeUnit: 'min',
-      horizon: 80,
+      horizon: 60,
       measurements: [1, 2].map((k) => ({
         tag: `TI-${k}`,
         unit: 'degC',
@@ -40,7 +40,7 @@ export function twinHeater(): JobInput {
         tag: 'TC-1',
         measurement: 'TI-1',
         drives: 'FV-1',
-        controller: { terms: 'PI', scan: 0.5, gainIn: 'engineering' },
+        controller: { terms: 'PI', scan: 1, gainIn: 'engineering' },
         present: { gain: 0.8, integral: 12 },
         limits: { overshoot: 30, gainMargin: 1.6 },
       },
@@ -51,7 +51,7 @@ export function twinHeater(): JobInput {
         action: 'reverse',
         controller: {
           terms: 'PI',
-          scan: 0.5,
+          scan: 1,
           gainIn: 'proportional-band',
           integralIn: 'repeats',
         },

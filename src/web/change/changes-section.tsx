@@ -128,7 +128,9 @@ function Change({ change, isSigned, onDecided }: ChangeProps) {
               ? 'This is who proposed it. Approval is meant for a second person.'
               : null
           }
-        />
+        >
+          <p>Decide on it, as a second person:</p>
+        </SigningForm>
       )}
       {change.state === 'approved' && (
         <p class="buttons">

@@ -1,6 +1,7 @@
 import { ScrollBox } from '../parts/scroll-box.js';
 import type { Trouble } from '../server/answer.js';
 import { counted } from '../text/figures.js';
+import { DocumentPath } from './document-path.js';
 
 /** Every fault of a refused document: where, what is wrong, what was found, what is allowed. */
 export function FaultList({ trouble }: { readonly trouble: Trouble }) {
@@ -27,7 +28,7 @@ export function FaultList({ trouble }: { readonly trouble: Trouble }) {
             {faults.map((fault) => (
               <tr key={`${fault.code} ${fault.path}`}>
                 <th scope="row">
-                  <code>{fault.path === '' ? 'document' : fault.path}</code>
+                  <DocumentPath path={fault.path} />
                   {fault.subject !== undefined && <span class="under">{fault.subject}</span>}
                 </th>
                 <td>

@@ -5,6 +5,7 @@ import { goTo, links } from '../route.js';
 import type { Trouble } from '../server/answer.js';
 import { handIn } from '../server/heddle.js';
 import { counted, figure } from '../text/figures.js';
+import { DocumentPath } from './document-path.js';
 import { FaultList } from './fault-list.js';
 import { submissionKey } from './submission-key.js';
 
@@ -159,7 +160,7 @@ function Accepted({ accepted: { job, warnings } }: { readonly accepted: Accepted
           {warnings.map(({ path, value, problem }) => (
             <tr key={`${path} ${problem}`}>
               <th scope="row">
-                <code>{path}</code>
+                <DocumentPath path={path} />
               </th>
               <td>
                 <code>{value}</code>
