@@ -20,6 +20,7 @@ import { eventRoute } from './event-route.js';
 import { healthRoutes } from './health-routes.js';
 import { jobRoutes } from './job-routes.js';
 import { OpenRequests, stopping } from './open-requests.js';
+import { ownSettingsRoutes } from './own-settings-routes.js';
 import { servePage } from './page.js';
 import { answerError } from './problem-answer.js';
 import { refuseCrossSite, refuseForeignHost, refuseRepeated } from './request-guards.js';
@@ -96,6 +97,7 @@ const routes = [
   jobRoutes,
   eventRoute,
   resultRoutes,
+  ownSettingsRoutes,
   changeRoutes,
   sheetRoute,
   healthRoutes,

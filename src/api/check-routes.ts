@@ -1,3 +1,4 @@
+import { z } from 'zod';
 import { checkReportSchema, mostDocumentBytes } from '../contract/index.js';
 import { evaluationBytes, jobDocumentBytes, settingsBytes } from './components.js';
 import { json, noQuery, ofBodies, problems } from './route-schema.js';
@@ -5,6 +6,9 @@ import { type Api, jobPath, type Skin } from './skin.js';
 
 const tags = ['documents'];
 const refusals = [...ofBodies, 'DOCUMENT_REFUSED', 'CALCULATION_REFUSED', 'BUSY'] as const;
+
+/** Which models settings are scored on. */
+const modelsQuery = z.strictObject({ models: z.enum(['search', 'all']).default('all') });
 
 /** What can be said of a document at once, without a job. */
 export function checkRoutes(app: Api, { service, open }: Skin): void {
@@ -63,9 +67,10 @@ export function checkRoutes(app: Api, { service, open }: Skin): void {
         summary: 'Score other settings for a job',
         description:
           "Settings by loop tag, in each controller's own terms, or an alternative as it is in a " +
-          'front; loops not named keep their present settings.',
+          'front; loops not named keep their present settings. `models=search` leaves out the models ' +
+          'that only verify, for trying settings while typing.',
         params: jobPath,
-        querystring: noQuery,
+        querystring: modelsQuery,
         body: settingsBytes,
         response: {
           200: json('The evaluation', evaluationBytes),
@@ -74,8 +79,9 @@ export function checkRoutes(app: Api, { service, open }: Skin): void {
       },
     },
     async (request, reply) => {
-      const { params, body } = request;
-      const work = (signal: AbortSignal) => service.evaluateSettings(params.job, body, signal);
+      const { params, body, query } = request;
+      const work = (signal: AbortSignal) =>
+        service.evaluateSettings(params.job, body, query.models, signal);
       return reply.type('application/json').send(await open.work(reply, work));
     },
   );

@@ -1,6 +1,7 @@
 import { createHash } from 'node:crypto';
 import { CodedError } from '../base/index.js';
 import {
+  alternativeFormat,
   type CheckReport,
   type JobDocument,
   type Refused,
@@ -14,18 +15,22 @@ import {
   compileJob,
   describeJob,
   evaluateSettings,
+  judgeSettings,
   nextStage,
   type Provenance,
   prepareJob,
   presentSubject,
+  type ScoredModels,
   type StudyContext,
   settingsSubject,
   type Task,
   type TaskResult,
   TaskRunner,
+  verificationOf,
   Workbench,
 } from '../study/index.js';
 import { estimateSeconds } from './estimate.js';
+import { JobBench } from './job-bench.js';
 
 /** A job by its document's bytes, and what its results belong to. */
 export interface StoredJob {
@@ -60,8 +65,23 @@ export interface ThreadWork {
     readonly answer: CheckReport | Refused;
   };
   readonly evaluate: {
-    readonly given: StoredJob & { readonly settings: Uint8Array | null };
+    readonly given: StoredJob & {
+      /** The present settings where null. */
+      readonly settings: Uint8Array | null;
+      readonly models: ScoredModels;
+      /** What was fixed for the job when its work began; fixed anew where null, which takes longer. */
+      readonly preparation: Uint8Array | null;
+    };
     readonly answer: Uint8Array | Refused;
+  };
+  /** Settings judged as they stand, as an alternative of the job's front is. */
+  readonly judge: {
+    readonly given: StoredJob & {
+      readonly id: string;
+      readonly settings: Uint8Array;
+      readonly preparation: Uint8Array | null;
+    };
+    readonly answer: JudgedSettings | Refused;
   };
 }
 
@@ -72,6 +92,16 @@ export interface ReadDocument {
   readonly unitName: string;
   readonly loops: number;
   readonly warnings: readonly Warning[];
+}
+
+/** Settings that were judged. */
+export interface JudgedSettings {
+  readonly ok: true;
+  /** Figures and verification as JSON, without the figures of single upsets. */
+  readonly summary: Uint8Array;
+  /** Their own document. */
+  readonly detail: HashedDocument;
+  readonly isStable: boolean;
 }
 
 export type ThreadWorkKind = keyof ThreadWork;
@@ -116,6 +146,7 @@ export type Planned =
 export class ThreadWorker {
   private readonly runner = new TaskRunner();
   private latest: { readonly hash: string; readonly job: JobDocument } | undefined;
+  private readonly desk = new JobBench();
 
   do(request: ThreadRequest): ThreadWork[ThreadWorkKind]['answer'] {
     switch (request.kind) {
@@ -130,8 +161,41 @@ export class ThreadWorker {
       case 'check':
         return check(request, request.threads);
       case 'evaluate':
-        return evaluate(request, request.settings);
+        return this.evaluate(request);
+      case 'judge':
+        return this.judge(request);
     }
+  }
+
+  private evaluate(request: ThreadWork['evaluate']['given']): Uint8Array | Refused {
+    const { provenance, settings, models } = request;
+    const opened = this.desk.open(request);
+    if (!opened.ok) return opened;
+    const { job, warnings, bench } = opened;
+    const other = settings === null ? null : readSettings(settings, job);
+    if (other?.ok === false) return other;
+    const subject = other === null ? presentSubject(bench, job) : settingsSubject(other, job);
+    const notices = [...warnings, ...subject.notices];
+    return toBytes(evaluateSettings(bench, subject.own, provenance, notices, models)).output;
+  }
+
+  private judge(request: ThreadWork['judge']['given']): JudgedSettings | Refused {
+    const { provenance, settings, id } = request;
+    const opened = this.desk.open(request);
+    if (!opened.ok) return opened;
+    const { job, bench } = opened;
+    const read = readSettings(settings, job);
+    if (!read.ok) return read;
+    const verified = judgeSettings(bench, settingsSubject(read, job).own);
+    const { accepted, scored, detail } = verified;
+    const document = { format: alternativeFormat, job: provenance.job, id, ...detail };
+    const summary = { ...scored, verified: verificationOf(verified, bench.isExact), accepted };
+    return {
+      ok: true,
+      summary: toBytes(summary).output,
+      detail: hashed(document),
+      isStable: scored.stable,
+    };
   }
 
   private runStored(stored: StoredJob, input: Uint8Array): TaskAnswer {
@@ -191,23 +255,6 @@ function check({ document, provenance }: StoredJob, threads: number): CheckRepor
   const bench = new Workbench(compiled, prepareJob(compiled));
   const estimate = { seconds: estimateSeconds(bench, threads), threads };
   return describeJob(read.job, provenance, read.warnings, bench, estimate);
-}
-
-function evaluate(
-  { document, provenance }: StoredJob,
-  settings: Uint8Array | null,
-): Uint8Array | Refused {
-  const read = readJob(document);
-  if (!read.ok) return read;
-  const { job, warnings } = read;
-  const other = settings === null ? null : readSettings(settings, job);
-  if (other?.ok === false) return other;
-  const compiled = compileJob(job);
-  const bench = new Workbench(compiled, prepareJob(compiled));
-  const { own, notices } =
-    other === null ? presentSubject(bench, job) : settingsSubject(other, job);
-  const evaluation = evaluateSettings(bench, own, provenance, [...warnings, ...notices]);
-  return toBytes(evaluation).output;
 }
 
 const decoder = new TextDecoder();

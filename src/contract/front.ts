@@ -15,12 +15,18 @@ export const alternativeIdSchema = z
 /** The name of a published rule's settings in a front: B01, B02, ... */
 const baselineIdSchema = z.string().regex(/^B\d{2}$/);
 
-/** What has a document of its own in a job that is done: every scored tuning set of its front. */
+/** The name of settings that somebody tried on the unit of a job and kept: U01, U02, ... */
+export const ownIdSchema = z.string().regex(/^U\d{2,3}$/, 'U and two or three digits, such as U02');
+
+/** What can be proposed: an alternative of a front, or somebody's own settings. */
+export const proposableIdSchema = z.union([alternativeIdSchema, ownIdSchema]);
+
+/** What has a document of its own: every scored tuning set of a front, and settings of one's own. */
 export const scoredNameSchema = z
   .string()
   .regex(
-    /^(A\d{2,3}|B\d{2}|present)$/,
-    'A and two or three digits, such as A07; B and two for a published rule; or present',
+    /^([AU]\d{2,3}|B\d{2}|present)$/,
+    'A and two or three digits, such as A07; U and digits for settings of one’s own; B and two for a published rule; or present',
   );
 
 /** Today's settings. */
@@ -41,7 +47,7 @@ export const baselineSchema = keyed({
 });
 
 /** How an alternative fared on models that the search never saw. */
-const verificationSchema = keyed({
+export const verificationSchema = keyed({
   models: count,
   failures: count,
   /** Lower bound, with 95 % confidence, of the share of models within every limit. */

@@ -84,6 +84,14 @@ export {
   jobStateSchema,
 } from './service/job-record.js';
 export {
+  type Keeping,
+  keepingSchema,
+  type OwnSettings,
+  type OwnSettingsList,
+  ownSettingsListSchema,
+  ownSettingsSchema,
+} from './service/own-settings.js';
+export {
   type ProblemCode,
   type ProblemDocument,
   problemCodes,

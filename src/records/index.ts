@@ -33,6 +33,13 @@ export {
 } from './jobs.js';
 export { clearOutbox, readOutbox, type Unqueued } from './outbox.js';
 export {
+  countOwnSettings,
+  findOwnDocument,
+  insertOwnSettings,
+  listOwnSettings,
+  type OwnSettingsRow,
+} from './own-settings.js';
+export {
   findResting,
   type HandingOut,
   handOutAnew,
@@ -44,6 +51,7 @@ export {
   beginTask,
   type FoundFront,
   findJobAtWork,
+  findResult,
   openTasks,
   queueLater,
   readResults,

@@ -95,6 +95,19 @@ export async function recordResult(
   });
 }
 
+/** The answer of one task. */
+export async function findResult(db: Records, key: TaskKey): Promise<Uint8Array | undefined> {
+  const row = await db
+    .selectFrom('results')
+    .select('output')
+    .where('job_id', '=', key.job)
+    .where('compute', '=', key.compute)
+    .where('stage', '=', key.stage)
+    .where('task', '=', key.task)
+    .executeTakeFirst();
+  return row?.output;
+}
+
 /**
  * The answers of all stages up to one, in order.
  * @returns undefined while an answer is missing

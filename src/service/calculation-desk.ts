@@ -2,13 +2,20 @@ import { createHash } from 'node:crypto';
 import { CodedError } from '../base/index.js';
 import { type Calculations, ThreadFailure, type ThreadWork } from '../compute/index.js';
 import type { CheckReport, Refused } from '../contract/index.js';
+import type { ScoredModels } from '../study/index.js';
 import { ServiceProblem } from './problem.js';
 
 /** Questions that may wait for a thread. */
 const mostWaiting = 16;
 
 /** Kinds of work that answer a question at once. */
-type Question = 'read' | 'check' | 'evaluate';
+type Question = 'read' | 'check' | 'evaluate' | 'judge';
+
+/** An accepted job: its document, and what was fixed when its work began, if it has. */
+export interface AcceptedDocument {
+  readonly document: Uint8Array;
+  readonly preparation: Uint8Array | null;
+}
 
 /** Answers questions about documents on threads of its own, apart from the work of jobs. */
 export class CalculationDesk {
@@ -29,13 +36,31 @@ export class CalculationDesk {
     return this.ask('check', { ...this.stored(document), threads: this.threads }, signal);
   }
 
-  /** @param settings  a settings document to score; the present ones where null */
-  evaluate(
-    document: Uint8Array,
-    settings: Uint8Array | null,
+  /** The present settings of a document, scored: the bytes of an evaluation document. */
+  evaluate(document: Uint8Array, signal: AbortSignal): Promise<Uint8Array> {
+    const given = { settings: null, models: 'all', preparation: null } as const;
+    return this.ask('evaluate', { ...this.stored(document), ...given }, signal);
+  }
+
+  /** Other settings for an accepted job, scored in the same way. */
+  evaluateFor(
+    { document, preparation }: AcceptedDocument,
+    settings: Uint8Array,
+    models: ScoredModels,
     signal: AbortSignal,
   ): Promise<Uint8Array> {
-    return this.ask('evaluate', { ...this.stored(document), settings }, signal);
+    const given = { settings, models, preparation };
+    return this.ask('evaluate', { ...this.stored(document), ...given }, signal);
+  }
+
+  /** Settings judged as an alternative of the job's front is. */
+  judgeFor(
+    { document, preparation }: AcceptedDocument,
+    id: string,
+    settings: Uint8Array,
+    signal: AbortSignal,
+  ) {
+    return this.ask('judge', { ...this.stored(document), id, settings, preparation }, signal);
   }
 
   private stored(document: Uint8Array) {

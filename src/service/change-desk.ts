@@ -19,6 +19,7 @@ import { changeSheet } from './change-sheet.js';
 import { newChangeId } from './identifiers.js';
 import type { JobDesk } from './job-desk.js';
 import type { Ledger } from './ledger.js';
+import type { OwnSettingsDesk } from './own-settings-desk.js';
 import { ServiceProblem } from './problem.js';
 
 /**
@@ -32,13 +33,14 @@ export class ChangeDesk {
     private readonly database: Database,
     private readonly ledger: Ledger,
     private readonly jobs: JobDesk,
+    private readonly own: OwnSettingsDesk,
   ) {}
 
   async propose(job: string, { alternative, person, reason }: Proposal): Promise<ChangeRecord> {
     const stored = await this.jobs.front(job);
     const front = parsed<FrontDocument>(stored.document);
-    const chosen = front.alternatives.find(({ id }) => id === alternative);
-    if (chosen === undefined) throw unknownAlternative(job, alternative, front);
+    const chosen = await this.proposed(job, front, alternative);
+    if (!chosen.stable) throw unstable(alternative);
     const id = newChangeId();
     const at = new Date();
     await this.ledger.inTurn(async (write) => {
@@ -90,7 +92,17 @@ export class ChangeDesk {
       const detail = `this release refuses the document of job ${change.job}`;
       throw new ServiceProblem('DOCUMENT_REFUSED', detail, { refused: read });
     }
-    return changeSheet({ job: read.job, front: parsed<FrontDocument>(front.document), change });
+    const document = parsed<FrontDocument>(front.document);
+    const { own } = await this.own.list(change.job);
+    return changeSheet({ job: read.job, front: document, change, own });
+  }
+
+  /** An alternative of a front, or settings that somebody kept for its job. */
+  private async proposed(job: string, front: FrontDocument, id: string) {
+    const others = id.startsWith('U') ? (await this.own.list(job)).own : front.alternatives;
+    const chosen = others.find((each) => each.id === id);
+    if (chosen === undefined) throw unknownAlternative(job, id, front);
+    return chosen;
   }
 
   private async decide(
@@ -158,6 +170,9 @@ function unknownAlternative(
     `the front of job ${job} has no alternative ${alternative}; ${there}`,
   );
 }
+
+const unstable = (id: string): ServiceProblem =>
+  new ServiceProblem('NOT_PROPOSABLE', `${id} is unstable on some of the models it was judged on`);
 
 const decided = ({ id, state, decided_by, decided_at }: ChangeRow): ServiceProblem =>
   new ServiceProblem(

@@ -1,10 +1,11 @@
-import type { Alternative, ChangeRecord, JobDocument, SheetLoop } from '../contract/index.js';
+import type { ChangeRecord, JobDocument, SheetLoop } from '../contract/index.js';
+import type { Proposed } from './proposed.js';
 
 /** What to mind before, during and after a change; short sentences, what stops it first. */
 export function cautionsOf(
   job: JobDocument,
   change: ChangeRecord,
-  alternative: Alternative,
+  alternative: Proposed,
   loops: readonly SheetLoop[],
 ): string[] {
   return [
@@ -34,7 +35,7 @@ const scope = [
   "The site's management of change, local codes and licensed practice apply and come first.",
 ] as const;
 
-function basis({ search, unit }: JobDocument, { verified }: Alternative): string[] {
+function basis({ search, unit }: JobDocument, { verified }: Proposed): string[] {
   const sentences = [
     'What to expect is computed from the models of the job document; it is not measured on the unit.',
   ];

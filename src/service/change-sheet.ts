@@ -1,5 +1,4 @@
 import {
-  type Alternative,
   type ChangeRecord,
   controllerInWords,
   type DrivesDocument,
@@ -7,6 +6,7 @@ import {
   type JobDocument,
   type LoopDocument,
   type LoopSettingsDocument,
+  type OwnSettings,
   type SheetDocument,
   type SheetLoop,
   type SheetSetting,
@@ -19,23 +19,27 @@ import { cautionsOf } from './change-sheet-cautions.js';
 import { loopExpectations, objectiveExpectations } from './change-sheet-figures.js';
 import { loopNotes } from './change-sheet-notes.js';
 import { ServiceProblem } from './problem.js';
+import type { Proposed } from './proposed.js';
 
 /** What a sheet is made from: the change, and the documents it is bound to. */
 export interface SheetSources {
   readonly job: JobDocument;
   readonly front: FrontDocument;
   readonly change: ChangeRecord;
+  /** Settings that people kept for the job: a change may propose one of them. */
+  readonly own?: readonly OwnSettings[];
 }
 
 /**
  * The document that takes one alternative to the control room: every loop's settings in its own
  * units, old and new, what to expect and what to mind. The same sources give the same bytes.
- * @throws {ServiceProblem} ALTERNATIVE_UNKNOWN where the front does not hold the change's alternative
+ * @throws {ServiceProblem} ALTERNATIVE_UNKNOWN where nothing has the name that the change proposes
  */
-export function changeSheet({ job, front, change }: SheetSources): SheetDocument {
-  const alternative = front.alternatives.find(({ id }) => id === change.alternative);
+export function changeSheet({ job, front, change, own = [] }: SheetSources): SheetDocument {
+  const proposable: readonly Proposed[] = [...front.alternatives, ...own];
+  const alternative = proposable.find(({ id }) => id === change.alternative);
   if (alternative === undefined) {
-    const problem = `the front of job ${change.job} has no alternative ${change.alternative}`;
+    const problem = `job ${change.job} has no settings called ${change.alternative}`;
     throw new ServiceProblem('ALTERNATIVE_UNKNOWN', problem);
   }
   const { models, failures, confidence } = alternative.verified;
@@ -68,7 +72,7 @@ function sheetLoop(
   loop: LoopDocument,
   job: JobDocument,
   front: FrontDocument,
-  alternative: Alternative,
+  alternative: Proposed,
 ): SheetLoop {
   const { tag, controller } = loop;
   const settings = sheetSettings(job, loop, alternative.settings[tag]);

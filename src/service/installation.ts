@@ -15,6 +15,7 @@ import { Heartbeat } from './heartbeat.js';
 import { JobDesk } from './job-desk.js';
 import { JobWorker } from './job-worker.js';
 import { journalLedger, type Ledger, servedLedger } from './ledger.js';
+import { OwnSettingsDesk } from './own-settings-desk.js';
 import { recordService } from './record-service.js';
 import { replayJournal } from './replay.js';
 import type { Service } from './service.js';
@@ -74,8 +75,9 @@ export async function openServer(
     }
     const calculations = new CalculationDesk(desk, compute, settings.threads);
     const jobs = new JobDesk({ database, ledger, dispatcher, calculations, compute });
-    const changes = new ChangeDesk(database, ledger, jobs);
-    return { service: recordService({ database, queue, calculations, jobs, changes }) };
+    const own = new OwnSettingsDesk(database, ledger, calculations, jobs);
+    const changes = new ChangeDesk(database, ledger, jobs, own);
+    return { service: recordService({ database, queue, calculations, jobs, own, changes }) };
   });
 }
 

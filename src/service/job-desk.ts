@@ -16,6 +16,7 @@ import {
   findFront,
   findJob,
   findJobByKey,
+  findOwnDocument,
   insertJob,
   type JobRow,
   listJobs,
@@ -109,10 +110,12 @@ export class JobDesk {
 
   /** The bytes of the document of one tuning set of a front. */
   async alternative(id: string, alternative: string): Promise<Uint8Array> {
-    const detail = await findDetail(this.parts.database.records, id, alternative);
+    const { records } = this.parts.database;
+    const find = alternative.startsWith('U') ? findOwnDocument : findDetail;
+    const detail = await find(records, id, alternative);
     if (detail !== undefined) return detail.document;
     await this.front(id);
-    const problem = `the front of job ${id} has nothing called ${alternative}`;
+    const problem = `job ${id} has no settings called ${alternative}`;
     throw new ServiceProblem('ALTERNATIVE_UNKNOWN', problem);
   }
 

@@ -3,6 +3,7 @@ import type { Database } from '../records/index.js';
 import type { CalculationDesk } from './calculation-desk.js';
 import type { ChangeDesk } from './change-desk.js';
 import type { JobDesk } from './job-desk.js';
+import type { OwnSettingsDesk } from './own-settings-desk.js';
 import { ServiceProblem } from './problem.js';
 import type { Readiness, Service } from './service.js';
 import { changesOf } from './watching.js';
@@ -12,20 +13,20 @@ export interface ServiceParts {
   readonly queue: WorkQueue;
   readonly calculations: CalculationDesk;
   readonly jobs: JobDesk;
+  readonly own: OwnSettingsDesk;
   readonly changes: ChangeDesk;
 }
 
 /** The service over its desks. */
 export function recordService(parts: ServiceParts): Service {
-  const { calculations, jobs, changes } = parts;
+  const { calculations, jobs, own, changes } = parts;
   return {
     check: (document, signal) => calculations.check(document, signal),
-    evaluate: (document, signal) => calculations.evaluate(document, null, signal),
-    evaluateSettings: (job, settings, signal) =>
-      reaching(async () => {
-        const document = await jobs.document(job);
-        return calculations.evaluate(document, settings, signal);
-      }),
+    evaluate: (document, signal) => calculations.evaluate(document, signal),
+    evaluateSettings: (job, settings, models, signal) =>
+      reaching(() => own.evaluate(job, settings, models, signal)),
+    keep: (job, keeping, signal) => reaching(() => own.keep(job, keeping, signal)),
+    ownSettings: (job) => reaching(() => own.list(job)),
     submit: (document, submission) => reaching(() => jobs.submit(document, submission)),
     jobs: (query) => reaching(() => jobs.jobs(query)),
     job: (id) => reaching(() => jobs.job(id)),

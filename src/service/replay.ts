@@ -5,6 +5,7 @@ import {
   type EmbeddedDatabase,
   endJob,
   insertChange,
+  insertOwnSettings,
   type JournalEntry,
 } from '../records/index.js';
 import { recordJob } from './job-desk.js';
@@ -44,6 +45,19 @@ async function replay(
       await endJob(records, entry.id, { state: 'cancelled', cancelled_by, cancel_reason });
       return;
     }
+    case 'kept': {
+      await insertOwnSettings(records, {
+        job_id: entry.job,
+        id: entry.id,
+        name: entry.name,
+        kept_by: entry.person ?? '',
+        summary: bytesOf(entry.summary),
+        document: bytesOf(entry.document),
+        hash: entry.hash,
+        kept_at: at,
+      });
+      return;
+    }
     case 'proposed': {
       if (present.has(entry.id)) return;
       await insertChange(records, {
@@ -73,7 +87,7 @@ async function replayJob(
   { id, key, parent, compute, document: base64 }: Extract<JournalEntry, { kind: 'job' }>,
   at: Date,
 ): Promise<void> {
-  const document = new Uint8Array(Buffer.from(base64, 'base64'));
+  const document = bytesOf(base64);
   const read = readJob(document);
   await recordJob(database, {
     id,
@@ -88,3 +102,5 @@ async function replayJob(
     accepted_at: at,
   });
 }
+
+const bytesOf = (base64: string): Uint8Array => new Uint8Array(Buffer.from(base64, 'base64'));

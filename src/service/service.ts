@@ -8,6 +8,9 @@ import type {
   JobList,
   JobQuery,
   JobRecord,
+  Keeping,
+  OwnSettings,
+  OwnSettingsList,
   Proposal,
   SheetDocument,
 } from '../contract/index.js';
@@ -38,8 +41,19 @@ export interface Service {
   check(document: Uint8Array, signal: AbortSignal): Promise<CheckReport>;
   /** The present settings of a document, scored: the bytes of an evaluation document. */
   evaluate(document: Uint8Array, signal: AbortSignal): Promise<Uint8Array>;
-  /** Other settings for an accepted job, scored in the same way. */
-  evaluateSettings(job: string, settings: Uint8Array, signal: AbortSignal): Promise<Uint8Array>;
+  /**
+   * Other settings for an accepted job, scored in the same way.
+   * @param models  `search` leaves out the models that only verify: for trying, while typing
+   */
+  evaluateSettings(
+    job: string,
+    settings: Uint8Array,
+    models: 'search' | 'all',
+    signal: AbortSignal,
+  ): Promise<Uint8Array>;
+  /** Keeps somebody's own settings, verified like an alternative, which can be proposed like one. */
+  keep(job: string, keeping: Keeping, signal: AbortSignal): Promise<OwnSettings>;
+  ownSettings(job: string): Promise<OwnSettingsList>;
 
   /**
    * Accepts a job: recorded before it is answered, queued after.

@@ -46,16 +46,20 @@ export function scoreFully(
   return { nominal, models: [nominal, ...others], responses };
 }
 
+/** Models that a tuning set is scored on: those of the search, or those that verify as well. */
+export type ScoredModels = 'search' | 'all';
+
 /** The evaluation document of one tuning set. */
 export function evaluateSettings(
   bench: Workbench,
   own: readonly (OwnSettings | null)[],
   provenance: Provenance,
   warnings: readonly Warning[],
+  scoredModels: ScoredModels = 'all',
 ): EvaluationDocument {
   const { compiled, tuning, preparation } = bench;
   // The models that verify, too, so that `worst` here and in a front is the worst of the same kind.
-  const further = bench.isExact ? [] : bench.freshModels(0);
+  const further = bench.isExact || scoredModels === 'search' ? [] : bench.freshModels(0);
   const { nominal, models, responses } = scoreFully(bench, own, further);
   const step = tuning.scan / tuning.stepsPerScan;
   return {

@@ -7,6 +7,7 @@ import {
   frontFormat,
   type Infeasibility,
   secondsPer,
+  type Verification,
 } from '../contract/index.js';
 import { passingShare } from '../scoring/index.js';
 import { nonDominated, selectEvenly } from '../search/index.js';
@@ -45,13 +46,7 @@ export function assembleFront(
     return {
       id,
       ...v.scored,
-      verified: {
-        models: v.models,
-        failures: v.failures,
-        confidence:
-          job.search.models === 1 ? Number(v.failures === 0) : passingShare(v.failures, v.models),
-        mended: v.mended,
-      },
+      verified: verificationOf(v, job.search.models === 1),
       detail: documented(id, v.detail),
     };
   });
@@ -82,6 +77,14 @@ export function assembleFront(
     .reduce((sum, r) => sum + ('evaluations' in r ? r.evaluations : 0), 0);
   return { front, details, evaluations };
 }
+
+/** How settings fared in verification, as documents say it. */
+export const verificationOf = (v: Verified, isExact: boolean): Verification => ({
+  models: v.models,
+  failures: v.failures,
+  confidence: isExact ? Number(v.failures === 0) : passingShare(v.failures, v.models),
+  mended: v.mended,
+});
 
 /** Twelve digits: a step is a scan divided, not a measurement. */
 const tidy = (value: number): number => Number(value.toPrecision(12));

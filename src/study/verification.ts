@@ -76,6 +76,14 @@ export function verifyAlternative(
   }
 }
 
+/**
+ * The judgement of settings as they stand: on the search set and the fresh models of the first round,
+ * nothing solved again.
+ */
+export function judgeSettings(bench: Workbench, own: readonly (OwnSettings | null)[]): Verified {
+  return judge(bench, own, [], examine(bench, own, 0, Number.POSITIVE_INFINITY).scores, 0);
+}
+
 const quickly = { singularValues: false, manualCases: false } as const;
 
 /** A round's fresh models one after the other, until so many of them break a limit. */

@@ -217,6 +217,14 @@ export class FixtureService implements Service {
     return this.refuse();
   }
 
+  keep(): Promise<never> {
+    return this.refuse();
+  }
+
+  ownSettings(): Promise<never> {
+    return this.refuse();
+  }
+
   evaluateSettings(): Promise<never> {
     return this.refuse();
   }

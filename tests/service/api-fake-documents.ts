@@ -7,7 +7,9 @@ import {
   type EvaluationDocument,
   type FrontDocument,
   type JobDocument,
+  type Keeping,
   type Metrics,
+  type OwnSettings,
   type ScoredSettings,
   type SheetDocument,
   sheetFormat,
@@ -46,6 +48,17 @@ const alternative = (id: string, gain: number): Alternative => ({
   ...scored(gain),
   verified: { models: 59, failures: 0, confidence: 0.95, mended: 0 },
   detail: hashOf(id),
+});
+
+/** Settings of one's own as they are kept. */
+export const ownSettings = (id: string, job: string, keeping: Keeping): OwnSettings => ({
+  ...alternative(id, 1.5),
+  id,
+  job,
+  name: keeping.name,
+  person: keeping.person,
+  keptAt: '2026-03-02T08:00:00.000Z',
+  accepted: true,
 });
 
 /** A front of two alternatives, spaced as no serializer would, so that untouched bytes show. */

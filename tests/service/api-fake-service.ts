@@ -11,6 +11,9 @@ import {
   type JobList,
   type JobQuery,
   type JobRecord,
+  type Keeping,
+  type OwnSettings,
+  type OwnSettingsList,
   type ProblemCode,
   type Proposal,
   readJob,
@@ -30,6 +33,7 @@ import {
   evaluationBytes,
   frontBytes,
   hashOf,
+  ownSettings,
   sheetOf,
 } from './api-fake-documents.js';
 
@@ -54,6 +58,7 @@ export class FakeService implements Service {
   readonly events = new EventEmitter().setMaxListeners(0);
   private readonly kept = new Map<string, Kept>();
   private readonly keys = new Map<string, string>();
+  private readonly own: OwnSettings[] = [];
   private readonly signed = new Map<string, ChangeRecord>();
 
   /** Moves a job on, and tells whoever watches it. */
@@ -78,6 +83,21 @@ export class FakeService implements Service {
     const read = readSettings(settings, job);
     if (!read.ok) throw new ServiceProblem('DOCUMENT_REFUSED', 'faulty', { refused: read });
     return evaluationBytes(job, record.hash);
+  }
+
+  async keep(id: string, keeping: Keeping): Promise<OwnSettings> {
+    const { job, record } = this.find(id);
+    const read = readSettings(JSON.stringify({ settings: keeping.settings }), job);
+    if (!read.ok) throw new ServiceProblem('DOCUMENT_REFUSED', 'faulty', { refused: read });
+    const name = `U${String(this.own.length + 1).padStart(2, '0')}`;
+    const kept = ownSettings(name, record.id, keeping);
+    this.own.push(kept);
+    return kept;
+  }
+
+  async ownSettings(id: string): Promise<OwnSettingsList> {
+    this.find(id);
+    return { own: this.own.filter(({ job }) => job === id) };
   }
 
   async submit(

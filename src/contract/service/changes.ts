@@ -1,5 +1,5 @@
 import { z } from 'zod';
-import { alternativeIdSchema } from '../front.js';
+import { proposableIdSchema } from '../front.js';
 import { keyed, text } from '../scalars.js';
 import { hashSchema } from '../scored.js';
 import { jobIdSchema } from './job-record.js';
@@ -19,7 +19,7 @@ export const actSchema = keyed({ person: personSchema, reason: reasonSchema });
 
 /** Proposes one alternative of a job's front. */
 export const proposalSchema = keyed({
-  alternative: alternativeIdSchema,
+  alternative: proposableIdSchema,
   person: personSchema,
   reason: reasonSchema,
 });
@@ -42,7 +42,7 @@ export const changeSchema = keyed({
   id: changeIdSchema,
   job: jobIdSchema,
   unitName: z.string(),
-  alternative: alternativeIdSchema,
+  alternative: proposableIdSchema,
   state: changeStateSchema,
   jobHash: hashSchema,
   frontHash: hashSchema,

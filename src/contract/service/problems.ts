@@ -23,6 +23,7 @@ export const problemCodes = {
   CROSS_SITE: { status: 403, title: 'The request was made by a page of another site' },
   JOB_UNKNOWN: { status: 404, title: 'There is no such job' },
   ALTERNATIVE_UNKNOWN: { status: 404, title: 'The front has no such alternative' },
+  NOT_PROPOSABLE: { status: 409, title: 'These settings cannot be proposed' },
   CHANGE_UNKNOWN: { status: 404, title: 'There is no such change' },
   FRONT_NOT_READY: { status: 409, title: 'The job has no front yet' },
   FRONT_ABSENT: { status: 409, title: 'The job ended without a front' },

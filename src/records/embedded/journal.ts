@@ -7,7 +7,7 @@ import { CodedError } from '../../base/index.js';
 const at = z.iso.datetime();
 const act = { id: z.string(), at, person: z.string().nullable(), reason: z.string().nullable() };
 
-/** What the journal keeps: every job accepted, and every act of a person. */
+/** What the journal keeps: every job accepted, and every act of a person with what it stands on. */
 const entrySchema = z.discriminatedUnion('kind', [
   z.strictObject({
     kind: z.literal('job'),
@@ -28,6 +28,15 @@ const entrySchema = z.discriminatedUnion('kind', [
     jobHash: z.string(),
     frontHash: z.string(),
     detailHash: z.string(),
+  }),
+  z.strictObject({
+    kind: z.literal('kept'),
+    ...act,
+    job: z.string(),
+    name: z.string(),
+    summary: z.base64(),
+    document: z.base64(),
+    hash: z.string(),
   }),
   z.strictObject({ kind: z.literal('approved'), ...act }),
   z.strictObject({ kind: z.literal('rejected'), ...act }),
