@@ -23,6 +23,7 @@ export function changeRoutes(app: Api, { service }: Skin): void {
             ...ofBodies,
             'JOB_UNKNOWN',
             'ALTERNATIVE_UNKNOWN',
+            'NOT_PROPOSABLE',
             'FRONT_NOT_READY',
             'FRONT_ABSENT',
             'STORAGE_FULL',

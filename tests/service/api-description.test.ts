@@ -61,6 +61,7 @@ describe('the description of the interface', () => {
       'get /api/jobs/{job}/document',
       'get /api/jobs/{job}/events',
       'get /api/jobs/{job}/front',
+      'get /api/jobs/{job}/own',
       'get /api/openapi.json',
       'get /healthz',
       'get /readyz',
@@ -72,6 +73,7 @@ describe('the description of the interface', () => {
       'post /api/jobs/{job}/cancel',
       'post /api/jobs/{job}/changes',
       'post /api/jobs/{job}/evaluate',
+      'post /api/jobs/{job}/own',
     ]);
   });
 
