@@ -1,8 +1,8 @@
-import { randomUUID } from 'node:crypto';
+import { createHash, randomUUID } from 'node:crypto';
 import { readFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { Client, jobPage, runCommandLine } from '../cli/index.js';
-import { frontSchema, type JobRecord } from '../contract/index.js';
+import { frontSchema, hasEnded, type JobRecord } from '../contract/index.js';
 import { bestCompromise } from './best-compromise.js';
 
 export interface TourSettings {
@@ -36,10 +36,9 @@ export async function takeTour({ url, job, results }: TourSettings): Promise<num
     say(`${results} remembers earlier demonstrations:`);
     await runCommandLine(['jobs', '--server', url, '--limit', '10']);
   }
-  const document = readFileSync(job);
-  const { job: accepted } = await client.submit(document, randomUUID(), job);
+  const accepted = await handIn(client, job, earlier);
   const { id } = accepted;
-  say(`handed in as job ${id}; the page shows it too: ${jobPage(url, id)}`);
+  say(`the page shows it too: ${jobPage(url, id)}`);
   const watched = await runCommandLine(['watch', id, '--server', url]);
   if (watched !== 0) return watched;
 
@@ -49,6 +48,24 @@ export async function takeTour({ url, job, results }: TourSettings): Promise<num
   if (shown !== 0) return shown;
   await compareWithEarlier(client, readFileSync(place), accepted, earlier);
   return takeSheet(client, id, place, results);
+}
+
+/** Hands the document in anew, unless an earlier demonstration was stopped before it was done with it. */
+async function handIn(
+  client: Client,
+  path: string,
+  earlier: readonly JobRecord[],
+): Promise<JobRecord> {
+  const document = readFileSync(path);
+  const hash = createHash('sha256').update(document).digest('hex');
+  const unfinished = earlier.find((job) => job.hash === hash && !hasEnded(job.state));
+  if (unfinished !== undefined) {
+    say(`job ${unfinished.id} was not done when it was stopped, and goes on`);
+    return unfinished;
+  }
+  const { job } = await client.submit(document, randomUUID(), path);
+  say(`handed in as job ${job.id}`);
+  return job;
 }
 
 /** The same document gives the same front; where an earlier job had it, that is shown. */

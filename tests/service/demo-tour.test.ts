@@ -22,16 +22,27 @@ describe('the demonstration', () => {
   });
   afterAll(() => scratch.remove());
 
-  const tour = (): Promise<Ending> =>
+  const tour = (onOutput: Parameters<typeof run>[2]['onOutput'] = () => {}): Promise<Ending> =>
     run(process.execPath, [demo, '--once', '--port', '0', '--job', 'job.json'], {
       folder: scratch.folder,
+      onOutput,
     });
   const result = (name: string): string =>
     readFileSync(join(scratch.folder, 'demo-results', name), 'utf8');
 
-  it('takes a job from its document to an approved sheet, and remembers it the next time', async () => {
+  it('takes a job to an approved sheet, goes on where it was stopped, and remembers it the next time', async () => {
+    let sent = false;
+    const stopped = await tour((output, send) => {
+      if (sent || !output.includes('waiting to begin')) return;
+      sent = true;
+      send('SIGINT');
+    });
+    expect(stopped.code).toBe(130);
+    expect(stopped.output).toContain('what was accepted goes on at the next start');
+
     const first = await tour();
     expect(first.code).toBe(0);
+    expect(first.output).toMatch(/job J\w+ was not done when it was stopped, and goes on/);
     expect(first.answer).toContain('3 alternatives for the tuning of this unit');
     const sheet = sheetSchema.parse(JSON.parse(result('change-sheet.json')));
     expect(sheet.change.state).toBe('approved');
