@@ -14,9 +14,9 @@ export function momentInWords(utc: string): { readonly day: string; readonly tim
   return { day: day.format(at), time: clock.format(at) };
 }
 
-/** Seconds as people say them: 8.20 s, 2 min 30 s, 1 h 5 min. */
+/** Seconds as people say them: 8.2 s, 2 min 30 s, 1 h 5 min. */
 export function duration(seconds: number): string {
-  if (seconds < 10) return `${figure(seconds, 2)} s`;
+  if (seconds < 10 && !Number.isInteger(seconds)) return `${figure(seconds, 2)} s`;
   const whole = Math.round(seconds);
   if (whole < 60) return `${whole} s`;
   if (whole < 3600) return pair(Math.floor(whole / 60), 'min', whole % 60, 's');
