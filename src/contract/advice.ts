@@ -3,6 +3,7 @@ import type { Findings } from './findings.js';
 import { loopsByTag, processDirection } from './loop-paths.js';
 import type { LoopAsWritten } from './loops.js';
 import { ResponseGraph } from './response-graph.js';
+import type { ResponseDocument } from './responses.js';
 import { secondsPer } from './scalars.js';
 
 /** Warns of what is allowed but seldom meant. */
@@ -14,6 +15,27 @@ export function advise(draft: Draft, findings: Findings): void {
     adviseOnFilter(loop, draft, findings);
     adviseOnPresent(loop, findings);
   }
+  for (const list of [draft.responses, ...draft.points.map((point) => point.responses)]) {
+    for (const response of list.entries) adviseOnEnd(response, findings);
+  }
+}
+
+/** Share of a step response's range by which its last tenth may still move. */
+const settledShare = 0.05;
+
+/** A step response that was broken off early has another gain than its last value. */
+function adviseOnEnd({ path, value }: Entry<ResponseDocument>, findings: Findings): void {
+  const { model } = value;
+  if (model.kind !== 'step-response' || model.integrating) return;
+  const { values } = model;
+  const tail = values.slice(-Math.ceil(values.length / 10) - 1);
+  const rangeOf = (list: readonly number[]): number =>
+    list.reduce((most, v) => Math.max(most, v), list[0] ?? 0) -
+    list.reduce((least, v) => Math.min(least, v), list[0] ?? 0);
+  if (rangeOf(tail) <= settledShare * rangeOf([0, ...values])) return;
+  const problem =
+    'the values end while the measurement still moves: the last one is taken as the gain';
+  findings.warning([...path, 'model', 'values'], problem);
 }
 
 /** A gain whose sign disagrees with the response feeds back positively, which is seldom meant. */

@@ -48,6 +48,10 @@ function isHurwitz(polynomial: readonly number[]): boolean {
   return true;
 }
 
+/** The last step of a list of values that begins at 0. */
+export const lastSlope = (values: readonly number[]): number =>
+  (values.at(-1) ?? 0) - (values.at(-2) ?? 0);
+
 /** Whether a response never moves its measurement. */
 export function isZero(model: ResponseModel): boolean {
   switch (model.kind) {
@@ -103,6 +107,6 @@ export function directionOf(model: ResponseModel): number | undefined {
       return Math.sign(last(model.numerator)) * Math.sign(last(model.denominator));
     }
     case 'step-response':
-      return Math.sign(model.values.at(-1) ?? 0);
+      return Math.sign(model.integrating ? lastSlope(model.values) : (model.values.at(-1) ?? 0));
   }
 }

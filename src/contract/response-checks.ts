@@ -1,6 +1,6 @@
 import type { Draft, Entry, Listed } from './draft.js';
 import type { Findings } from './findings.js';
-import { excessOrder, isInstant, isZero } from './model-facts.js';
+import { excessOrder, isInstant, isZero, lastSlope } from './model-facts.js';
 import { pairText } from './response-graph.js';
 import type { ResponseDocument, ResponseModel } from './responses.js';
 import { ringsOf } from './rings.js';
@@ -70,6 +70,11 @@ function checkModel(response: Entry<ResponseDocument>, draft: Draft, findings: F
   const { model, from } = response.value;
   const place = [...path, 'numerator'];
   if (model.kind === 'second-order') checkSecondOrder(model, path, findings);
+  if (model.kind === 'step-response' && model.integrating && lastSlope(model.values) === 0) {
+    const problem = 'the last two values are equal, so there is no slope that could go on';
+    const allowed = 'a last value other than the one before, or "integrating": false';
+    findings.fault('MODEL_INCONSISTENT', [...path, 'values'], problem, allowed);
+  }
   if (model.kind === 'transfer-function') {
     if (model.denominator[0] === 0) {
       const problem = 'the leading coefficient of the denominator is zero';

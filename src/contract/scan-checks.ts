@@ -95,10 +95,18 @@ function checkTimes(
   }
   for (const list of [draft.responses, ...draft.points.map((point) => point.responses)]) {
     for (const { path, value } of list.entries) {
-      const count = Math.ceil(value.model.deadTime / fastest);
-      if (count <= mostScans) continue;
-      const problem = `a dead time of ${count} scans`;
-      findings.fault('TOO_MANY_SCANS', [...path, 'model', 'deadTime'], problem, longest);
+      const { model } = value;
+      const count = Math.ceil(model.deadTime / fastest);
+      if (count > mostScans) {
+        const problem = `a dead time of ${count} scans`;
+        findings.fault('TOO_MANY_SCANS', [...path, 'model', 'deadTime'], problem, longest);
+      }
+      if (model.kind !== 'step-response') continue;
+      const length = Math.ceil((model.interval * model.values.length) / fastest);
+      if (length > mostScans) {
+        const problem = `a step response of ${length} scans`;
+        findings.fault('TOO_MANY_SCANS', [...path, 'model', 'interval'], problem, longest);
+      }
     }
   }
 }

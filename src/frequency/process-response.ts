@@ -1,6 +1,13 @@
 import type { LoopNetwork } from '../controllers/index.js';
 import { ComplexMatrix } from '../numerics/index.js';
-import type { SampledChannel, SampledInput, SampledUnit, SharedBlock } from '../responses/index.js';
+import type {
+  SampledChannel,
+  SampledInput,
+  SampledUnit,
+  SharedBlock,
+  TappedSection,
+} from '../responses/index.js';
+import { tapsAt, tapsAtRest } from './tapped-response.js';
 
 /**
  * Frequency response of a sampled unit as its loops see it: from each loop's output to each loop's
@@ -66,6 +73,11 @@ export class ProcessResponse {
       const [r, m] = this.channelAt(channel, zr, zi, angle);
       this.add(channel.source, channel.measurement, r, m, re, im, offset);
     }
+    for (const section of this.unit.tapped) {
+      if (!this.isSeen(section.source, section.measurement)) continue;
+      const [r, m] = this.tappedAt(section, zr, zi, angle);
+      this.add(section.source, section.measurement, r, m, re, im, offset);
+    }
     poleRe.fill(1, poleOffset, poleOffset + n);
     poleIm.fill(0, poleOffset, poleOffset + n);
     for (const block of this.unit.blocks) {
@@ -118,6 +130,12 @@ export class ProcessResponse {
         unused,
         0,
       );
+    }
+    for (const section of this.unit.tapped) {
+      const { source, measurement } = section;
+      if (!this.isSeen(source, measurement)) continue;
+      const value = section.sums ? tapsAtRest(section) : this.tappedAt(section, 1, 0, 0)[0];
+      this.add(source, measurement, value, 0, response, unused, 0);
     }
     for (let i = 0; i < n; i += 1) {
       for (let j = 0; j < n; j += 1) {
@@ -179,16 +197,7 @@ export class ProcessResponse {
     let nowIm = 0;
     let beforeRe = 0;
     let beforeIm = 0;
-    const inverse = this.resolvent(n);
-    for (let i = 0; i < n * n; i += 1) {
-      inverse.re[i] = -(c.transition[i] as number);
-      inverse.im[i] = 0;
-    }
-    for (let i = 0; i < n; i += 1) {
-      inverse.re[i * n + i] = (inverse.re[i * n + i] as number) + zr;
-      inverse.im[i * n + i] = zi;
-    }
-    inverse.invert();
+    const inverse = this.inverseAt(c.transition, n, zr, zi);
     for (let i = 0; i < n; i += 1) {
       const weight = c.output[i] as number;
       for (let j = 0; j < n; j += 1) {
@@ -203,6 +212,49 @@ export class ProcessResponse {
     const now = turn(nowRe, nowIm, -angle * c.delay);
     const before = turn(beforeRe, beforeIm, -angle * (c.delay + 1));
     return [now[0] + before[0] + direct[0], now[1] + before[1] + direct[1]];
+  }
+
+  /** (z - transition)^-1 */
+  private inverseAt(transition: Float64Array, n: number, zr: number, zi: number): ComplexMatrix {
+    const inverse = this.resolvent(n);
+    for (let i = 0; i < n * n; i += 1) {
+      inverse.re[i] = -(transition[i] as number);
+      inverse.im[i] = 0;
+    }
+    for (let i = 0; i < n; i += 1) {
+      inverse.re[i * n + i] = (inverse.re[i * n + i] as number) + zr;
+      inverse.im[i * n + i] = zi;
+    }
+    inverse.invert();
+    return inverse;
+  }
+
+  /** output (z - transition)^-1 sum of weights[j] z^-delays[j] */
+  private tappedAt(t: TappedSection, zr: number, zi: number, angle: number): [number, number] {
+    const n = t.order;
+    const { re, im } = tapsAt(t, angle);
+    if (n > 1) {
+      const inverse = this.inverseAt(t.transition, n, zr, zi);
+      let sumRe = 0;
+      let sumIm = 0;
+      for (let i = 0; i < n; i += 1) {
+        const weight = t.output[i] as number;
+        for (let j = 0; j < n; j += 1) {
+          const r = weight * (inverse.re[i * n + j] as number);
+          const m = weight * (inverse.im[i * n + j] as number);
+          sumRe += r * (re[j] as number) - m * (im[j] as number);
+          sumIm += r * (im[j] as number) + m * (re[j] as number);
+        }
+      }
+      return [sumRe, sumIm];
+    }
+    const pole = t.transition[0] as number;
+    // z - 1 at small angles without cancellation
+    const half = Math.sin(angle / 2);
+    const dr = pole === 1 ? -2 * half * half : zr - pole;
+    const weight = (t.output[0] as number) / (dr * dr + zi * zi);
+    const [ur, ui] = [re[0] as number, im[0] as number];
+    return [weight * (ur * dr + ui * zi), weight * (ui * dr - ur * zi)];
   }
 
   /**

@@ -2,7 +2,9 @@ export { pathsOf, type Response } from './chains.js';
 export {
   denominatorOf,
   firstOrder,
+  integrates,
   integrating,
+  isDirect,
   isIntegrator,
   isUnstableFactor,
   longRun,
@@ -10,6 +12,8 @@ export {
   rational,
   secondOrderLags,
   secondOrderPeriod,
+  stepResponse,
+  unstablePoles,
   varyModel,
 } from './model.js';
 export {
@@ -18,5 +22,7 @@ export {
   type SampledUnit,
   type SharedBlock,
   sampleUnit,
+  type TappedSection,
   type UnitPath,
 } from './sampling.js';
+export { thinModel } from './thinned-course.js';

@@ -8,10 +8,18 @@ import {
   type Polynomial,
   trimPolynomial,
 } from '../numerics/index.js';
+import {
+  courseOf,
+  coursesInSeries,
+  mostCornerPairs,
+  type StepCourse,
+  stretchCourse,
+} from './step-course.js';
 
 /**
  * A process response in engineering units per engineering unit:
- * numerator(s) / product of factors(s) * exp(-deadTime s), times in seconds.
+ * numerator(s) / product of factors(s) * exp(-deadTime s), times in seconds; and times the course of
+ * the measured step responses in it, if there are any.
  *
  * The denominator stays factored (first order, or second order for a complex pair), so that stiff
  * and repeated lags keep their full accuracy and an integrator is exactly the factor `s`.
@@ -22,6 +30,7 @@ export interface ProcessModel {
   /** Ascending powers of s, each of order one or two. */
   readonly factors: readonly Polynomial[];
   readonly deadTime: number;
+  readonly course?: StepCourse;
 }
 
 const lagFactor = (timeConstant: number): Polynomial => Float64Array.of(1, timeConstant);
@@ -103,6 +112,24 @@ export function rational(
   return { numerator: trimPolynomial(numerator).map((c) => c * scale), factors, deadTime };
 }
 
+/**
+ * A measured step response, straight between its values.
+ * @param interval  s
+ * @param values  PV after a unit step, the first one interval after it
+ * @param integrating  true where the last slope goes on, false where the last value stays
+ */
+export function stepResponse(
+  interval: number,
+  values: readonly number[],
+  integrating: boolean,
+  deadTime: number,
+): ProcessModel {
+  const read = courseOf(interval, values, integrating);
+  if (read === null) return firstOrder(0, interval, deadTime);
+  const { course, wait } = read;
+  return { numerator: Float64Array.of(1), factors: [], deadTime: deadTime + wait, course };
+}
+
 /** Real factors with unit low coefficient where that exists, so that lags read as time constants. */
 function factorize(roots: readonly ComplexNumber[]): Polynomial[] {
   const factors: Polynomial[] = [];
@@ -131,13 +158,50 @@ export function isIntegrator(factor: Polynomial): boolean {
   return factor.length === 2 && factor[0] === 0;
 }
 
-/** One response behind another. */
+/** How many poles of a response lie on the imaginary axis or to the right of it. */
+export function unstablePoles({ factors, course }: ProcessModel): number {
+  const unstable = factors.filter(isUnstableFactor);
+  return unstable.reduce((n, f) => n + f.length - 1, course?.integrators ?? 0);
+}
+
+/** True when a response holds an integrator. */
+export const integrates = ({ factors, course }: ProcessModel): boolean =>
+  (course?.integrators ?? 0) > 0 || factors.some(isIntegrator);
+
+/** True when a measurement jumps as soon as its dead time is over. */
+export function isDirect({ numerator, factors, course }: ProcessModel): boolean {
+  const order = factors.reduce((n, f) => n + f.length - 1, course?.power ?? 0);
+  return numerator.length > order;
+}
+
+/**
+ * One response behind another.
+ * @throws {CodedError} STRUCTURE_UNSUPPORTED  two step responses with too many corners between them
+ */
 export function inSeries(a: ProcessModel, b: ProcessModel): ProcessModel {
   return {
     numerator: multiplyPolynomials(a.numerator, b.numerator),
     factors: [...a.factors, ...b.factors],
     deadTime: a.deadTime + b.deadTime,
+    ...seriesCourse(a.course, b.course),
   };
+}
+
+function seriesCourse(
+  a: StepCourse | undefined,
+  b: StepCourse | undefined,
+): { readonly course?: StepCourse } {
+  if (a === undefined || b === undefined) {
+    const course = a ?? b;
+    return course === undefined ? {} : { course };
+  }
+  if (a.times.length * b.times.length > mostCornerPairs) {
+    throw new CodedError(
+      'STRUCTURE_UNSUPPORTED',
+      `step responses in series with ${a.times.length} and ${b.times.length} corners: at most ${mostCornerPairs} pairs of them can be multiplied out; allowed: fewer values, or one of the two as a transfer function`,
+    );
+  }
+  return { course: coursesInSeries(a, b) };
 }
 
 /** Product of all denominator factors. */
@@ -153,8 +217,8 @@ export function longRun(model: ProcessModel): {
   readonly integrators: number;
   readonly gain: number;
 } {
-  let integrators = 0;
-  let gain = evaluatePolynomial(model.numerator, 0);
+  let integrators = model.course?.integrators ?? 0;
+  let gain = evaluatePolynomial(model.numerator, 0) * (model.course?.gain ?? 1);
   for (const factor of model.factors) {
     if (isIntegrator(factor)) {
       integrators += 1;
@@ -179,5 +243,6 @@ export function varyModel(
     numerator: stretch(model.numerator).map((c) => c * gainFactor),
     factors: model.factors.map((f) => (isIntegrator(f) ? f : stretch(f))),
     deadTime: model.deadTime * deadTimeFactor,
+    ...(model.course === undefined ? {} : { course: stretchCourse(model.course, lagFactorBy) }),
   };
 }

@@ -1,10 +1,7 @@
-import {
-  discretizeHeld,
-  multiplyMatrices,
-  multiplyPolynomials,
-  type Polynomial,
-} from '../numerics/index.js';
+import { multiplyPolynomials, type Polynomial } from '../numerics/index.js';
+import { sampleInput, splitDeadTime } from './held-input.js';
 import { isIntegrator, type ProcessModel } from './model.js';
+import { sampleCourse, type Taps, type UnstablePart } from './sampled-course.js';
 import { type SplitModel, splitModel } from './state-space.js';
 
 /** One path from a held source to a measurement: a response in continuous time. */
@@ -33,6 +30,12 @@ export interface SampledChannel extends SampledInput {
   readonly directDelay: number;
 }
 
+/** A stable part of one path through measured step responses: PV += output x. */
+export interface TappedSection extends Taps {
+  readonly source: number;
+  readonly measurement: number;
+}
+
 /**
  * The integrators and unstable poles of one measurement, shared by all its inputs:
  * x[k+1] = transition x[k] + inputs; PV += x[0].
@@ -53,52 +56,11 @@ export interface SampledUnit {
   readonly sourceCount: number;
   readonly measurementCount: number;
   readonly channels: readonly SampledChannel[];
+  readonly tapped: readonly TappedSection[];
   /** At most one block a measurement. */
   readonly blocks: readonly SharedBlock[];
   /** Longest look-back into the inputs, in steps. */
   readonly longestDelay: number;
-}
-
-/** Whole steps and the remaining fraction of a dead time; rounding error is not a fraction. */
-function splitDeadTime(deadTime: number, step: number): { steps: number; rest: number } {
-  const ratio = deadTime / step;
-  const nearest = Math.round(ratio);
-  if (Math.abs(ratio - nearest) < 1e-9 * Math.max(1, ratio)) return { steps: nearest, rest: 0 };
-  const steps = Math.floor(ratio);
-  return { steps, rest: deadTime - steps * step };
-}
-
-/**
- * Exact sampling of x' = a x + b u(t - deadTime) for u held over each step.
- *
- * Within a step the delayed input changes once, `rest` after its start, hence two input terms.
- * @source K. J. Åström, B. Wittenmark, Computer-Controlled Systems, 3rd ed. 1997, sec. 2.3
- */
-function sampleInput(
-  a: Float64Array,
-  b: Float64Array,
-  order: number,
-  deadTime: number,
-  step: number,
-): { transition: Float64Array; now: Float64Array; before: Float64Array; delay: number } {
-  const { steps, rest } = splitDeadTime(deadTime, step);
-  const whole = discretizeHeld(a, b, order, 1, step);
-  if (rest === 0) {
-    return {
-      transition: whole.transition,
-      now: whole.input,
-      before: new Float64Array(order),
-      delay: steps,
-    };
-  }
-  const late = discretizeHeld(a, b, order, 1, step - rest);
-  const early = discretizeHeld(a, b, order, 1, rest);
-  return {
-    transition: whole.transition,
-    now: late.input,
-    before: multiplyMatrices(late.transition, early.input, order, order, 1),
-    delay: steps,
-  };
 }
 
 function sampleChannels(path: UnitPath, split: SplitModel, step: number): SampledChannel[] {
@@ -166,13 +128,14 @@ function missingFactors(all: readonly Polynomial[], part: readonly Polynomial[])
   return rest;
 }
 
-/** Observer form of the common unstable denominator of one measurement, one input column a path. */
-function sampleBlock(
-  measurement: number,
-  parts: readonly { readonly path: UnitPath; readonly split: SplitModel }[],
-  step: number,
-): SharedBlock {
-  const factors = unionOfFactors(parts.map(({ split }) => split.unstableFactors));
+/** What the unstable poles of one path carry, with the source it starts at. */
+interface BlockPart extends UnstablePart {
+  readonly source: number;
+}
+
+/** Observer form of the common unstable denominator of one measurement, one input column a part. */
+function sampleBlock(measurement: number, parts: readonly BlockPart[], step: number): SharedBlock {
+  const factors = unionOfFactors(parts.map((part) => part.factors));
   let denominator: Polynomial = Float64Array.of(1);
   for (const factor of factors) denominator = multiplyPolynomials(denominator, factor);
   const order = denominator.length - 1;
@@ -183,16 +146,16 @@ function sampleBlock(
     if (i + 1 < order) a[i * order + i + 1] = 1;
   }
   let transition = new Float64Array(order * order);
-  const inputs = parts.map(({ path, split }): SampledInput => {
-    let numerator = split.unstableNumerator;
-    for (const factor of missingFactors(factors, split.unstableFactors)) {
+  const inputs = parts.map((part): SampledInput => {
+    let { numerator } = part;
+    for (const factor of missingFactors(factors, part.factors)) {
       numerator = multiplyPolynomials(numerator, factor);
     }
     const b = new Float64Array(order);
     for (let i = 0; i < order; i += 1) b[i] = (numerator[order - 1 - i] ?? 0) / lead;
-    const sampled = sampleInput(a, b, order, path.model.deadTime, step);
+    const sampled = sampleInput(a, b, order, part.deadTime, step);
     transition = sampled.transition as Float64Array<ArrayBuffer>;
-    return { source: path.source, delay: sampled.delay, now: sampled.now, before: sampled.before };
+    return { source: part.source, delay: sampled.delay, now: sampled.now, before: sampled.before };
   });
   return {
     measurement,
@@ -211,6 +174,7 @@ function sampleBlock(
  * Integrators and equal unstable poles into one measurement become one state, so that the
  * realisation carries no false pole at the edge of stability.
  * @param step  s
+ * @throws {CodedError} STRUCTURE_UNSUPPORTED
  */
 export function sampleUnit(
   paths: readonly UnitPath[],
@@ -219,14 +183,22 @@ export function sampleUnit(
   step: number,
 ): SampledUnit {
   const channels: SampledChannel[] = [];
-  const unstable: { path: UnitPath; split: SplitModel }[][] = Array.from(
-    { length: measurementCount },
-    () => [],
-  );
+  const tapped: TappedSection[] = [];
+  const unstable: BlockPart[][] = Array.from({ length: measurementCount }, () => []);
   for (const path of paths) {
-    const split = splitModel(path.model);
+    const { source, measurement, model } = path;
+    const parts = unstable[measurement] as BlockPart[];
+    if (model.course !== undefined) {
+      const sampled = sampleCourse(model, step);
+      for (const taps of sampled.taps) tapped.push({ source, measurement, ...taps });
+      for (const part of sampled.unstable) parts.push({ source, ...part });
+      continue;
+    }
+    const split = splitModel(model);
     channels.push(...sampleChannels(path, split, step));
-    if (split.unstableFactors.length > 0) unstable[path.measurement]?.push({ path, split });
+    if (split.unstableFactors.length === 0) continue;
+    const { unstableNumerator: numerator, unstableFactors: factors } = split;
+    parts.push({ source, numerator, factors, deadTime: model.deadTime });
   }
   const blocks = unstable.flatMap((parts, measurement) =>
     parts.length > 0 ? [sampleBlock(measurement, parts, step)] : [],
@@ -236,5 +208,6 @@ export function sampleUnit(
     longestDelay = Math.max(longestDelay, input.delay + 1);
   }
   for (const channel of channels) longestDelay = Math.max(longestDelay, channel.directDelay);
-  return { step, sourceCount, measurementCount, channels, blocks, longestDelay };
+  for (const { delays } of tapped) longestDelay = Math.max(longestDelay, delays.at(-1) as number);
+  return { step, sourceCount, measurementCount, channels, tapped, blocks, longestDelay };
 }

@@ -62,8 +62,8 @@ export function splitModel(model: ProcessModel): SplitModel {
 }
 
 /** A zero at the origin takes an integrator with it: what is left has no false pole there. */
-function withoutCancelledIntegrators(
-  model: ProcessModel,
+export function withoutCancelledIntegrators(
+  model: Pick<ProcessModel, 'numerator' | 'factors'>,
 ): Pick<ProcessModel, 'numerator' | 'factors'> {
   let { numerator } = model;
   const factors = [...model.factors];
@@ -81,7 +81,7 @@ function withoutCancelledIntegrators(
  * numerator / (p q) = first / p + second / q for coprime p, q and a strictly proper left side.
  * Time is scaled so that stiff lags leave the equations well conditioned.
  */
-function partialFractions(
+export function partialFractions(
   numerator: Polynomial,
   p: Polynomial,
   q: Polynomial,
@@ -115,7 +115,7 @@ function partialFractions(
 const apart = 1.05;
 
 /** Lags side by side where they are well apart, which is cheapest to simulate; else in a chain. */
-function realize(numerator: Polynomial, factors: readonly Polynomial[]): StateSpace[] {
+export function realize(numerator: Polynomial, factors: readonly Polynomial[]): StateSpace[] {
   const modes = realizeModes(numerator, factors);
   if (modes !== null) return modes;
   const chain = realizeChain(numerator, factors);

@@ -1,5 +1,5 @@
 import type { LoopNetwork } from '../controllers/index.js';
-import type { SampledInput, SampledUnit } from '../responses/index.js';
+import type { SampledInput, SampledUnit, TappedSection } from '../responses/index.js';
 
 /**
  * A sampled unit as flat arrays for one walk a step: what its loops do not see is left out.
@@ -13,6 +13,7 @@ export interface FlatUnit {
   /** Steps of history kept before t = 0. */
   readonly lead: number;
   readonly groups: SectionGroups;
+  readonly taps: TapSections;
   readonly wide: readonly WideSection[];
   readonly direct: readonly DirectTerm[];
 }
@@ -27,6 +28,18 @@ export interface SectionGroups {
   readonly decay: Float64Array;
   readonly now: Float64Array;
   readonly before: Float64Array;
+}
+
+/** First-order sections of many taps on one input each; those of section s from `start[s]` on. */
+export interface TapSections {
+  readonly source: Int32Array;
+  readonly measurement: Int32Array;
+  readonly decay: Float64Array;
+  readonly start: Int32Array;
+  /** By tap. */
+  readonly delay: Int32Array;
+  /** By tap, scaled so that the PV gains the state itself. */
+  readonly weight: Float64Array;
 }
 
 /** A section of order two or more. */
@@ -81,7 +94,45 @@ export function flattenUnit(unit: SampledUnit, network: LoopNetwork): FlatUnit {
     output[0] = 1;
     wide.push({ ...block, output });
   }
-  return { lead: unit.longestDelay + 1, groups: groupSections(sections), wide, direct };
+  const tapped = unit.tapped.filter(({ measurement }) => seen.has(measurement));
+  for (const section of tapped) {
+    if (section.order > 1) wide.push({ ...section, inputs: inputsOf(section) });
+  }
+  const taps = layTaps(tapped.filter(({ order }) => order === 1));
+  return { lead: unit.longestDelay + 1, groups: groupSections(sections), taps, wide, direct };
+}
+
+/** The taps of a wide section as inputs one by one. */
+function inputsOf({ source, order, delays, weights }: TappedSection): SampledInput[] {
+  const before = new Float64Array(order);
+  return Array.from(delays, (delay, j) => {
+    return { source, delay, now: weights.subarray(j * order, (j + 1) * order), before };
+  });
+}
+
+function layTaps(sections: readonly TappedSection[]): TapSections {
+  const start = new Int32Array(sections.length + 1);
+  sections.forEach(({ delays }, s) => {
+    start[s + 1] = (start[s] as number) + delays.length;
+  });
+  const delay = new Int32Array(start[sections.length] as number);
+  const weight = new Float64Array(delay.length);
+  sections.forEach(({ delays, weights, output }, s) => {
+    delay.set(delays, start[s]);
+    const scale = output[0] as number;
+    weight.set(
+      weights.map((w) => w * scale),
+      start[s],
+    );
+  });
+  return {
+    source: Int32Array.from(sections, (s) => s.source),
+    measurement: Int32Array.from(sections, (s) => s.measurement),
+    decay: Float64Array.from(sections, (s) => s.transition[0] as number),
+    start,
+    delay,
+    weight,
+  };
 }
 
 function groupSections(sections: readonly Section[]): SectionGroups {
@@ -142,6 +193,37 @@ export function advanceGroups(
     }
     const m = measurement[g] as number;
     values[m] = (values[m] as number) + sum;
+  }
+}
+
+/**
+ * Advance the sections of many taps from step k - 1 to k and add them to the PVs.
+ * @param moves  by source: 0 where it stands still
+ * @param history  held inputs, a row of `stride` a source, step 0 at `lead`
+ */
+export function advanceTaps(
+  taps: TapSections,
+  moves: Uint8Array,
+  states: Float64Array,
+  history: Float64Array,
+  stride: number,
+  lead: number,
+  k: number,
+  values: Float64Array,
+): void {
+  const { source, measurement, decay, start, delay, weight } = taps;
+  for (let s = 0; s < source.length; s += 1) {
+    const from = source[s] as number;
+    if (moves[from] === 0) continue;
+    const base = from * stride + lead - 1 + k;
+    const end = start[s + 1] as number;
+    let x = (decay[s] as number) * (states[s] as number);
+    for (let j = start[s] as number; j < end; j += 1) {
+      x += (weight[j] as number) * (history[base - (delay[j] as number)] as number);
+    }
+    states[s] = x;
+    const m = measurement[s] as number;
+    values[m] = (values[m] as number) + x;
   }
 }
 

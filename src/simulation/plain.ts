@@ -1,5 +1,11 @@
 import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
-import type { SampledChannel, SampledInput, SampledUnit, SharedBlock } from '../responses/index.js';
+import type {
+  SampledChannel,
+  SampledInput,
+  SampledUnit,
+  SharedBlock,
+  TappedSection,
+} from '../responses/index.js';
 import type { Upset } from './upset.js';
 
 /** What every loop did, sample by sample; arrays of length steps + 1, deviations from rest. */
@@ -161,7 +167,9 @@ function scan(
 /** The sampled process with its states; inputs are read from the history of held values. */
 class Process {
   private readonly channels: readonly SampledChannel[];
+  private readonly tapped: readonly TappedSection[];
   private readonly blocks: readonly SharedBlock[];
+  private readonly tappedStates: readonly Float64Array[];
   private readonly channelStates: readonly Float64Array[];
   private readonly blockStates: readonly Float64Array[];
   private readonly values: Float64Array;
@@ -170,11 +178,13 @@ class Process {
   /** @param moves  by source: false where it stands still, and what it drives with it */
   constructor(unit: SampledUnit, moves: readonly boolean[]) {
     this.channels = unit.channels.filter((c) => moves[c.source]);
+    this.tapped = unit.tapped.filter((t) => moves[t.source]);
     this.blocks = unit.blocks;
     this.channelStates = this.channels.map((c) => new Float64Array(c.order));
+    this.tappedStates = this.tapped.map((t) => new Float64Array(t.order));
     this.blockStates = this.blocks.map((b) => new Float64Array(b.order));
     this.values = new Float64Array(unit.measurementCount);
-    const orders = [...this.channels, ...this.blocks].map((part) => part.order);
+    const orders = [...this.channels, ...this.tapped, ...this.blocks].map((part) => part.order);
     this.scratch = new Float64Array(Math.max(0, ...orders));
   }
 
@@ -185,6 +195,12 @@ class Process {
       const x = this.channelStates[i] as Float64Array;
       this.turn(x, channel.transition);
       drive(x, channel, held, k - 1);
+    }
+    for (let i = 0; i < this.tapped.length; i += 1) {
+      const section = this.tapped[i] as TappedSection;
+      const x = this.tappedStates[i] as Float64Array;
+      this.turn(x, section.transition);
+      tap(x, section, held, k - 1);
     }
     for (let i = 0; i < this.blocks.length; i += 1) {
       const block = this.blocks[i] as SharedBlock;
@@ -207,6 +223,13 @@ class Process {
       }
       for (let j = 0; j < x.length; j += 1) y += (channel.output[j] as number) * (x[j] as number);
       values[channel.measurement] = (values[channel.measurement] as number) + y;
+    }
+    for (let i = 0; i < this.tapped.length; i += 1) {
+      const { measurement, output } = this.tapped[i] as TappedSection;
+      const x = this.tappedStates[i] as Float64Array;
+      let y = 0;
+      for (let j = 0; j < x.length; j += 1) y += (output[j] as number) * (x[j] as number);
+      values[measurement] = (values[measurement] as number) + y;
     }
     for (let i = 0; i < this.blocks.length; i += 1) {
       const { measurement } = this.blocks[i] as SharedBlock;
@@ -249,5 +272,20 @@ function drive(
   const before = late > 0 ? (u[late - 1] as number) : 0;
   for (let i = 0; i < x.length; i += 1) {
     x[i] = (x[i] as number) + (input.now[i] as number) * now + (input.before[i] as number) * before;
+  }
+}
+
+/** Every tap adds the input of its own delay. */
+function tap(
+  x: Float64Array,
+  { source, delays, weights }: TappedSection,
+  held: readonly Float64Array[],
+  k: number,
+): void {
+  for (let j = 0; j < delays.length; j += 1) {
+    const u = heldAt(held, source, k - (delays[j] as number));
+    for (let i = 0; i < x.length; i += 1) {
+      x[i] = (x[i] as number) + (weights[j * x.length + i] as number) * u;
+    }
   }
 }

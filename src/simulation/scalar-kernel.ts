@@ -1,6 +1,7 @@
 import type { DiscreteController, Loop } from '../controllers/index.js';
 import {
   advanceGroups,
+  advanceTaps,
   advanceWide,
   type FlatUnit,
   flattenUnit,
@@ -30,6 +31,7 @@ export class ScalarKernel implements SimulationKernel {
   private readonly lead: number;
   private readonly values: Float64Array;
   private readonly states: Float64Array;
+  private readonly tapStates: Float64Array;
   private readonly wideStates: Float64Array;
   private readonly scratch: Float64Array;
   /** In scan order: loop, its measurement, source (or -1), setpoint source, outer and inner loop. */
@@ -57,6 +59,7 @@ export class ScalarKernel implements SimulationKernel {
     this.history = new Float64Array(sources * this.stride);
     this.values = new Float64Array(first?.measurementCount ?? 0);
     this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.groups.decay.length)));
+    this.tapStates = new Float64Array(Math.max(1, ...this.flat.map((f) => f.taps.decay.length)));
     this.wideStates = new Float64Array(Math.max(1, ...this.flat.map(wideOrder)));
     this.scratch = new Float64Array(
       Math.max(1, ...this.flat.flatMap((f) => f.wide.map((w) => w.order))),
@@ -116,6 +119,7 @@ export class ScalarKernel implements SimulationKernel {
     const bands = setup.bands[index] as readonly number[];
     this.history.fill(0);
     this.states.fill(0);
+    this.tapStates.fill(0);
     this.wideStates.fill(0);
     moves.fill(0);
     setup.network.loops.forEach((loop: Loop, i) => {
@@ -137,7 +141,8 @@ export class ScalarKernel implements SimulationKernel {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
     const { active, bases } = this;
     const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;
-    const { groups, wide, direct } = flat;
+    const { groups, taps, wide, direct } = flat;
+    const tapped = taps.source.length > 0;
     const { steps, stepsPerScan } = this.setup;
     const loops = order.length;
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
@@ -147,6 +152,7 @@ export class ScalarKernel implements SimulationKernel {
     for (let k = 0; k <= steps; k += 1) {
       for (let m = 0; m < values.length; m += 1) values[m] = 0;
       advanceGroups(groups, active, count, bases, states, history, k, values);
+      if (tapped) advanceTaps(taps, this.moves, this.tapStates, history, stride, lead, k, values);
       if (wide.length > 0)
         advanceWide(wide, this.wideStates, this.scratch, history, stride, lead, k, values);
       if (pushed >= 0) history[pushed * stride + lead + k] = push;

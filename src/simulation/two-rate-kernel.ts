@@ -2,6 +2,7 @@ import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index
 import type { SampledUnit } from '../responses/index.js';
 import {
   advanceGroups,
+  advanceTaps,
   advanceWide,
   type FlatUnit,
   flattenUnit,
@@ -54,6 +55,7 @@ export class TwoRateKernel implements SimulationKernel {
   private readonly bank: Float64Array;
   private readonly values: Float64Array;
   private readonly states: Float64Array;
+  private readonly tapStates: Float64Array;
   private readonly wideStates: Float64Array;
   private readonly scratch: Float64Array;
   private readonly history: Float64Array;
@@ -79,6 +81,7 @@ export class TwoRateKernel implements SimulationKernel {
     this.bank = new Float64Array(count * SLOTS);
     this.values = new Float64Array(first?.measurementCount ?? 0);
     this.states = new Float64Array(Math.max(1, ...this.flat.map((f) => f.groups.decay.length)));
+    this.tapStates = new Float64Array(Math.max(1, ...this.flat.map((f) => f.taps.decay.length)));
     this.wideStates = new Float64Array(Math.max(1, ...this.flat.map(wideOrder)));
     this.scratch = new Float64Array(
       Math.max(1, ...this.flat.flatMap((f) => f.wide.map((w) => w.order))),
@@ -135,6 +138,7 @@ export class TwoRateKernel implements SimulationKernel {
     const own = this.own[unit] as readonly OwnResponse[];
     history.fill(0);
     states.fill(0);
+    this.tapStates.fill(0);
     this.wideStates.fill(0);
     for (const response of own) response.rest();
     loops.forEach((loop, i) => {
@@ -219,6 +223,10 @@ export class TwoRateKernel implements SimulationKernel {
     const { values, states, history, active, bases } = this;
     for (let m = 0; m < values.length; m += 1) values[m] = 0;
     advanceGroups(flat.groups, active, count, bases, states, history, k, values);
+    if (flat.taps.source.length > 0) {
+      const { moves, tapStates, rowLength, lead } = this;
+      advanceTaps(flat.taps, moves, tapStates, history, rowLength, lead, k, values);
+    }
     if (flat.wide.length > 0) {
       const { wideStates, scratch, rowLength, lead } = this;
       advanceWide(flat.wide, wideStates, scratch, history, rowLength, lead, k, values);

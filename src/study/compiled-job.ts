@@ -8,7 +8,7 @@ import {
   type OwnSettings,
   type SettingsForm,
 } from '../controllers/index.js';
-import { isUnstableFactor, pathsOf, type UnitPath } from '../responses/index.js';
+import { pathsOf, type UnitPath, unstablePoles } from '../responses/index.js';
 import type { LoopCase } from '../scoring/index.js';
 import { type RuleSettings, ruleSettings } from './baseline-settings.js';
 import { compileSpace } from './compiled-space.js';
@@ -92,14 +92,12 @@ function refuseUnheld(job: JobDocument, paths: readonly UnitPath[], network: Loo
     network.loops.flatMap((l) => (l.automatic && 'source' in l.drives ? [l.drives.source] : [])),
   );
   const setpoints = new Set(network.loops.map((l) => l.setpointSource));
-  const unstableCount = (path: UnitPath): number =>
-    path.model.factors.filter(isUnstableFactor).length;
   network.loops.forEach((loop, i) => {
     if (!loop.automatic) return;
     const into = paths.filter((p) => p.measurement === loop.measurement);
     const isHeld = (p: UnitPath): boolean => driven.has(p.source) || setpoints.has(p.source);
-    const held = into.filter(isHeld).reduce((most, p) => Math.max(most, unstableCount(p)), 0);
-    const free = into.find((p) => !isHeld(p) && unstableCount(p) > held);
+    const held = into.filter(isHeld).reduce((most, p) => Math.max(most, unstablePoles(p.model)), 0);
+    const free = into.find((p) => !isHeld(p) && unstablePoles(p.model) > held);
     if (free === undefined) return;
     const inputs = [...job.unit.actuators, ...job.unit.disturbances];
     const { tag, measurement } = job.loops[i] as LoopDocument;

@@ -17,9 +17,14 @@ function timeConstantOf(factor: Float64Array): number {
   return c2 === undefined ? Math.abs(c1 / c0) : Math.sqrt(Math.abs(c2 / c0));
 }
 
-/** Sum of a response's lags, s; integrators aside. */
-export const lagsOf = (model: ProcessModel): number =>
-  model.factors.filter((f) => !isUnstableFactor(f)).reduce((sum, f) => sum + timeConstantOf(f), 0);
+/** A lag is over, to a hundredth, after so many of itself: -ln 0.01. */
+const lagsToSettle = 4.6;
+
+/** Sum of a response's lags, s; integrators aside, a step response by the lag that settles with it. */
+export const lagsOf = ({ factors, course }: ProcessModel): number =>
+  factors
+    .filter((f) => !isUnstableFactor(f))
+    .reduce((sum, f) => sum + timeConstantOf(f), (course?.settling ?? 0) / lagsToSettle);
 
 /** Paths into the measurements of closed loops. */
 function seenPaths(compiled: CompiledJob): UnitPath[] {
@@ -42,6 +47,7 @@ export const longestDeadTime = (compiled: CompiledJob): number =>
 export function stepsBetweenScans(compiled: CompiledJob): number {
   let shortest = Number.POSITIVE_INFINITY;
   for (const path of seenPaths(compiled)) {
+    shortest = Math.min(shortest, path.model.course?.quickness ?? Number.POSITIVE_INFINITY);
     for (const factor of path.model.factors) {
       const t = timeConstantOf(factor);
       if (t > 0) shortest = Math.min(shortest, t);

@@ -1,4 +1,3 @@
-import { CodedError } from '../base/index.js';
 import type { ResponseModel } from '../contract/index.js';
 import {
   firstOrder,
@@ -7,12 +6,13 @@ import {
   rational,
   secondOrderLags,
   secondOrderPeriod,
+  stepResponse,
 } from '../responses/index.js';
 
 /**
  * The process model a response document states, times in seconds.
  * @param unit  seconds in the job's time unit
- * @throws {CodedError} STRUCTURE_UNSUPPORTED for kinds this version cannot compute
+ * @throws {CodedError} RESPONSE_IMPROPER, RESPONSE_ILL_POSED
  */
 export function modelOf(model: ResponseModel, unit: number): ProcessModel {
   const deadTime = model.deadTime * unit;
@@ -47,7 +47,7 @@ export function modelOf(model: ResponseModel, unit: number): ProcessModel {
         deadTime,
       );
     case 'step-response':
-      throw new CodedError('STRUCTURE_UNSUPPORTED', 'step-response models are not yet available');
+      return stepResponse(model.interval * unit, model.values, model.integrating, deadTime);
   }
 }
 

@@ -1,5 +1,5 @@
 import type { Loop } from '../controllers/index.js';
-import { isUnstableFactor, type UnitPath } from '../responses/index.js';
+import { type UnitPath, unstablePoles } from '../responses/index.js';
 import type { CompiledJob } from './compiled-job.js';
 import { lagsOf } from './horizon.js';
 
@@ -18,7 +18,7 @@ export function isQuick(compiled: CompiledJob, index: number, longStep: number):
   const loop = network.loops[index] as Loop;
   if (!loop.automatic || !('source' in loop.drives)) return false;
   const own = ownPaths(paths, loop, loop.drives.source);
-  if (own.some((p) => p.model.factors.some(isUnstableFactor))) return false;
+  if (own.some((p) => unstablePoles(p.model) > 0)) return false;
   const time = own.reduce((most, p) => Math.max(most, p.model.deadTime + lagsOf(p.model)), 0);
   return (network.outerOf[index] as number) >= 0 || time < quickSteps * longStep;
 }
@@ -29,6 +29,7 @@ export function standsApart(compiled: CompiledJob, index: number): boolean {
   if (!('source' in loop.drives)) return false;
   return ownPaths(compiled.paths, loop, loop.drives.source).every(
     ({ model }) =>
+      model.course === undefined &&
       model.factors.every((f) => f.length === 2) &&
       model.numerator.length <= model.factors.length &&
       separated(model.factors),

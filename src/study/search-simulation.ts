@@ -1,5 +1,11 @@
 import { type ControllerSettings, discretizeForLongStep } from '../controllers/index.js';
-import { pathsOf, type Response, sampleUnit, type UnitPath } from '../responses/index.js';
+import {
+  pathsOf,
+  type Response,
+  sampleUnit,
+  thinModel,
+  type UnitPath,
+} from '../responses/index.js';
 import {
   type LoopCase,
   settlingBands,
@@ -52,7 +58,8 @@ export class SearchSimulation {
     const long = tuning.scan * stride;
     const quick = tuning.network.loops.map((_, i) => isQuick(compiled, i, long));
     this.scans = quick.map((q) => (q ? tuning.scan : long));
-    const split = paths.map((p) =>
+    const thinned = paths.map((p) => p.map((path) => ({ ...path, model: thinModel(path.model) })));
+    const split = thinned.map((p) =>
       splitPaths(p, tuning.network.loops, quick, (long - tuning.scan) / 2),
     );
     this.kernel = new TwoRateKernel({

@@ -1,5 +1,5 @@
 import type { ControllerSettings, Loop } from '../controllers/index.js';
-import type { Response } from '../responses/index.js';
+import { isDirect, type Response } from '../responses/index.js';
 import {
   referenceSpeed,
   type SpeedParts,
@@ -78,10 +78,7 @@ function needsEveryScan(compiled: CompiledJob, tuning: TuningCase): boolean {
   const byScan = tuning.limits.some(
     (l) => l.quantity === 'outputRate' || l.quantity === 'outputMove' || l.quantity === 'travel',
   );
-  const direct = compiled.paths.some(
-    ({ model }) => model.numerator.length > model.factors.reduce((n, f) => n + f.length - 1, 0),
-  );
-  return byScan || direct;
+  return byScan || compiled.paths.some(({ model }) => isDirect(model));
 }
 
 /** Every quick loop can be simulated apart, and every inner loop is quick. */

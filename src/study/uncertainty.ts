@@ -1,5 +1,11 @@
 import { Random } from '../base/index.js';
-import { isIntegrator, isUnstableFactor, type Response, varyModel } from '../responses/index.js';
+import {
+  integrates,
+  isIntegrator,
+  isUnstableFactor,
+  type Response,
+  varyModel,
+} from '../responses/index.js';
 
 /** A response with how far its gain, lags and dead time may lie from nominal, as fractions. */
 export interface UncertainResponse extends Response {
@@ -31,7 +37,7 @@ const factorOf = (spread: number, position: number): number =>
 function vary(responses: readonly UncertainResponse[], draw: Draw): Response[] {
   return responses.map((response, r) => {
     const { spread, to, model } = response;
-    const shared = model.factors.some((f) => isIntegrator(f));
+    const shared = integrates(model);
     const unstable = model.factors.some((f) => isUnstableFactor(f) && !isIntegrator(f));
     const b = draw.measurement(to);
     let gain: number;

@@ -14,6 +14,7 @@ import {
   rational,
   secondOrderLags,
   secondOrderPeriod,
+  stepResponse,
   type UnitPath,
 } from '../../src/responses/index.js';
 import type { Upset } from '../../src/simulation/index.js';
@@ -46,6 +47,8 @@ export interface Extras {
   readonly manual: boolean;
   readonly setpointSources: boolean;
   readonly integrators: boolean;
+  /** Measured step responses, alone or behind a lag. */
+  readonly measured?: boolean;
 }
 
 function drawModel(random: Random, gain: number, extras: Extras): ProcessModel {
@@ -53,7 +56,17 @@ function drawModel(random: Random, gain: number, extras: Extras): ProcessModel {
   const dead = chance(random, 0.3) ? 0 : pick(random, [1, 3, 6 * random.uniform()]);
   const kinds = ['lag', 'lag', 'lags', 'equal', 'swing', 'direct'];
   if (extras.integrators) kinds.push('level', 'level');
+  if (extras.measured) kinds.push('measured', 'measured', 'measuredLevel');
   switch (pick(random, kinds)) {
+    case 'measured':
+      return stepResponse(
+        pick(random, [1, 0.4, lag / 4]),
+        measuredValues(random, gain),
+        false,
+        dead,
+      );
+    case 'measuredLevel':
+      return stepResponse(3, [0, gain / 15, gain / 6], true, dead);
     case 'lags':
       return secondOrderLags(
         gain,
@@ -72,6 +85,16 @@ function drawModel(random: Random, gain: number, extras: Extras): ProcessModel {
     default:
       return firstOrder(gain, lag, dead);
   }
+}
+
+/** A rise to the gain in a dozen values, with a little noise on all but the last. */
+function measuredValues(random: Random, gain: number): number[] {
+  const values = Array.from(
+    { length: 12 },
+    (_, k) => gain * (1 - Math.exp(-(k + 1) / 3) + 0.02 * random.normal()),
+  );
+  values[11] = gain;
+  return values;
 }
 
 const drawSettings = (random: Random, gain: number): ControllerSettings => ({

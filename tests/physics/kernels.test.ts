@@ -41,47 +41,53 @@ import {
 } from './run-bench.js';
 
 describe('the kernel of the search', () => {
-  it('agrees with the plain simulation on drawn units, upsets and steps between scans', () => {
-    let compared = 0;
-    fc.assert(
-      fc.property(fc.integer(), fc.constantFrom(1, 2, 3), (seed, stepsPerScan) => {
-        const drawn = drawUnit(new Random(seed), everything);
-        const { paths, sourceCount, network, controllers, upsets } = drawn;
-        const steps = 150 * stepsPerScan;
-        const band = 0.05;
-        const unit = sampleUnit(paths, sourceCount, network.loops.length, 1 / stepsPerScan);
-        const bands = upsets.map((upset) =>
-          network.loops.map((_, i) =>
-            upset.kind === 'setpoint' && upset.loop === i ? 0.05 * Math.abs(upset.size) : band,
-          ),
-        );
-        const kernel = new ScalarKernel({
-          network,
-          units: [unit],
-          upsets,
-          bands,
-          stepsPerScan,
-          steps,
-        });
-        const all = upsets.map((_, u) => u);
-        const figures = kernel.simulate([controllers], [0], all);
-        const width = network.loops.length * figureCount;
-        upsets.forEach((upset, u) => {
-          const run = runPlainly(drawn, upset, steps, stepsPerScan);
-          if (grows(run)) return;
-          const own = figures.subarray(u * width, (u + 1) * width);
-          const gap = kernelGap(own, run, upset, band);
-          expect({ upset, gap }).toEqual({ upset, gap: gap < 1e-8 ? gap : 0 });
-          compared += 1;
-        });
-        // Run again, in another order and among others, it gives the same bytes.
-        const again = kernel.simulate([controllers, controllers], [0, 0], all.toReversed());
-        expect(again.subarray(0, width)).toEqual(figures.subarray((upsets.length - 1) * width));
-      }),
-      few(150),
-    );
-    expect(compared).toBeGreaterThan(300);
-  });
+  it.each([
+    ['lags and integrators', everything],
+    ['measured step responses', { ...everything, measured: true }],
+  ])(
+    'agrees with the plain simulation on drawn units of %s, upsets and steps between scans',
+    (_name, extras) => {
+      let compared = 0;
+      fc.assert(
+        fc.property(fc.integer(), fc.constantFrom(1, 2, 3), (seed, stepsPerScan) => {
+          const drawn = drawUnit(new Random(seed), extras);
+          const { paths, sourceCount, network, controllers, upsets } = drawn;
+          const steps = 150 * stepsPerScan;
+          const band = 0.05;
+          const unit = sampleUnit(paths, sourceCount, network.loops.length, 1 / stepsPerScan);
+          const bands = upsets.map((upset) =>
+            network.loops.map((_, i) =>
+              upset.kind === 'setpoint' && upset.loop === i ? 0.05 * Math.abs(upset.size) : band,
+            ),
+          );
+          const kernel = new ScalarKernel({
+            network,
+            units: [unit],
+            upsets,
+            bands,
+            stepsPerScan,
+            steps,
+          });
+          const all = upsets.map((_, u) => u);
+          const figures = kernel.simulate([controllers], [0], all);
+          const width = network.loops.length * figureCount;
+          upsets.forEach((upset, u) => {
+            const run = runPlainly(drawn, upset, steps, stepsPerScan);
+            if (grows(run)) return;
+            const own = figures.subarray(u * width, (u + 1) * width);
+            const gap = kernelGap(own, run, upset, band);
+            expect({ upset, gap }).toEqual({ upset, gap: gap < 1e-8 ? gap : 0 });
+            compared += 1;
+          });
+          // Run again, in another order and among others, it gives the same bytes.
+          const again = kernel.simulate([controllers, controllers], [0, 0], all.toReversed());
+          expect(again.subarray(0, width)).toEqual(figures.subarray((upsets.length - 1) * width));
+        }),
+        few(150),
+      );
+      expect(compared).toBeGreaterThan(300);
+    },
+  );
 
   it('agrees with the plain simulation where a disturbance jumps straight into a measurement', () => {
     const paths = [

@@ -19,6 +19,15 @@ export function respond(
       ...b,
       output: Float64Array.from({ length: b.order }, (_, i) => (i === 0 ? 1 : 0)),
     })),
+    ...unit.tapped.map((t) => ({
+      ...t,
+      inputs: Array.from(t.delays, (delay, j) => ({
+        source: t.source,
+        delay,
+        now: t.weights.subarray(j * t.order, (j + 1) * t.order),
+        before: new Float64Array(t.order),
+      })),
+    })),
   ];
   for (const { order, transition, inputs, output, measurement } of parts) {
     let x = new Float64Array(order);

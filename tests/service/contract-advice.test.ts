@@ -108,6 +108,20 @@ describe('An accepted job', () => {
       expect.stringMatching(/^loops\[0\]\.loadStep: /),
     ]);
   });
+
+  it('is warned of a step response that was broken off before it came to rest', () => {
+    const withValues = (values: number[], integrating = false): readonly string[] =>
+      warningsOf((job) => {
+        withoutPoints(job);
+        const model = { kind: 'step-response', interval: 1, values, integrating };
+        job.unit.responses[4] = { ...job.unit.responses[4], model };
+      });
+    expect(withValues([-1, -2, -3])).toEqual([
+      expect.stringMatching(/^unit\.responses\[4\]\.model\.values: .*the gain/),
+    ]);
+    expect(withValues([-1, -2, -3], true)).toEqual([]);
+    expect(withValues([-1, -2, -2.9, -3, -3])).toEqual([]);
+  });
 });
 
 describe('A loop to be brought into service', () => {

@@ -84,6 +84,9 @@ export const faultyRelations = {
     change('a leading zero', 'unit.responses[4].model.denominator', (job) =>
       model(job, 4, rational([1], [0, 1])),
     ),
+    change('a slope of nothing that goes on', 'unit.responses[4].model.values', (job) =>
+      model(job, 4, { kind: 'step-response', interval: 1, values: [-1, -1], integrating: true }),
+    ),
   ],
   RESPONSE_DUPLICATE: [
     change(
@@ -314,15 +317,12 @@ export const faultyRelations = {
   TOO_MANY_SCANS: [
     set('a horizon', 'unit.horizon', 4000, /4000 min is 240000 scans.*200000 scans/),
     set('a dead time', 'unit.responses[0].model.deadTime', 4000),
+    change('a step response', 'unit.responses[4].model.interval', (job) =>
+      model(job, 4, { kind: 'step-response', interval: 2000, values: [-1, -2] }),
+    ),
   ],
   HORIZON_SHORT: [set('nine scans', 'unit.horizon', 0.15, /at least 0\.166/)],
   NOT_YET_AVAILABLE: [
-    change(
-      'a step response',
-      'unit.responses[4].model.kind',
-      (job) => model(job, 4, { kind: 'step-response', interval: 1, values: [0, -1, -2] }),
-      later,
-    ),
     change(
       'a chain through a level',
       'unit.responses[6].from',

@@ -33,7 +33,8 @@ const repeatedDamping = 0.99;
 
 /**
  * A response as lags and leads, or null where the rules do not apply: underdamped or unstable poles,
- * more than one integrator, zeros that are complex or at rest, no gain.
+ * more than one integrator, zeros that are complex or at rest, no gain. A measured step response is
+ * taken for the lag and dead time fitted to it.
  */
 export function lagFormOf(model: ProcessModel): LagForm | null {
   const { integrators, gain } = longRun(model);
@@ -48,7 +49,12 @@ export function lagFormOf(model: ProcessModel): LagForm | null {
   }
   const leads = timesOf(model.numerator);
   if (leads === null) return null;
-  return { gain, integrating: integrators === 1, lags, leads, deadTime: model.deadTime };
+  let { deadTime } = model;
+  for (const fit of model.course?.fits ?? []) {
+    if (fit.lag !== null) lags.push(fit.lag);
+    deadTime += fit.deadTime;
+  }
+  return { gain, integrating: integrators === 1, lags, leads, deadTime };
 }
 
 /** T of every factor (T s + 1) of a polynomial; null when there is a complex pair or a root at zero. */

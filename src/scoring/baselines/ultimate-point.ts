@@ -97,7 +97,7 @@ function placeCrossing(respond: Respond, from: number, to: number, start: number
 
 /** s: dead time and all lags of a response, and the scan. */
 export function slownessOf(model: ProcessModel, scan: number): number {
-  let sum = model.deadTime + scan;
+  let sum = model.deadTime + scan + (model.course?.settling ?? 0) / 4;
   for (const factor of model.factors) {
     const [low, slope, curve] = [factor[0] as number, factor[1] as number, factor[2] ?? 0];
     if (low !== 0) sum += Math.abs(slope / low) + Math.sqrt(Math.abs(curve / low));
