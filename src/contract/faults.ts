@@ -33,6 +33,8 @@ export const faultCodes = {
   RESPONSE_MISSING: 'a loop whose output does not reach its measurement',
   SETPOINT_SOURCE: 'a response from the setpoint of a loop that does not stay closed as it is',
   POINT_MISMATCH: 'an operating point whose responses are not those of the unit',
+  FEEDFORWARD_IMPROPER: 'a feedforward term with a lead and no lag',
+  FEEDFORWARD_RING: 'feedforward that comes back to the output it starts from without any delay',
   CASCADE_RING: 'loops that drive each other in a ring',
   CASCADE_BROKEN: 'a closed loop that drives the setpoint of a loop in manual',
   DRIVEN_TWICE: 'an actuator or inner loop that two closed loops drive',

@@ -53,26 +53,6 @@ function checkEnds(loop: LoopEntry, draft: Draft, loops: LoopsByTag, findings: F
   } else {
     checkInner(loop, loops.get(drives.loop), findings);
   }
-  for (const [index, term] of value.feedforward.entries()) {
-    const place = [...path, 'feedforward', index, 'from'];
-    if (typeof term.from === 'string') {
-      if (tags.disturbances.has(term.from)) continue;
-      findings.fault(
-        'REFERENCE_UNKNOWN',
-        place,
-        'no disturbance has this tag',
-        'a disturbance tag',
-      );
-    } else if (!tags.loops.has(term.from.outputOf) || term.from.outputOf === value.tag) {
-      const problem = 'no other loop has this tag';
-      findings.fault(
-        'REFERENCE_UNKNOWN',
-        [...place, 'outputOf'],
-        problem,
-        'the tag of another loop',
-      );
-    }
-  }
 }
 
 function checkInner(loop: LoopEntry, inner: LoopEntry | undefined, findings: Findings): void {

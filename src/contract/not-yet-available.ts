@@ -13,7 +13,6 @@ interface Unavailable {
 /** What the format has and this release does not compute yet; a part that is built leaves the list. */
 const unavailable: readonly Unavailable[] = [
   { part: 'responses from a measurement that integrates or is unstable', places: longChains },
-  { part: 'feedforward', places: feedforwards },
   { part: 'dead band', places: (draft) => actuatorsWith(draft, 'deadband') },
   { part: 'resolution', places: (draft) => actuatorsWith(draft, 'resolution') },
   { part: 'closed loops with different scans', places: unequalScans },
@@ -47,11 +46,6 @@ function longChains(draft: Draft): readonly Path[] {
     );
     return chained.map(({ path }) => [...path, 'from']);
   });
-}
-
-function feedforwards(draft: Draft): readonly Path[] {
-  const loops = draft.loops.entries.filter(({ value }) => value.feedforward.length > 0);
-  return loops.map(({ path }) => [...path, 'feedforward']);
 }
 
 function actuatorsWith(draft: Draft, key: 'deadband' | 'resolution'): readonly Path[] {

@@ -3,6 +3,7 @@ import { checkBounds } from './bound-checks.js';
 import { readDocumentText } from './document-text.js';
 import { type Draft, draftOf } from './draft.js';
 import type { Fault, Warning } from './faults.js';
+import { checkFeedforward } from './feedforward-checks.js';
 import { Findings, valueAt } from './findings.js';
 import { reportIssues } from './issues.js';
 import { type JobDocument, jobFormat, jobSchema, settleDefaults } from './job.js';
@@ -33,6 +34,7 @@ const checks: readonly ((draft: Draft, findings: Findings) => void)[] = [
   checkRanges,
   checkResponses,
   checkLoops,
+  checkFeedforward,
   checkSettings,
   checkBounds,
   checkScans,

@@ -6,7 +6,7 @@ import { secondsPer, type TimeUnit } from './scalars.js';
 import { isMoved, snappedScans } from './scans.js';
 
 /** The most scans a horizon or dead time may have. */
-const mostScans = 200_000;
+export const mostScans = 200_000;
 /** The fewest scans that show how a loop settles. */
 const fewestScans = 10;
 

@@ -4,6 +4,11 @@ import {
   type DiscreteController,
   discretizeController,
 } from './algorithm.js';
+import {
+  type DiscreteFeedforward,
+  discretizeFeedforward,
+  type Feedforward,
+} from './feedforward.js';
 
 /** Mean delay of y += (1 - decay)(x - y) run every `step`, s. */
 const delayOf = (decay: number, step: number): number => (step * decay) / (1 - decay);
@@ -43,5 +48,38 @@ export function discretizeForLongStep(
     filterOrder: atScan.filterOrder,
     setpointWeight: kp === 0 ? 0 : (atScan.kp * atScan.setpointWeight - excess) / kp,
     derivativeSetpointWeight: atScan.derivativeSetpointWeight,
+  };
+}
+
+/** A feedforward term whose direct part may fall between two steps: + directLate u[k-directDelay-1]. */
+export interface LongStepFeedforward extends DiscreteFeedforward {
+  readonly directLate: number;
+}
+
+/**
+ * A feedforward term run once every `longStep`; at the scan itself exactly the term there.
+ *
+ * The lagged part is exact for a signal held over the long step, the direct part is dealt to the two
+ * steps around its delay. The output of another loop is held longer than at its scan, which is taken
+ * off the dead time of the lagged part where there is as much.
+ */
+export function feedforwardForLongStep(
+  term: Feedforward,
+  scan: number,
+  longStep: number,
+): LongStepFeedforward {
+  const atScan = discretizeFeedforward(term, scan);
+  if (longStep <= scan) return { ...atScan, directLate: 0 };
+  const shift = 'loop' in term.from ? (longStep - scan) / 2 : 0;
+  const deadTime = Math.max(0, term.deadTime - shift);
+  const lagged = discretizeFeedforward({ ...term, deadTime }, longStep);
+  const delay = (atScan.directDelay * scan) / longStep;
+  const directDelay = Math.floor(delay + 1e-9);
+  const late = Math.max(0, delay - directDelay);
+  return {
+    ...lagged,
+    direct: atScan.direct * (1 - late),
+    directLate: atScan.direct * late,
+    directDelay,
   };
 }

@@ -1,4 +1,13 @@
 import { CodedError } from '../base/index.js';
+import { type Feedforward, isInstantFeedforward } from './feedforward.js';
+
+/** What keeps a final element from following its signal, in its own units. */
+export interface FinalElement {
+  /** How far a reversed signal has to go back before the element follows: its backlash. */
+  readonly deadband: number;
+  /** Smallest step; positions lie on a grid through the operating position. 0 for none. */
+  readonly resolution: number;
+}
 
 /** One controller as the closed loop sees it; all values are deviations from the operating point. */
 export interface Loop {
@@ -13,12 +22,19 @@ export interface Loop {
   readonly rateLimit: number;
   /** The held source that equals this loop's setpoint, where a response was identified from it; else -1. */
   readonly setpointSource: number;
+  /** Known terms added to its output before the limits. */
+  readonly feedforward?: readonly Feedforward[];
+  /** Of the actuator it drives, where that has a dead band or a resolution. */
+  readonly element?: FinalElement;
 }
 
 /** All loops of a unit and how they hang together. */
 export interface LoopNetwork {
   readonly loops: readonly Loop[];
-  /** Loop numbers, every outer loop before the loop it drives. */
+  /**
+   * Loop numbers in the order they run in each scan: every outer loop before the loop it drives, and
+   * every loop before those that a feedforward term tells of its output at once.
+   */
   readonly order: readonly number[];
   /** The loop that drives this loop's setpoint, or -1. */
   readonly outerOf: readonly number[];
@@ -27,7 +43,8 @@ export interface LoopNetwork {
 }
 
 /**
- * @throws {CodedError} STRUCTURE_UNSUPPORTED  a ring of loops, or a setpoint driven twice
+ * @throws {CodedError} STRUCTURE_UNSUPPORTED  a ring of loops, of instant feedforward, or of both; or a
+ *   setpoint driven twice
  */
 export function buildNetwork(loops: readonly Loop[]): LoopNetwork {
   const outerOf = new Array<number>(loops.length).fill(-1);
@@ -42,24 +59,48 @@ export function buildNetwork(loops: readonly Loop[]): LoopNetwork {
     }
     outerOf[inner] = i;
   });
-  const depth = loops.map((_, i) => {
-    let count = 0;
-    for (let at = outerOf[i] as number; at >= 0; at = outerOf[at] as number) {
-      count += 1;
-      if (count > loops.length) {
-        throw new CodedError('STRUCTURE_UNSUPPORTED', 'loops that drive each other in a ring');
-      }
-    }
-    return count;
+  const before = loops.map((loop, i) => {
+    const outer = outerOf[i] as number;
+    // A loop in manual stands still and listens to nothing.
+    const told = (loop.feedforward ?? []).flatMap((term) => {
+      const tells = 'loop' in term.from && loops[term.from.loop]?.automatic === true;
+      return tells && loop.automatic && isInstantFeedforward(term) ? [term.from.loop] : [];
+    });
+    return outer >= 0 ? [outer, ...told] : told;
   });
-  const order = loops
-    .map((_, i) => i)
-    .sort((a, b) => (depth[a] as number) - (depth[b] as number) || a - b);
+  const order = orderOf(before);
   const outermost = loops.flatMap((loop, i) => {
     const outer = outerOf[i] as number;
     return loop.automatic && (outer < 0 || !(loops[outer] as Loop).automatic) ? [i] : [];
   });
   return { loops, order, outerOf, outermost };
+}
+
+/**
+ * Numbers sorted by how long a way leads up to each, then by themselves.
+ * @param before  by number: those that come first
+ */
+function orderOf(before: readonly (readonly number[])[]): number[] {
+  const depths = before.map(() => 0);
+  for (let pass = 0; ; pass += 1) {
+    let settled = true;
+    before.forEach((list, i) => {
+      const depth = list.reduce((most, b) => Math.max(most, (depths[b] as number) + 1), 0);
+      if (depth === depths[i]) return;
+      depths[i] = depth;
+      settled = false;
+    });
+    if (settled) break;
+    if (pass > before.length) {
+      throw new CodedError(
+        'STRUCTURE_UNSUPPORTED',
+        'loops that drive each other, or tell each other of their outputs at once, in a ring',
+      );
+    }
+  }
+  return before
+    .map((_, i) => i)
+    .sort((a, b) => (depths[a] as number) - (depths[b] as number) || a - b);
 }
 
 /** The loop and every loop above it in its cascade: what opens when the loop is put in manual. */

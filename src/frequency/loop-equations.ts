@@ -6,20 +6,22 @@ import {
 } from '../controllers/index.js';
 import { ComplexMatrix, eliminate } from '../numerics/index.js';
 import type { SampledUnit } from '../responses/index.js';
+import { FeedforwardPaths } from './feedforward-paths.js';
 import { ProcessResponse } from './process-response.js';
 
 /**
  * The equations of all closed loops at one frequency, in the outputs u of the automatic loops:
  *
- *   u_i - Cr_i u_outer(i) + Cy_i sum_j P_ij u_j = w_i
+ *   u_i - Cr_i u_outer(i) - sum_j F_ij u_j + Cy_i sum_j P_ij u_j = w_i
  *
- * with P from output j to measurement i. Column j of the inverse is what a signal added at output j
+ * with P from output j to measurement i and F the feedforward from output j to output i. Column j of the inverse is what a signal added at output j
  * does to all outputs, so the diagonal of the inverse is the sensitivity 1 / (1 + L) of each loop cut
  * at its controller's output with everything else closed, its outer loops included.
  *
  * The determinant, multiplied by (1 - p / z) for every unstable or integrating pole of process and
  * controllers, is F(z): analytic on and outside the unit circle, one at infinity, and zero exactly at
- * the closed loop's poles there.
+ * the closed loop's poles there. Feedforward has stable poles and no ring without delay, so it changes
+ * nothing of that.
  */
 export class LoopEquations {
   /** Loop numbers of the automatic loops, the order of rows and columns. */
@@ -31,6 +33,7 @@ export class LoopEquations {
   readonly process: ProcessResponse;
   /** Row of each loop's outer loop, or -1. */
   readonly outerRow: Int32Array;
+  private readonly feedforward: FeedforwardPaths;
   private readonly scratch: ControllerResponse = {
     measurementRe: 0,
     measurementIm: 0,
@@ -53,6 +56,7 @@ export class LoopEquations {
     this.outerRow = Int32Array.from(this.loops, (loop) =>
       this.loops.indexOf(network.outerOf[loop] as number),
     );
+    this.feedforward = new FeedforwardPaths(network, this.loops, unit.step);
   }
 
   /**
@@ -90,6 +94,7 @@ export class LoopEquations {
         matrix.im[i * n + outer] = (matrix.im[i * n + outer] as number) - scratch.setpointIm;
       }
     }
+    this.feedforward.subtract(angle, matrix);
   }
 
   /**
@@ -118,6 +123,8 @@ export class LoopEquations {
           gain * (response[loop * this.loopCount + (this.loops[other] as number)] as number);
         if (other === row) value += own;
         if (other === this.outerRow[row]) value -= setpointGain * (poles[loop] as number);
+        if (!integrating)
+          value -= this.feedforward.gainAtRest(row, other) * (poles[loop] as number);
         matrix[a * n + b] = value;
       }
     }

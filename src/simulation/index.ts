@@ -1,3 +1,4 @@
+export { kernelAtScan } from './equipped-kernel.js';
 export { figureCount, type KernelSetup, type SimulationKernel } from './kernel.js';
 export { type PlainRun, simulatePlainly, type Trajectory } from './plain.js';
 export { ScalarKernel } from './scalar-kernel.js';

@@ -26,6 +26,8 @@ export interface KernelSetup {
   readonly bands: readonly (readonly number[])[];
   readonly stepsPerScan: number;
   readonly steps: number;
+  /** True where dead band and resolution of the final elements act; range and rate always do. */
+  readonly elements?: boolean;
 }
 
 /**

@@ -1,4 +1,4 @@
-import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
+import type { DiscreteController, Feedforward, Loop, LoopNetwork } from '../controllers/index.js';
 import type {
   SampledChannel,
   SampledInput,
@@ -6,6 +6,8 @@ import type {
   SharedBlock,
   TappedSection,
 } from '../responses/index.js';
+import { PlainElement } from './plain-element.js';
+import { PlainFeedforward } from './plain-feedforward.js';
 import type { Upset } from './upset.js';
 
 /** What every loop did, sample by sample; arrays of length steps + 1, deviations from rest. */
@@ -30,6 +32,8 @@ export interface PlainRun {
   readonly stepsPerScan: number;
   readonly upset: Upset;
   readonly steps: number;
+  /** True where dead band and resolution of the final elements act; range and rate always do. */
+  readonly elements?: boolean;
 }
 
 interface ControllerState {
@@ -74,6 +78,18 @@ export function simulatePlainly(run: PlainRun): Trajectory {
   const states = loops.map(rest);
   const held = Array.from({ length: unit.sourceCount }, fresh);
   const process = new Process(unit, movingSources(run, automatic));
+  const scanTime = stepsPerScan * unit.step;
+  const told = loops.map((loop) =>
+    (loop.feedforward ?? []).map((term) => new PlainFeedforward(term, scanTime)),
+  );
+  const elements = loops.map((loop) =>
+    run.elements && loop.element !== undefined ? new PlainElement(loop.element) : null,
+  );
+  /** What the signal of a feedforward term was at a scan. */
+  const signalAt = ({ from }: Feedforward, n: number): number => {
+    if ('loop' in from) return (op[from.loop] as Float64Array)[n * stepsPerScan] as number;
+    return upset.kind === 'disturbance' && upset.source === from.source ? upset.size : 0;
+  };
 
   for (let k = 0; k <= steps; k += 1) {
     if (k > 0) process.advance(held, k);
@@ -95,14 +111,19 @@ export function simulatePlainly(run: PlainRun): Trajectory {
             ? (states[inner] as ControllerState).saturation *
               Math.sign((controllers[inner] as DiscreteController).kp)
             : 0;
+        const known = (told[i] as readonly PlainFeedforward[]).reduce(
+          (sum, term) => sum + term.at(k / stepsPerScan, signalAt),
+          0,
+        );
         scan(
           state,
           controllers[i] as DiscreteController,
           loop,
           setpoint,
           measured,
-          stepsPerScan * unit.step,
+          scanTime,
           blocked,
+          known,
         );
         if (state.limited) limited[i] = true;
       }
@@ -112,7 +133,8 @@ export function simulatePlainly(run: PlainRun): Trajectory {
       if ('source' in loop.drives) {
         const { source } = loop.drives;
         const load = upset.kind !== 'setpoint' && upset.source === source ? upset.size : 0;
-        (held[source] as Float64Array)[k] = state.output + load;
+        const position = elements[i]?.follow(state.output) ?? state.output;
+        (held[source] as Float64Array)[k] = position + load;
       }
       if (loop.setpointSource >= 0) (held[loop.setpointSource] as Float64Array)[k] = setpoint;
     }
@@ -132,7 +154,11 @@ function movingSources(run: PlainRun, automatic: readonly boolean[]): boolean[] 
   return moves;
 }
 
-/** One scan of the position algorithm; `blocked` is the direction in which the inner loop is stuck. */
+/**
+ * One scan of the position algorithm.
+ * @param blocked  the direction in which the inner loop is stuck
+ * @param known  what the feedforward terms add
+ */
 function scan(
   s: ControllerState,
   c: DiscreteController,
@@ -141,6 +167,7 @@ function scan(
   measured: number,
   scanTime: number,
   blocked: number,
+  known: number,
 ): void {
   s.filtered1 = c.filterDecay * s.filtered1 + (1 - c.filterDecay) * measured;
   s.filtered2 = c.filterDecay * s.filtered2 + (1 - c.filterDecay) * s.filtered1;
@@ -152,7 +179,7 @@ function scan(
   const step = c.ki * (setpoint - filtered);
   if (step * blocked <= 0) s.integral += step;
 
-  const wanted = proportional + s.integral + s.derivative;
+  const wanted = proportional + s.integral + s.derivative + known;
   const reach = loop.rateLimit * scanTime;
   const low = Math.max(loop.outputLow, s.output - reach);
   const high = Math.min(loop.outputHigh, s.output + reach);
@@ -160,7 +187,9 @@ function scan(
   s.limited = delivered !== wanted;
   s.saturation = wanted > high ? 1 : wanted < low ? -1 : Math.sign(blocked);
   // The integral follows what was delivered, so that it is ready the moment the limit lets go.
-  if (delivered !== wanted && c.ki !== 0) s.integral = delivered - proportional - s.derivative;
+  if (delivered !== wanted && c.ki !== 0) {
+    s.integral = delivered - proportional - s.derivative - known;
+  }
   s.output = delivered;
 }
 

@@ -23,30 +23,30 @@ import type { Upset } from './upset.js';
 
 /** The kernel in plain TypeScript: one candidate, one model, one upset at a time. */
 export class ScalarKernel implements SimulationKernel {
-  private readonly flat: readonly FlatUnit[];
-  private readonly loopCount: number;
-  private readonly bank: Float64Array;
-  private readonly history: Float64Array;
-  private readonly stride: number;
-  private readonly lead: number;
-  private readonly values: Float64Array;
-  private readonly states: Float64Array;
-  private readonly tapStates: Float64Array;
-  private readonly wideStates: Float64Array;
-  private readonly scratch: Float64Array;
+  protected readonly flat: readonly FlatUnit[];
+  protected readonly loopCount: number;
+  protected readonly bank: Float64Array;
+  protected readonly history: Float64Array;
+  protected readonly stride: number;
+  protected readonly lead: number;
+  protected readonly values: Float64Array;
+  protected readonly states: Float64Array;
+  protected readonly tapStates: Float64Array;
+  protected readonly wideStates: Float64Array;
+  protected readonly scratch: Float64Array;
   /** In scan order: loop, its measurement, source (or -1), setpoint source, outer and inner loop. */
-  private readonly order: Int32Array;
-  private readonly measurementOf: Int32Array;
-  private readonly sourceOf: Int32Array;
-  private readonly setpointSourceOf: Int32Array;
-  private readonly outerOf: Int32Array;
-  private readonly innerOf: Int32Array;
-  private readonly automatic: Uint8Array;
-  private readonly moves: Uint8Array;
-  private readonly active: Int32Array;
-  private readonly bases: Int32Array;
+  protected readonly order: Int32Array;
+  protected readonly measurementOf: Int32Array;
+  protected readonly sourceOf: Int32Array;
+  protected readonly setpointSourceOf: Int32Array;
+  protected readonly outerOf: Int32Array;
+  protected readonly innerOf: Int32Array;
+  protected readonly automatic: Uint8Array;
+  protected readonly moves: Uint8Array;
+  protected readonly active: Int32Array;
+  protected readonly bases: Int32Array;
 
-  constructor(private readonly setup: KernelSetup) {
+  constructor(protected readonly setup: KernelSetup) {
     const { network, units, steps } = setup;
     const { loops } = network;
     const first = units[0];
@@ -137,7 +137,7 @@ export class ScalarKernel implements SimulationKernel {
     return gatherGroups(flat.groups, moves, this.active);
   }
 
-  private run(flat: FlatUnit, count: number, upset: Upset): void {
+  protected run(flat: FlatUnit, count: number, upset: Upset): void {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
     const { active, bases } = this;
     const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;

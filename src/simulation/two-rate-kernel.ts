@@ -1,5 +1,6 @@
 import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
 import type { SampledUnit } from '../responses/index.js';
+import { FeedforwardBank } from './feedforward-bank.js';
 import {
   advanceGroups,
   advanceTaps,
@@ -48,6 +49,9 @@ export interface TwoRateSetup {
  * their output over a long step. All other loops scan once a long step. The longer hold of these is
  * made good by dead times shortened by half of what it adds, so that the error is of second order in
  * the long step. The caller has to show that it is small.
+ *
+ * Feedforward terms may go from disturbances and slow loops to slow loops; final elements follow
+ * their signal exactly.
  */
 export class TwoRateKernel implements SimulationKernel {
   private readonly flat: readonly FlatUnit[];
@@ -67,6 +71,8 @@ export class TwoRateKernel implements SimulationKernel {
   private readonly moves: Uint8Array;
   private readonly active: Int32Array;
   private readonly bases: Int32Array;
+  /** Of the slow loops; null where there is none. */
+  private readonly feedforward: FeedforwardBank | null;
 
   constructor(private readonly setup: TwoRateSetup) {
     const { network, units, ownUnits, quick, steps, stride } = setup;
@@ -94,6 +100,10 @@ export class TwoRateKernel implements SimulationKernel {
     const mostGroups = Math.max(1, ...this.flat.map((f) => f.groups.source.length));
     this.active = new Int32Array(mostGroups);
     this.bases = new Int32Array(mostGroups);
+    const step = first?.step ?? 1;
+    this.feedforward = network.loops.some((loop) => (loop.feedforward ?? []).length > 0)
+      ? new FeedforwardBank(network.loops, { scan: step / stride, step, steps })
+      : null;
   }
 
   simulate(
@@ -151,6 +161,8 @@ export class TwoRateKernel implements SimulationKernel {
     }
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
     const count = this.gather(flat, pushed);
+    const { feedforward } = this;
+    feedforward?.rest();
 
     for (let k = 0; k <= steps; k += 1) {
       this.advance(flat, count, k);
@@ -163,6 +175,7 @@ export class TwoRateKernel implements SimulationKernel {
         const measured = values[loop.measurement] as number;
         if (automatic[i] === 1) {
           const inner = 'loop' in loop.drives ? loop.drives.loop * SLOTS : -1;
+          feedforward?.feed(bank, i, k, pushed, upset.size);
           scanLoop(bank, at, inner, setpoint, measured);
         }
         if ('source' in loop.drives)
@@ -191,6 +204,7 @@ export class TwoRateKernel implements SimulationKernel {
         if (loop.setpointSource >= 0)
           history[loop.setpointSource * rowLength + lead + k] = setpoint;
       }
+      feedforward?.record(bank, k, pushed, upset.size);
     }
   }
 

@@ -1,8 +1,14 @@
 import { CodedError } from '../base/index.js';
-import type { JobDocument, LoopDocument, ResponseDocument } from '../contract/index.js';
+import type {
+  FeedforwardDocument,
+  JobDocument,
+  LoopDocument,
+  ResponseDocument,
+} from '../contract/index.js';
 import { scanSeconds, secondsPer } from '../contract/index.js';
 import {
   buildNetwork,
+  type Feedforward,
   type Loop,
   type LoopNetwork,
   type OwnSettings,
@@ -190,8 +196,26 @@ function compileLoop(job: JobDocument, loop: LoopDocument, tags: Tags, timeUnit:
     outputHigh: (loop.outputHigh ?? range.high) - range.at,
     rateLimit: (range.rateLimit ?? Number.POSITIVE_INFINITY) / timeUnit,
     setpointSource: tags.setpoint.get(loop.tag) ?? -1,
+    ...(loop.feedforward.length === 0
+      ? {}
+      : { feedforward: loop.feedforward.map((term) => compileFeedforward(term, tags, timeUnit)) }),
   };
 }
+
+const compileFeedforward = (
+  { from, gain, lead, lag, deadTime }: FeedforwardDocument,
+  tags: Tags,
+  timeUnit: number,
+): Feedforward => ({
+  from:
+    typeof from === 'string'
+      ? { source: tags.source.get(from) as number }
+      : { loop: tags.loop.get(from.outputOf) as number },
+  gain,
+  lead: lead * timeUnit,
+  lag: lag * timeUnit,
+  deadTime: deadTime * timeUnit,
+});
 
 function compileLoopCase(job: JobDocument, loop: LoopDocument): LoopCase {
   const measurement = measurementOf(job, loop.measurement);

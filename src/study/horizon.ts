@@ -1,4 +1,4 @@
-import type { ControllerSettings, Loop } from '../controllers/index.js';
+import type { ControllerSettings, Feedforward, Loop } from '../controllers/index.js';
 import {
   isIntegrator,
   isUnstableFactor,
@@ -34,9 +34,20 @@ function seenPaths(compiled: CompiledJob): UnitPath[] {
   return compiled.paths.filter((p) => seen.has(p.measurement));
 }
 
-/** Longest dead time from anything to a closed loop's measurement, s. */
-export const longestDeadTime = (compiled: CompiledJob): number =>
-  seenPaths(compiled).reduce((most, p) => Math.max(most, p.model.deadTime), 0);
+/** Feedforward terms of closed loops. */
+const closedFeedforward = (compiled: CompiledJob): readonly Feedforward[] =>
+  compiled.network.loops.flatMap((l: Loop) => (l.automatic ? (l.feedforward ?? []) : []));
+
+/** Longest dead time from anything to a closed loop's measurement, by way of feedforward or not, s. */
+export function longestDeadTime(compiled: CompiledJob): number {
+  const told = closedFeedforward(compiled).map(({ from, deadTime }) =>
+    'loop' in from ? deadTime : 0,
+  );
+  return (
+    seenPaths(compiled).reduce((most, p) => Math.max(most, p.model.deadTime), 0) +
+    Math.max(0, ...told)
+  );
+}
 
 /**
  * Simulated steps between scans: enough that no lag is shorter than four steps, at most ten.
@@ -67,6 +78,9 @@ export function leastHorizon(
   let horizon = 20 * compiled.scan;
   for (const { model } of seenPaths(compiled)) {
     horizon = Math.max(horizon, model.deadTime + 5 * lagsOf(model));
+  }
+  for (const { lag, deadTime } of closedFeedforward(compiled)) {
+    horizon = Math.max(horizon, deadTime + 5 * lag);
   }
   settings.forEach((s, i) => {
     const automatic = (compiled.network.loops[i] as Loop).automatic;

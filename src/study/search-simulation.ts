@@ -14,7 +14,7 @@ import {
 } from '../scoring/index.js';
 import {
   figureCount,
-  ScalarKernel,
+  kernelAtScan,
   type SimulationKernel,
   TwoRateKernel,
 } from '../simulation/index.js';
@@ -52,7 +52,7 @@ export class SearchSimulation {
       const { stepsPerScan, steps, scan } = tuning;
       this.scans = tuning.loops.map(() => scan);
       const units = paths.map((p) => sample(p, scan / stepsPerScan));
-      this.kernel = new ScalarKernel({ ...shared, units, stepsPerScan, steps });
+      this.kernel = kernelAtScan({ ...shared, units, stepsPerScan, steps });
       return;
     }
     const long = tuning.scan * stride;

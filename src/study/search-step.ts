@@ -81,10 +81,19 @@ function needsEveryScan(compiled: CompiledJob, tuning: TuningCase): boolean {
   return byScan || compiled.paths.some(({ model }) => isDirect(model));
 }
 
-/** Every quick loop can be simulated apart, and every inner loop is quick. */
+/** Every quick loop can be simulated apart, every inner loop is quick, and feedforward is for slow ones. */
 function canStride(compiled: CompiledJob, tuning: TuningCase, stride: number): boolean {
+  const { order } = compiled.network;
+  const isSlow = (i: number): boolean => !isQuick(compiled, i, tuning.scan * stride);
   return compiled.network.loops.every((loop: Loop, i) => {
     if (!loop.automatic) return true;
+    // Over a long step a delay may become none: what is told must be known by then.
+    const hears = (loop.feedforward ?? []).every(
+      ({ from }) =>
+        isSlow(i) &&
+        (!('loop' in from) || (isSlow(from.loop) && order.indexOf(from.loop) < order.indexOf(i))),
+    );
+    if (!hears) return false;
     if (isQuick(compiled, i, tuning.scan * stride)) return standsApart(compiled, i);
     const outer = compiled.network.outerOf[i] as number;
     return outer < 0 || !('source' in loop.drives);

@@ -4,6 +4,7 @@ import {
   type ControllerSettings,
   type DiscreteController,
   discretizeController,
+  type Feedforward,
   type Loop,
   type LoopNetwork,
 } from '../../src/controllers/index.js';
@@ -49,6 +50,10 @@ export interface Extras {
   readonly integrators: boolean;
   /** Measured step responses, alone or behind a lag. */
   readonly measured?: boolean;
+  /** Terms from the disturbance and from other outputs. */
+  readonly feedforward?: boolean;
+  /** Dead bands and resolutions of the final elements. */
+  readonly elements?: boolean;
 }
 
 function drawModel(random: Random, gain: number, extras: Extras): ProcessModel {
@@ -115,6 +120,29 @@ function dressLoop(random: Random, loop: Loop, extras: Extras): Loop {
   };
 }
 
+/** Up to two terms a loop; at once only downwards in number, as a cascade runs, so that no ring closes. */
+function drawFeedforward(
+  random: Random,
+  loop: number,
+  count: number,
+  disturbance: number,
+): Feedforward[] {
+  return Array.from({ length: random.integer(3) }, (): Feedforward => {
+    const other = random.integer(count);
+    const lag = pick(random, [0, between(random, 0.5, 20)]);
+    const lead = lag === 0 ? 0 : pick(random, [0, between(random, 0.5, 20)]);
+    const mayBeInstant = other > loop;
+    const deadTime = pick(random, [mayBeInstant ? 0 : 2, 3, 7 * random.uniform() + 0.01]);
+    return {
+      from: other === loop ? { source: disturbance } : { loop: other },
+      gain: 0.3 * random.normal(),
+      lead,
+      lag,
+      deadTime,
+    };
+  });
+}
+
 /** One to `most` loops, some in cascades, coupled through their actuators and pushed from outside. */
 export function drawUnit(random: Random, extras: Extras): DrawnUnit {
   const count = 1 + random.integer(extras.most);
@@ -158,6 +186,18 @@ export function drawUnit(random: Random, extras: Extras): DrawnUnit {
     loops[from] = { ...at(loops, from), setpointSource: source };
     paths.push({ source, measurement: to, model: drawModel(random, 0.3, extras) });
     source += 1;
+  }
+  if (extras.feedforward) {
+    loops.forEach((loop, i) => {
+      loops[i] = { ...loop, feedforward: drawFeedforward(random, i, count, disturbance) };
+    });
+  }
+  if (extras.elements) {
+    loops.forEach((loop, i) => {
+      if (!('source' in loop.drives)) return;
+      const deadband = pick(random, [0, between(random, 0.02, 0.4)]);
+      loops[i] = { ...loop, element: { deadband, resolution: pick(random, [0, 0.03, 0.1]) } };
+    });
   }
   const network = buildNetwork(
     loops.map((loop, i) => ({ ...loop, automatic: !extras.manual || !standsIn(random, loops, i) })),

@@ -6,6 +6,7 @@ import {
   type ControllerSettings,
   discretizeController,
   discretizeForLongStep,
+  type Feedforward,
   type Loop,
 } from '../../src/controllers/index.js';
 import {
@@ -19,6 +20,7 @@ import {
 import { readUpsetFigures } from '../../src/scoring/index.js';
 import {
   figureCount,
+  kernelAtScan,
   ScalarKernel,
   simulatePlainly,
   type Trajectory,
@@ -30,6 +32,7 @@ import { drawUnit, freeLoop } from './drawn-units.js';
 import {
   algorithm,
   controllerOf,
+  equipped,
   everything,
   grows,
   kernelGap,
@@ -89,6 +92,37 @@ describe('the kernel of the search', () => {
     },
   );
 
+  it('agrees with it where loops have feedforward, and final elements backlash and a smallest step', () => {
+    let compared = 0;
+    fc.assert(
+      fc.property(
+        fc.integer(),
+        fc.constantFrom(1, 2, 3),
+        fc.boolean(),
+        (seed, stepsPerScan, elements) => {
+          const drawn = drawUnit(new Random(seed), equipped);
+          const { paths, sourceCount, network, controllers, upsets } = drawn;
+          const steps = 150 * stepsPerScan;
+          const unit = sampleUnit(paths, sourceCount, network.loops.length, 1 / stepsPerScan);
+          const bands = upsets.map((upset) => network.loops.map((_, i) => bandOf(upset, i)));
+          const setup = { network, units: [unit], upsets, bands, stepsPerScan, steps, elements };
+          const all = upsets.map((_, u) => u);
+          const figures = kernelAtScan(setup).simulate([controllers], [0], all);
+          const width = network.loops.length * figureCount;
+          upsets.forEach((upset, u) => {
+            const run = runPlainly(drawn, upset, steps, stepsPerScan, elements);
+            if (grows(run)) return;
+            const gap = kernelGap(figures.subarray(u * width, (u + 1) * width), run, upset, 0.05);
+            expect({ upset, gap }).toEqual({ upset, gap: gap < 1e-8 ? gap : 0 });
+            compared += 1;
+          });
+        },
+      ),
+      few(200),
+    );
+    expect(compared).toBeGreaterThan(400);
+  });
+
   it('agrees with the plain simulation where a disturbance jumps straight into a measurement', () => {
     const paths = [
       path(0, 0, firstOrder(1, 20, 2)),
@@ -135,8 +169,12 @@ function twoScales(): { paths: UnitPath[]; loops: Loop[]; settings: ControllerSe
 }
 
 /** Figures of the two-rate kernel, the dead times of what slow loops move shortened as it asks for. */
-function twoRates(stride: number, upset: Upset, horizon: number): Float64Array {
-  const { paths, loops, settings } = twoScales();
+function twoRates(
+  stride: number,
+  upset: Upset,
+  horizon: number,
+  { paths, loops, settings } = twoScales(),
+): Float64Array {
   const quick = [true, false, false];
   const shift = (stride - 1) / 2;
   const isOwn = (p: UnitPath): boolean => p.source === 0 && p.measurement === 0;
@@ -146,8 +184,8 @@ function twoRates(stride: number, upset: Upset, horizon: number): Float64Array {
   const kernel = new TwoRateKernel({
     network: buildNetwork(loops),
     quick,
-    units: [sampleUnit(rest, 2, 3, stride)],
-    ownUnits: [sampleUnit(paths.filter(isOwn), 2, 3, 1)],
+    units: [sampleUnit(rest, 3, 3, stride)],
+    ownUnits: [sampleUnit(paths.filter(isOwn), 3, 3, 1)],
     stride,
     steps: horizon / stride,
     upsets: [upset],
@@ -167,16 +205,51 @@ describe('the kernel of two rates', () => {
     loadStep(0, 0, 1),
     loadStep(2, 1, 1),
   ];
+  const settingsOf = ({ settings }: { settings: readonly ControllerSettings[] }) =>
+    settings.map((own) => discretizeController(own, algorithm));
   const plain = (upset: Upset): Trajectory => {
     const { paths, loops, settings } = twoScales();
-    const controllers = settings.map((own) => discretizeController(own, algorithm));
-    return simulate(paths, loops, controllers, upset, horizon);
+    return simulate(paths, loops, settingsOf({ settings }), upset, horizon);
   };
+  /** From the disturbance with a dead time between scans, and between the two temperatures. */
+  const told: Feedforward[][] = [
+    [],
+    [{ from: { source: 2 }, gain: 0.6, lead: 250, lag: 300, deadTime: 7.3 }],
+    [{ from: { loop: 1 }, gain: -0.2, lead: 0, lag: 30, deadTime: 11 }],
+  ];
 
   it('is the plain simulation when a long step is one scan', () => {
     for (const upset of upsets) {
       const figures = twoRates(1, upset, horizon);
       expect(kernelGap(figures, plain(upset), upset, 0.05)).toBeLessThan(1e-8);
+    }
+  });
+
+  it('takes feedforward of slow loops along, and is off by as little', () => {
+    const bare = twoScales();
+    const fed = {
+      ...bare,
+      paths: [
+        ...bare.paths,
+        path(2, 1, firstOrder(-0.5, 260, 60)),
+        path(2, 2, firstOrder(0.7, 240, 30)),
+      ],
+      loops: bare.loops.map((loop, i) => ({ ...loop, feedforward: at(told, i) })),
+    };
+    const controllers = settingsOf(fed);
+    const pushed: Upset = { kind: 'disturbance', source: 2, size: 1, opened: [] };
+    for (const upset of [...upsets, pushed]) {
+      const run = simulate(fed.paths, fed.loops, controllers, upset, horizon);
+      expect(kernelGap(twoRates(1, upset, horizon, fed), run, upset, 0.05)).toBeLessThan(1e-8);
+      const iaeError = (stride: number): number => {
+        const figures = twoRates(stride, upset, horizon, fed);
+        return [1, 2].reduce((worst, i) => {
+          const iae = readUpsetFigures(run, i, 0, 0.05, 1).iae;
+          return Math.max(worst, Math.abs(at(figures, i * figureCount) / iae - 1));
+        }, 0);
+      };
+      expect({ upset, error: iaeError(4) }).toEqual({ upset, error: expect.closeTo(0, 2) });
+      expect(iaeError(16)).toBeLessThan(0.04);
     }
   });
 

@@ -23,6 +23,8 @@ export const everything = {
   setpointSources: true,
   integrators: true,
 } as const;
+/** Everything, and what only some units have. */
+export const equipped = { ...everything, feedforward: true, elements: true } as const;
 export const linear = { ...everything, limits: false } as const;
 
 export const algorithm = {
@@ -43,10 +45,11 @@ export function runPlainly(
   upset: Upset,
   steps: number,
   stepsPerScan = 1,
+  elements = false,
 ): Trajectory {
   const { paths, sourceCount, network, controllers } = drawn;
   const unit = sampleUnit(paths, sourceCount, network.loops.length, 1 / stepsPerScan);
-  return simulatePlainly({ unit, network, controllers, stepsPerScan, upset, steps });
+  return simulatePlainly({ unit, network, controllers, stepsPerScan, upset, steps, elements });
 }
 
 /** A single loop, or loops, over paths at one scan a second. */

@@ -6,6 +6,7 @@ import {
   type ControllerSettings,
   type DiscreteController,
   discretizeController,
+  type Feedforward,
   type LoopNetwork,
 } from '../../src/controllers/index.js';
 import { countUnstablePoles, frequencyGrid, SampledLoops } from '../../src/frequency/index.js';
@@ -106,7 +107,27 @@ function drawTwins(random: Random): DrawnUnit {
   return { paths, network: buildNetwork(loops), settings: [settings, settings], alike: true };
 }
 
-const draws = { coupled: drawCoupled, cascade: drawCascade, twins: drawTwins };
+/** Coupled loops that tell each other of their outputs: at once downwards, delayed upwards. */
+function drawTold(random: Random): DrawnUnit {
+  const unit = drawCoupled(random);
+  const loops = unit.network.loops.map((loop, i) => {
+    const others = unit.network.loops.flatMap((_, j) => (j === i ? [] : [j]));
+    const feedforward = others.map((j): Feedforward => {
+      const lag = pick(random, [0, between(random, 0.5, 20)]);
+      return {
+        from: { loop: j },
+        gain: between(random, 0.05, 0.8) * pick(random, [1, -1]),
+        lead: lag === 0 ? 0 : pick(random, [0, between(random, 0.5, 20)]),
+        lag,
+        deadTime: j > i ? dead(random) : 1 + dead(random),
+      };
+    });
+    return { ...loop, feedforward };
+  });
+  return { ...unit, network: buildNetwork(loops) };
+}
+
+const draws = { coupled: drawCoupled, cascade: drawCascade, twins: drawTwins, told: drawTold };
 
 /** The same response as a continuous model: drive / (s - pole). */
 function modelOf({ pole, drive, deadTime }: LagPath): ProcessModel {
@@ -169,7 +190,7 @@ const isClear = (sizes: readonly number[]): boolean =>
 
 describe('the count of unstable closed-loop poles', () => {
   // Outside check: eigenvalues by the general library ml-matrix.
-  it.each(['coupled', 'cascade', 'twins'] as const)(
+  it.each(['coupled', 'cascade', 'twins', 'told'] as const)(
     'agrees with the eigenvalues of drawn loops, %s, on both sides of every boundary',
     (kind) => {
       let compared = 0;

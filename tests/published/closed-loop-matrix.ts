@@ -1,5 +1,10 @@
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
-import type { DiscreteController, LoopNetwork } from '../../src/controllers/index.js';
+import {
+  type DiscreteController,
+  type DiscreteFeedforward,
+  discretizeFeedforward,
+  type LoopNetwork,
+} from '../../src/controllers/index.js';
 
 /** One response x' = pole x + drive u, PV += x, behind a dead time; times in scans of one. */
 export interface LagPath {
@@ -60,21 +65,41 @@ function sample(paths: readonly LagPath[]): Process {
   return { decays, measurements, inputs, history: 1 + Math.max(...inputs.map((i) => i.delay)) };
 }
 
+/** A feedforward term from one loop's output to another's. */
+interface Told {
+  readonly to: number;
+  readonly from: number;
+  readonly sampled: DiscreteFeedforward;
+}
+
+const toldOf = (network: LoopNetwork): Told[] =>
+  network.loops.flatMap((loop, to) =>
+    (loop.feedforward ?? []).flatMap((term) =>
+      'loop' in term.from
+        ? [{ to, from: term.from.loop, sampled: discretizeFeedforward(term, 1) }]
+        : [],
+    ),
+  );
+
 /**
  * The matrix that carries the closed loop from scan to scan, written down from the controllers' and
  * the process's difference equations: process states, past outputs, and of each controller its filter
- * lags, derivative, its input and the integral where there is one.
+ * lags, derivative, its input and the integral where there is one; last the lags of feedforward terms.
  */
 export function closedLoopMatrix(
   paths: readonly LagPath[],
   network: LoopNetwork,
   controllers: readonly DiscreteController[],
 ): Matrix {
-  const process = sample(paths);
+  const sampled = sample(paths);
+  const told = toldOf(network);
+  const longest = Math.max(0, ...told.map((t) => Math.max(t.sampled.delay, t.sampled.directDelay)));
+  const process = { ...sampled, history: Math.max(sampled.history, 2 + longest) };
   const width = network.loops.length;
   const states = process.decays.length;
   const past = states + width * process.history;
-  const order = past + 5 * width;
+  const lags = past + 5 * width;
+  const order = lags + told.length;
   const step = (from: Float64Array): Float64Array => {
     const to = new Float64Array(order);
     const at = (i: number): number => from[i] as number;
@@ -99,6 +124,16 @@ export function closedLoopMatrix(
       const integral = c.ki === 0 ? 0 : at(base + 4) + c.ki * (setpoint - filtered);
       to.set([first, second, derivative, input, integral], base);
       out[i] = c.kp * (c.setpointWeight * setpoint - filtered) + integral + derivative;
+      told.forEach(({ to: hearing, from: telling, sampled: f }, t) => {
+        if (hearing !== i) return;
+        const before = (ago: number): number =>
+          ago === 0 ? (out[telling] as number) : at(states + telling * process.history + ago - 1);
+        const lag =
+          f.decay * at(lags + t) + f.now * before(1 + f.delay) + f.before * before(2 + f.delay);
+        to[lags + t] = lag;
+        const direct = f.direct === 0 ? 0 : f.direct * before(f.directDelay);
+        out[i] = (out[i] as number) + lag + direct;
+      });
     }
     // What each source does now and did; a source is moved by the loop that drives it.
     const value = (source: number, ago: number): number => {

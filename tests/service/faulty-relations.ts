@@ -181,6 +181,28 @@ export const faultyRelations = {
       /FEED -> PI-130/,
     ),
   ],
+  FEEDFORWARD_IMPROPER: [
+    change(
+      'a lead alone',
+      'loops[0].feedforward[0].lag',
+      (job) => (job.loops[0].feedforward = [{ from: 'FEED', gain: 1, lead: 2 }]),
+      /a lead of 0/,
+    ),
+  ],
+  FEEDFORWARD_RING: [
+    change('two loops', 'loops[0].feedforward[0]', (job) => {
+      job.loops[0].feedforward = [{ from: { outputOf: 'PC-130' }, gain: 1 }];
+      job.loops[3].feedforward = [{ from: { outputOf: 'TC-110' }, gain: 1, lead: 1, lag: 2 }];
+    }),
+    change('three loops', 'loops[0].feedforward[0]', (job) => {
+      job.loops[0].feedforward = [{ from: { outputOf: 'PC-130' }, gain: 1 }];
+      job.loops[3].feedforward = [{ from: { outputOf: 'LC-120' }, gain: 1 }];
+      job.loops[2].feedforward = [{ from: { outputOf: 'FC-111' }, gain: 1 }];
+    }),
+    change('back up a cascade', 'loops[0].feedforward[0]', (job) => {
+      job.loops[0].feedforward = [{ from: { outputOf: 'FC-111' }, gain: 1 }];
+    }),
+  ],
   CASCADE_RING: [
     change(
       'itself',
@@ -315,6 +337,11 @@ export const faultyRelations = {
   ],
   SCANS_UNRELATED: [set('1.37 s beside 1 s', 'loops[3].controller.scan', 1.37, /1\.37 s.*1 s/)],
   TOO_MANY_SCANS: [
+    change(
+      'a feedforward',
+      'loops[0].feedforward[0].deadTime',
+      (job) => (job.loops[0].feedforward = [{ from: 'FEED', gain: 1, deadTime: 1e6 }]),
+    ),
     set('a horizon', 'unit.horizon', 4000, /4000 min is 240000 scans.*200000 scans/),
     set('a dead time', 'unit.responses[0].model.deadTime', 4000),
     change('a step response', 'unit.responses[4].model.interval', (job) =>
@@ -339,12 +366,6 @@ export const faultyRelations = {
         model(job, 4, rational([-1], [2, -1]));
         job.unit.responses.push(link('PI-130', 'TI-110', lag));
       },
-      later,
-    ),
-    change(
-      'feedforward',
-      'loops[0].feedforward',
-      (job) => (job.loops[0].feedforward = [{ from: 'FEED', gain: 1 }]),
       later,
     ),
     change(

@@ -1,0 +1,91 @@
+import {
+  type Feedforward,
+  feedforwardForLongStep,
+  type LongStepFeedforward,
+  type Loop,
+} from '../controllers/index.js';
+import { FEED, OUTPUT, SLOTS } from './loop-bank.js';
+
+/** How often the loops run. */
+export interface FeedforwardSteps {
+  /** s, of each loop as it scans. */
+  readonly scan: number;
+  /** s, of each loop as it is simulated. */
+  readonly step: number;
+  /** Steps of an upset. */
+  readonly steps: number;
+}
+
+/** The feedforward terms of all loops on flat arrays, one walk a step; the kernels' part of it. */
+export class FeedforwardBank {
+  /** Terms of loop i are those from `start[i]` to `start[i + 1]`. */
+  private readonly start: Int32Array;
+  /** Of each term: the loop whose output it takes, or -1; the disturbance's source, or -1. */
+  private readonly loopOf: Int32Array;
+  private readonly sourceOf: Int32Array;
+  private readonly sampled: readonly LongStepFeedforward[];
+  private readonly lagged: Float64Array;
+  /** Signals, a row a term; step 0 at `lead`. */
+  private readonly signals: Float64Array;
+  private readonly lead: number;
+  private readonly rowLength: number;
+
+  constructor(loops: readonly Loop[], { scan, step, steps }: FeedforwardSteps) {
+    const terms: Feedforward[] = [];
+    this.start = new Int32Array(loops.length + 1);
+    loops.forEach((loop, i) => {
+      terms.push(...(loop.feedforward ?? []));
+      this.start[i + 1] = terms.length;
+    });
+    this.loopOf = Int32Array.from(terms, ({ from }) => ('loop' in from ? from.loop : -1));
+    this.sourceOf = Int32Array.from(terms, ({ from }) => ('source' in from ? from.source : -1));
+    this.sampled = terms.map((term) => feedforwardForLongStep(term, scan, step));
+    this.lagged = new Float64Array(terms.length);
+    this.lead = 2 + this.sampled.reduce((n, f) => Math.max(n, f.delay, f.directDelay), 0);
+    this.rowLength = this.lead + steps + 1;
+    this.signals = new Float64Array(terms.length * this.rowLength);
+  }
+
+  rest(): void {
+    this.lagged.fill(0);
+    this.signals.fill(0);
+  }
+
+  /**
+   * What the terms of a loop add at step k, into its slot; once a step, before the loop runs.
+   * @param pushed  the source that a disturbance moves by `push`, or -1
+   */
+  feed(bank: Float64Array, loop: number, k: number, pushed: number, push: number): void {
+    const { start, signals, lagged, sampled, lead, rowLength } = this;
+    let sum = 0;
+    for (let t = start[loop] as number; t < (start[loop + 1] as number); t += 1) {
+      const f = sampled[t] as LongStepFeedforward;
+      const at = t * rowLength + lead + k;
+      signals[at] = this.signalOf(t, bank, pushed, push);
+      const x =
+        f.decay * (lagged[t] as number) +
+        f.now * (signals[at - 1 - f.delay] as number) +
+        f.before * (signals[at - 2 - f.delay] as number);
+      lagged[t] = x;
+      sum +=
+        x +
+        f.direct * (signals[at - f.directDelay] as number) +
+        f.directLate * (signals[at - f.directDelay - 1] as number);
+    }
+    bank[loop * SLOTS + FEED] = sum;
+  }
+
+  /** Keep the signals as they are once every loop has run step k. */
+  record(bank: Float64Array, k: number, pushed: number, push: number): void {
+    const { signals, loopOf, rowLength, lead } = this;
+    for (let t = 0; t < loopOf.length; t += 1) {
+      signals[t * rowLength + lead + k] = this.signalOf(t, bank, pushed, push);
+    }
+  }
+
+  private signalOf(t: number, bank: Float64Array, pushed: number, push: number): number {
+    const from = this.loopOf[t] as number;
+    if (from >= 0) return bank[from * SLOTS + OUTPUT] as number;
+    return this.sourceOf[t] === pushed ? push : 0;
+  }
+}
