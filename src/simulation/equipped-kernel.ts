@@ -2,7 +2,7 @@ import type { FinalElement } from '../controllers/index.js';
 import { FeedforwardBank } from './feedforward-bank.js';
 import { advanceGroups, advanceTaps, advanceWide, type FlatUnit } from './flat-unit.js';
 import type { KernelSetup, SimulationKernel } from './kernel.js';
-import { countSample, OUTPUT, OWN_SETPOINT, SLOTS, scanLoop } from './loop-bank.js';
+import { countSample, OUTPUT, OWN_SETPOINT, SLOTS } from './loop-bank.js';
 import { ScalarKernel } from './scalar-kernel.js';
 import type { Upset } from './upset.js';
 
@@ -83,7 +83,7 @@ class EquippedKernel extends ScalarKernel {
         if (scanning && automatic[i] === 1) {
           const inner = innerOf[i] as number;
           feedforward.feed(bank, i, scan, pushed, push);
-          scanLoop(bank, at, inner < 0 ? -1 : inner * SLOTS, setpoint, measured);
+          feedforward.scan(bank, i, inner < 0 ? -1 : inner * SLOTS, setpoint, measured);
         }
         const source = sourceOf[i] as number;
         if (source >= 0) {

@@ -4,7 +4,7 @@ import {
   type LongStepFeedforward,
   type Loop,
 } from '../controllers/index.js';
-import { FEED, OUTPUT, SLOTS } from './loop-bank.js';
+import { INTEGRAL, OUTPUT, SLOTS, scanLoop } from './loop-bank.js';
 
 /** How often the loops run. */
 export interface FeedforwardSteps {
@@ -16,7 +16,7 @@ export interface FeedforwardSteps {
   readonly steps: number;
 }
 
-/** The feedforward terms of all loops on flat arrays, one walk a step; the kernels' part of it. */
+/** The feedforward terms of all loops on flat arrays; the kernels' part of it. */
 export class FeedforwardBank {
   /** Terms of loop i are those from `start[i]` to `start[i + 1]`. */
   private readonly start: Int32Array;
@@ -25,6 +25,8 @@ export class FeedforwardBank {
   private readonly sourceOf: Int32Array;
   private readonly sampled: readonly LongStepFeedforward[];
   private readonly lagged: Float64Array;
+  /** By loop: what its terms add now. */
+  private readonly known: Float64Array;
   /** Signals, a row a term; step 0 at `lead`. */
   private readonly signals: Float64Array;
   private readonly lead: number;
@@ -41,6 +43,7 @@ export class FeedforwardBank {
     this.sourceOf = Int32Array.from(terms, ({ from }) => ('source' in from ? from.source : -1));
     this.sampled = terms.map((term) => feedforwardForLongStep(term, scan, step));
     this.lagged = new Float64Array(terms.length);
+    this.known = new Float64Array(loops.length);
     this.lead = 2 + this.sampled.reduce((n, f) => Math.max(n, f.delay, f.directDelay), 0);
     this.rowLength = this.lead + steps + 1;
     this.signals = new Float64Array(terms.length * this.rowLength);
@@ -52,7 +55,22 @@ export class FeedforwardBank {
   }
 
   /**
-   * What the terms of a loop add at step k, into its slot; once a step, before the loop runs.
+   * `scanLoop` with what the terms of the loop add at a step.
+   *
+   * They stand in its integral for the time of the scan, so that limits and tracking see them without
+   * a loop without terms having to ask.
+   * @param innerAt  slots of the loop it drives, or -1
+   */
+  scan(bank: Float64Array, loop: number, innerAt: number, setpoint: number, pv: number): void {
+    const at = loop * SLOTS;
+    const known = this.known[loop] as number;
+    bank[at + INTEGRAL] = (bank[at + INTEGRAL] as number) + known;
+    scanLoop(bank, at, innerAt, setpoint, pv);
+    bank[at + INTEGRAL] = (bank[at + INTEGRAL] as number) - known;
+  }
+
+  /**
+   * What the terms of a loop add at step k; once a step, before the loop runs.
    * @param pushed  the source that a disturbance moves by `push`, or -1
    */
   feed(bank: Float64Array, loop: number, k: number, pushed: number, push: number): void {
@@ -72,7 +90,7 @@ export class FeedforwardBank {
         f.direct * (signals[at - f.directDelay] as number) +
         f.directLate * (signals[at - f.directDelay - 1] as number);
     }
-    bank[loop * SLOTS + FEED] = sum;
+    this.known[loop] = sum;
   }
 
   /** Keep the signals as they are once every loop has run step k. */

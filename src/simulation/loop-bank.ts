@@ -30,9 +30,7 @@ export const LAST_OUTSIDE = 24;
 export const TRAVEL = 25;
 export const PEAK_MOVE = 26;
 export const LIMITED = 27;
-/** What feedforward terms add in this scan. */
-export const FEED = 28;
-export const SLOTS = 29;
+export const SLOTS = 28;
 
 /** Coefficients and limits of one loop into its slots. */
 export function loadLoop(
@@ -89,9 +87,7 @@ export function scanLoop(
       b[at + FILTERED_2] = filtered;
     }
   }
-  let fixed =
-    (b[at + FEED] as number) +
-    (b[at + KP] as number) * ((b[at + SETPOINT_WEIGHT] as number) * setpoint - filtered);
+  let fixed = (b[at + KP] as number) * ((b[at + SETPOINT_WEIGHT] as number) * setpoint - filtered);
   const kd = b[at + KD] as number;
   if (kd !== 0) {
     const input = (b[at + DERIVATIVE_WEIGHT] as number) * setpoint - filtered;

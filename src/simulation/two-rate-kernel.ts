@@ -175,8 +175,11 @@ export class TwoRateKernel implements SimulationKernel {
         const measured = values[loop.measurement] as number;
         if (automatic[i] === 1) {
           const inner = 'loop' in loop.drives ? loop.drives.loop * SLOTS : -1;
-          feedforward?.feed(bank, i, k, pushed, upset.size);
-          scanLoop(bank, at, inner, setpoint, measured);
+          if (feedforward === null) scanLoop(bank, at, inner, setpoint, measured);
+          else {
+            feedforward.feed(bank, i, k, pushed, upset.size);
+            feedforward.scan(bank, i, inner, setpoint, measured);
+          }
         }
         if ('source' in loop.drives)
           this.record(loop.drives.source, k, pushed, upset, bank[at + OUTPUT] as number);
