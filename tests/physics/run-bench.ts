@@ -24,7 +24,12 @@ export const everything = {
   integrators: true,
 } as const;
 /** Everything, and what only some units have. */
-export const equipped = { ...everything, feedforward: true, elements: true } as const;
+export const equipped = {
+  ...everything,
+  measured: true,
+  feedforward: true,
+  elements: true,
+} as const;
 export const linear = { ...everything, limits: false } as const;
 
 export const algorithm = {
