@@ -112,7 +112,7 @@ export async function isSameFile(a: string, b: string): Promise<boolean> {
 /** Notes that a folder also holds documents of alternatives that are not among those just written. */
 export async function tellLeftOver(folder: string, written: ReadonlySet<string>): Promise<void> {
   const others = (await readdir(folder))
-    .filter((name) => /^A\d{2,3}\.json$/.test(name) && !written.has(name))
+    .filter((name) => /^(A\d{2,3}|B\d{2})\.json$/.test(name) && !written.has(name))
     .sort();
   if (others.length === 0) return;
   const names = others.length > 3 ? `${others.slice(0, 3).join(', ')}, ...` : others.join(', ');

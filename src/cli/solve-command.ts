@@ -28,7 +28,7 @@ export function solveCommand(finish: (code: ExitCode) => void): Command {
     .description('run a whole job here: find, verify and write the front')
     .argument('<file>', 'job document, - for standard input')
     .addOption(option('--out <front>', 'file for the front document').makeOptionMandatory())
-    .addOption(option('--responses <dir>', "folder for each alternative's own document"))
+    .addOption(option('--responses <dir>', 'folder for the responses of everything scored'))
     .addOption(threadsOption())
     .addOption(jsonOption())
     .action(async (file: string, options: Options) => {

@@ -302,11 +302,12 @@ describe('solve', () => {
     for (const line of lines) expect(line).toMatch(/^heddle: \d+:\d\d {2}stage \d of \d, /);
   });
 
-  it("writes each alternative's document with the hash that the front names", () => {
+  it('writes the document of everything scored with the hash that the front names', () => {
     const front = JSON.parse(readFileSync(here('one.json'), 'utf8')) as FrontDocument;
-    const names = readdirSync(here('one')).sort();
-    expect(names).toEqual(front.alternatives.map(({ id }) => `${id}.json`));
-    for (const { id, detail } of front.alternatives) {
+    const present = { id: 'present', detail: front.present?.detail };
+    const scored = [...front.alternatives, ...front.baselines, present];
+    expect(readdirSync(here('one')).sort()).toEqual(scored.map(({ id }) => `${id}.json`));
+    for (const { id, detail } of scored) {
       const bytes = readFileSync(here('one', `${id}.json`));
       expect(createHash('sha256').update(bytes).digest('hex')).toBe(detail);
       expect(alternativeDetailSchema.parse(JSON.parse(bytes.toString())).id).toBe(id);

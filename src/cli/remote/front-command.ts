@@ -34,7 +34,7 @@ export function frontCommand(finish: (code: ExitCode) => void): Command {
     .addArgument(jobArgument())
     .addOption(serverOption())
     .addOption(option('--out <front>', 'file for the front document'))
-    .addOption(option('--responses <dir>', "folder for each alternative's own document"))
+    .addOption(option('--responses <dir>', 'folder for the responses of everything scored'))
     .addOption(jsonOption())
     .action(async (id: string, options: Options) => {
       finish(await front(id, options));
