@@ -29,7 +29,7 @@ export const faultCodes = {
   RESPONSE_IMPROPER: 'a response whose numerator outgrows its denominator',
   RESPONSE_ALGEBRAIC: 'a response that would answer a controller without any delay',
   RESPONSE_ZERO: 'a response that never moves its measurement',
-  RESPONSE_RING: 'measurements that respond to each other in a ring without lag or dead time',
+  RESPONSE_RING: 'measurements that respond to each other in a ring',
   RESPONSE_MISSING: 'a loop whose output does not reach its measurement',
   SETPOINT_SOURCE: 'a response from the setpoint of a loop that does not stay closed as it is',
   POINT_MISMATCH: 'an operating point whose responses are not those of the unit',

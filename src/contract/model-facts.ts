@@ -21,7 +21,7 @@ export function integratorsOf(model: ResponseModel): number {
 }
 
 /** Whether every pole but those at zero lies in the left half plane. */
-export function isStableButForIntegrators(model: ResponseModel): boolean {
+function isStableButForIntegrators(model: ResponseModel): boolean {
   if (model.kind !== 'transfer-function') return true;
   const { denominator } = model;
   const zeros = zerosAtOrigin(denominator);

@@ -1,6 +1,5 @@
 import type { Draft } from './draft.js';
 import type { Findings, Path } from './findings.js';
-import { integratorsOf, isStableButForIntegrators } from './model-facts.js';
 import { closedScans } from './scan-checks.js';
 import { snappedScans } from './scans.js';
 
@@ -12,7 +11,6 @@ interface Unavailable {
 
 /** What the format has and this release does not compute yet; a part that is built leaves the list. */
 const unavailable: readonly Unavailable[] = [
-  { part: 'responses from a measurement that integrates or is unstable', places: longChains },
   { part: 'dead band', places: (draft) => actuatorsWith(draft, 'deadband') },
   { part: 'resolution', places: (draft) => actuatorsWith(draft, 'resolution') },
   { part: 'closed loops with different scans', places: unequalScans },
@@ -29,23 +27,6 @@ export function checkAvailable(draft: Draft, findings: Findings): void {
       findings.fault('NOT_YET_AVAILABLE', path, problem, 'remove it or wait for a later release');
     }
   }
-}
-
-const allResponses = (draft: Draft) =>
-  [draft.responses, ...draft.points.map((point) => point.responses)].map((list) => list.entries);
-
-function longChains(draft: Draft): readonly Path[] {
-  return allResponses(draft).flatMap((entries) => {
-    const drifting = new Set<unknown>();
-    for (const { value } of entries) {
-      const { model, to } = value;
-      if (integratorsOf(model) > 0 || !isStableButForIntegrators(model)) drifting.add(to);
-    }
-    const chained = entries.filter(
-      ({ value }) => drifting.has(value.from) && draft.tags.measurements.has(String(value.from)),
-    );
-    return chained.map(({ path }) => [...path, 'from']);
-  });
 }
 
 function actuatorsWith(draft: Draft, key: 'deadband' | 'resolution'): readonly Path[] {

@@ -121,7 +121,10 @@ function checkSecondOrder(
   findings.fault('MODEL_INCONSISTENT', path, problem, allowed);
 }
 
-/** Refuses rings that answer themselves at once; those with lag or dead time are for a later release. */
+/**
+ * Refuses rings. Where each of two measurements answers the other, the response of either to an
+ * actuator holds both ways already; with dead time in the ring nothing finite samples it exactly.
+ */
 function checkRings(draft: Draft, findings: Findings): void {
   const { measurements } = draft.tags;
   for (const list of [draft.responses, ...draft.points.map((point) => point.responses)]) {
@@ -146,8 +149,10 @@ function checkRings(draft: Draft, findings: Findings): void {
           'no ring',
         );
       } else {
-        const allowed = 'remove it or wait for a later release';
-        findings.fault('NOT_YET_AVAILABLE', closing.path, problem, allowed);
+        const allowed =
+          'the responses of these measurements to actuators and disturbances, as a step test shows them: ' +
+          'they hold both ways';
+        findings.fault('RESPONSE_RING', closing.path, problem, allowed);
       }
     }
   }

@@ -86,7 +86,11 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
       0,
     );
     const rest = manual[i] as PoleCount;
-    withLoopInManual[loop] = { ...rest, unstable: rest.unstable + own };
+    // One that another closed loop shows as well is not left to itself.
+    const { sharing } = loops;
+    const closed = rows.filter((other) => !openedBy(equations.network, loop).includes(other));
+    const shared = sharing.growingSurplus(rows) - sharing.growingSurplus(closed);
+    withLoopInManual[loop] = { ...rest, unstable: rest.unstable + own - shared };
   });
   const figures: (LoopFrequencyFigures | null)[] = equations.network.loops.map(() => null);
   if (stability.unstable > 0) {

@@ -13,6 +13,9 @@ export interface Interaction {
   readonly scaledDeterminant: number | null;
 }
 
+/** Relative gains beyond this are rounding: the rows are dependent. */
+const dependent = 1e9;
+
 /**
  * Relative gains and Niederlinski index of the steady state; the rows of integrating measurements
  * hold the rates of change instead, self-regulating inputs counting as none.
@@ -63,6 +66,12 @@ export function describeInteraction(paths: readonly UnitPath[], network: LoopNet
   }
   if (inverse.solution === null || !inverse.solution.every(Number.isFinite)) return none;
   const solution = inverse.solution;
+  if (
+    k.some(
+      (gain, at) => Math.abs(gain * (solution[(at % n) * n + Math.floor(at / n)] ?? 0)) > dependent,
+    )
+  )
+    return none;
   return {
     loops: outer,
     relativeGains: outer.map((_, i) =>

@@ -2,6 +2,7 @@ import type { DiscreteController, LoopNetwork } from '../controllers/index.js';
 import { ComplexMatrix } from '../numerics/index.js';
 import type { SampledUnit } from '../responses/index.js';
 import { LoopEquations } from './loop-equations.js';
+import { PoleSharing } from './pole-sharing.js';
 
 /**
  * A unit's loops prepared on a grid of angles: everything that does not depend on the settings is
@@ -13,6 +14,9 @@ import { LoopEquations } from './loop-equations.js';
 export class SampledLoops {
   readonly equations: LoopEquations;
   readonly angles: Float64Array;
+  readonly sharing: PoleSharing;
+  /** Of the last solve. */
+  angle = 0;
   /** log |F| and arg F after the last solve, the argument up to a multiple of 2 pi. */
   logF = 0;
   angleF = 0;
@@ -34,6 +38,7 @@ export class SampledLoops {
 
   constructor(unit: SampledUnit, network: LoopNetwork, angles: Float64Array) {
     this.equations = new LoopEquations(unit, network);
+    this.sharing = new PoleSharing(unit, network);
     this.angles = angles;
     const n = network.loops.length;
     this.gridRe = new Float64Array(angles.length * n * n);
@@ -112,6 +117,7 @@ export class SampledLoops {
     poleOffset: number,
   ): boolean {
     const { matrix, loops } = this.equations;
+    this.angle = angle;
     this.equations.fill(controllers, angle, this.processRe, this.processIm, this.processOffset);
     const regular = matrix.invert();
     let log = matrix.determinantLog;

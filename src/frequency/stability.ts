@@ -174,9 +174,23 @@ function readCase(loops: SampledLoops, open: OpenRows, into: Sample, c: number):
     log += minor.log;
     angle += minor.angle;
   }
+  if (loops.sharing.isAny) {
+    const surplus = loops.sharing.factorAt(closedLoops(loops, open), loops.angle);
+    log -= surplus.log;
+    angle -= surplus.angle;
+  }
   into.log[c] = log;
   into.angle[c] = angle;
 }
+
+/** Loop numbers of the rows that are not open. */
+const closedLoops = (loops: SampledLoops, open: OpenRows): number[] =>
+  loops.equations.loops.filter((_, row) => !open.includes(row));
+
+/** An angle at which F is what it is at rest, as far as any loop can tell. */
+const nearRest = 1e-9;
+/** Largest part of F that may be imaginary there; more, and F(1) is nothing and the case drifts. */
+const imaginaryShare = 1e-2;
 
 function minorOf(loops: SampledLoops, rows: OpenRows): { log: number; angle: number } {
   const { matrix } = loops.equations;
@@ -205,6 +219,15 @@ function sampleAtRest(
   };
   const every = loops.equations.loops.map((_, i) => i);
   cases.forEach((open, c) => {
+    if (loops.sharing.surplusOf(closedLoops(loops, open)).length > 0) {
+      // Factors that are too many stand over factors that vanish at rest: the limit is taken.
+      loops.solveBetween(controllers, nearRest);
+      readCase(loops, open, rest, c);
+      const turn = Math.abs(wrap(rest.angle[c] as number));
+      if (Math.sin(turn) > imaginaryShare || !Number.isFinite(rest.log[c] as number)) lost[c] = 1;
+      rest.angle[c] = turn > Math.PI / 2 ? Math.PI : 0;
+      return;
+    }
     const { sign, log } = loops.equations.determinantAtRest(
       controllers,
       every.filter((row) => !open.includes(row)),

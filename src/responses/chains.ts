@@ -1,6 +1,7 @@
 import { CodedError } from '../base/index.js';
-import { inSeries, isUnstableFactor, type ProcessModel } from './model.js';
+import { inSeries, type ProcessModel } from './model.js';
 import type { UnitPath } from './sampling.js';
+import { type CarriedPoles, ownFactorsOf } from './shared-poles.js';
 
 /** A response as identified: from a held source or from another measurement's true value. */
 export interface Response {
@@ -13,9 +14,9 @@ export interface Response {
  * Every path from a held source to a measurement, responses in series multiplied out.
  *
  * Exact: dead times add and lags multiply along a chain of linear responses, whereas sampling the
- * measurement between them would add a hold that is not there.
- * @throws {CodedError} STRUCTURE_UNSUPPORTED  a ring of measurements, or a chain through a measurement
- *   with an integrator or unstable pole (its state would be counted twice)
+ * measurement between them would add a hold that is not there. An integrator or unstable pole of the
+ * measurement between is carried along, and the path says whose it is, so that no state is counted twice.
+ * @throws {CodedError} STRUCTURE_UNSUPPORTED  a ring of measurements
  */
 export function pathsOf(responses: readonly Response[], measurementCount: number): UnitPath[] {
   const into: Response[][] = Array.from({ length: measurementCount }, () => []);
@@ -41,16 +42,12 @@ export function pathsOf(responses: readonly Response[], measurementCount: number
         continue;
       }
       for (const upstream of visit(from.measurement)) {
-        if (upstream.model.factors.some(isUnstableFactor)) {
-          throw new CodedError(
-            'STRUCTURE_UNSUPPORTED',
-            'a response from a measurement that is itself integrating or unstable',
-          );
-        }
+        const carried = carriedBy(upstream);
         paths.push({
           source: upstream.source,
           measurement,
           model: inSeries(upstream.model, model),
+          ...(carried.length > 0 ? { carried } : {}),
         });
       }
     }
@@ -59,4 +56,11 @@ export function pathsOf(responses: readonly Response[], measurementCount: number
     return paths;
   };
   return Array.from({ length: measurementCount }, (_, m) => visit(m)).flat();
+}
+
+/** The unstable poles that a path hands on to what its measurement moves, each with its owner. */
+function carriedBy(path: UnitPath): readonly CarriedPoles[] {
+  const carried = path.carried ?? [];
+  const own = ownFactorsOf(path);
+  return own.length > 0 ? [...carried, { owner: path.measurement, factors: own }] : carried;
 }

@@ -25,4 +25,5 @@ export {
   type TappedSection,
   type UnitPath,
 } from './sampling.js';
+export type { SharedPole } from './shared-poles.js';
 export { thinModel } from './thinned-course.js';

@@ -2,6 +2,13 @@ import { multiplyPolynomials, type Polynomial } from '../numerics/index.js';
 import { sampleInput, splitDeadTime } from './held-input.js';
 import { isIntegrator, type ProcessModel } from './model.js';
 import { sampleCourse, type Taps, type UnstablePart } from './sampled-course.js';
+import {
+  type CarriedPoles,
+  missingFactors,
+  type SharedPole,
+  sharedPolesOf,
+  unionOfFactors,
+} from './shared-poles.js';
 import { type SplitModel, splitModel } from './state-space.js';
 
 /** One path from a held source to a measurement: a response in continuous time. */
@@ -9,6 +16,8 @@ export interface UnitPath {
   readonly source: number;
   readonly measurement: number;
   readonly model: ProcessModel;
+  /** Unstable poles of measurements on the way, where there are any. */
+  readonly carried?: readonly CarriedPoles[];
 }
 
 /** How a held input enters a sampled state: x += now u[k - delay] + before u[k - delay - 1]. */
@@ -59,6 +68,8 @@ export interface SampledUnit {
   readonly tapped: readonly TappedSection[];
   /** At most one block a measurement. */
   readonly blocks: readonly SharedBlock[];
+  /** Unstable poles that several blocks may hold for one and the same state. */
+  readonly sharedPoles: readonly SharedPole[];
   /** Longest look-back into the inputs, in steps. */
   readonly longestDelay: number;
 }
@@ -95,37 +106,6 @@ function sampleChannels(path: UnitPath, split: SplitModel, step: number): Sample
     });
   }
   return channels;
-}
-
-/** Poles are one and the same when their factors agree to a few digits less than rounding. */
-const sameFactor = (a: Polynomial, b: Polynomial): boolean =>
-  a.length === b.length &&
-  a.every(
-    (v, i) => Math.abs(v - (b[i] as number)) <= 1e-9 * (Math.abs(v) + Math.abs(b[i] as number)),
-  );
-
-/** The least common multiple of factor lists, as a list. */
-function unionOfFactors(lists: readonly (readonly Polynomial[])[]): Polynomial[] {
-  const union: Polynomial[] = [];
-  for (const list of lists) {
-    const free = [...union];
-    for (const factor of list) {
-      const at = free.findIndex((f) => sameFactor(f, factor));
-      if (at >= 0) free.splice(at, 1);
-      else union.push(factor);
-    }
-  }
-  return union;
-}
-
-/** What `all` holds beyond `part`. */
-function missingFactors(all: readonly Polynomial[], part: readonly Polynomial[]): Polynomial[] {
-  const rest = [...all];
-  for (const factor of part) {
-    const at = rest.findIndex((f) => sameFactor(f, factor));
-    if (at >= 0) rest.splice(at, 1);
-  }
-  return rest;
 }
 
 /** What the unstable poles of one path carry, with the source it starts at. */
@@ -209,5 +189,16 @@ export function sampleUnit(
   }
   for (const channel of channels) longestDelay = Math.max(longestDelay, channel.directDelay);
   for (const { delays } of tapped) longestDelay = Math.max(longestDelay, delays.at(-1) as number);
-  return { step, sourceCount, measurementCount, channels, tapped, blocks, longestDelay };
+  const shown = unstable.map((parts) => unionOfFactors(parts.map(({ factors }) => factors)));
+  const sharedPoles = sharedPolesOf(paths, shown);
+  return {
+    step,
+    sourceCount,
+    measurementCount,
+    channels,
+    tapped,
+    blocks,
+    sharedPoles,
+    longestDelay,
+  };
 }

@@ -74,16 +74,7 @@ describe('responses in series', () => {
         ],
         2,
       );
-    const level = () =>
-      pathsOf(
-        [
-          { from: { source: 0 }, to: 0, model: integrating(1, 0, 0, 0) },
-          { from: { measurement: 0 }, to: 1, model: lag },
-        ],
-        2,
-      );
     expect(code(ring)).toBe('STRUCTURE_UNSUPPORTED');
-    expect(code(level)).toBe('STRUCTURE_UNSUPPORTED');
   });
 });
 

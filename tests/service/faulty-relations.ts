@@ -131,6 +131,12 @@ export const faultyRelations = {
       (job) => ring(job, rational([1], [2]), rational([2], [1])),
       /TI-110 -> LI-120 -> TI-110/,
     ),
+    change(
+      'a lag and a gain in a ring',
+      'unit.responses[6]',
+      (job) => ring(job, lag, rational([2], [1])),
+      /hold both ways/,
+    ),
   ],
   RESPONSE_MISSING: [
     change(
@@ -351,24 +357,6 @@ export const faultyRelations = {
   HORIZON_SHORT: [set('nine scans', 'unit.horizon', 0.15, /at least 0\.166/)],
   NOT_YET_AVAILABLE: [
     change(
-      'a chain through a level',
-      'unit.responses[6].from',
-      (job) => {
-        job.unit.responses.push(link('LI-120', 'TI-110', lag));
-        job.unit.operatingPoints = [];
-      },
-      later,
-    ),
-    change(
-      'a chain through a runaway',
-      'unit.responses[6].from',
-      (job) => {
-        model(job, 4, rational([-1], [2, -1]));
-        job.unit.responses.push(link('PI-130', 'TI-110', lag));
-      },
-      later,
-    ),
-    change(
       'a dead band',
       'unit.actuators[0].deadband',
       (job) => (job.unit.actuators[0].deadband = 0.3),
@@ -397,12 +385,6 @@ export const faultyRelations = {
       'integral alone',
       'loops[1].controller.terms',
       (job) => (job.loops[1].controller.terms = 'I'),
-      later,
-    ),
-    change(
-      'a ring with a lag',
-      'unit.responses[6]',
-      (job) => ring(job, lag, rational([2], [1])),
       later,
     ),
   ],
