@@ -60,11 +60,22 @@ function checkInner(loop: LoopEntry, inner: LoopEntry | undefined, findings: Fin
   if (isClosed(loop) && inner.value.task === 'manual') {
     const problem = `the loop it drives, ${inner.value.tag}, is in manual, so it cannot act`;
     findings.fault('CASCADE_BROKEN', [...loop.path, 'task'], problem, 'manual for this loop too');
+  } else if (isClosed(loop) && isDeaf(inner.value)) {
+    const problem = `nothing in this controller answers its setpoint, which ${loop.value.tag} drives`;
+    const place = [...inner.path, 'controller', 'setpointWeight'];
+    findings.fault('RESPONSE_MISSING', place, problem, 'more than 0, or integral action');
   }
   if (loop.value.loadStep !== undefined && loop.value.loadStep !== 0) {
     const problem = 'a loop that drives another has no load upset of its own; the step is not run';
     findings.warning([...loop.path, 'loadStep'], problem);
   }
+}
+
+/** Whether a controller goes by its measurement alone, whatever its setpoint. */
+function isDeaf({ controller }: LoopAsWritten): boolean {
+  const { terms, setpointWeight, derivativeOn } = controller;
+  const kicks = terms.includes('D') && derivativeOn === 'error';
+  return setpointWeight === 0 && !terms.includes('I') && !kicks;
 }
 
 /** Of the closed loops, no two share an actuator, an inner loop or a measurement. */

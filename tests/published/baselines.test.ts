@@ -225,6 +225,14 @@ describe('published rules on a cascade', () => {
     expect(blt.reason).toBe('FC by SIMC');
   });
 
+  it('give nothing to an outer loop whose inner loop does not answer its setpoint', () => {
+    const algorithm = { ...ruleLoop('P', 0.5).algorithm, setpointWeight: 0 };
+    const loops = [rules[0] as RuleLoop, { ...ruleLoop('P', 0.5), tag: 'FC', algorithm }];
+    for (const { settings } of publishedBaselines({ ...fromValve, loops })) {
+      expect(settings).toBeNull();
+    }
+  });
+
   it('give a loop in manual no settings', () => {
     const manual = {
       ...fromValve,

@@ -157,6 +157,15 @@ export const faultyRelations = {
       },
       /from loop FC-111 to TI-110/,
     ),
+    change(
+      'an inner loop that goes by its measurement alone',
+      'loops[1].controller.setpointWeight',
+      (job) => {
+        Object.assign(job.loops[1].controller, { terms: 'P', setpointWeight: 0 });
+        job.loops[1].present.integral = 0;
+      },
+      /setpoint, which TC-110 drives/,
+    ),
   ],
   SETPOINT_SOURCE: [
     change(

@@ -36,7 +36,9 @@ export function ownLoopOf(
   if (identified !== null) return { loop, form: lagFormOf(identified), model: identified };
   const closed = closedInnerLoop(ownLoopOf(context, inner, settings), innerSettings);
   const ratio = responseRatio(context, measurement, inner);
-  if (closed === null || ratio === null) return { loop, form: null, model: null };
+  if (closed === null || closed.gain === 0 || ratio === null) {
+    return { loop, form: null, model: null };
+  }
   const form: LagForm = {
     ...ratio,
     gain: ratio.gain * closed.gain,
