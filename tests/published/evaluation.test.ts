@@ -74,3 +74,19 @@ describe.each(documents)('%s (%s)', (name) => {
     });
   });
 });
+
+// E is the plain sum of all absolute errors, and Ms the larger of both, of the same calculation.
+describe('the Wood-Berry column at the BLT settings', () => {
+  it('has the error 90.77 at a peak sensitivity of 1.510 that fronts are compared with', () => {
+    const job = readJob(readFileSync(new URL('./data/wood-berry-blt.job.json', import.meta.url)));
+    if (!job.ok) throw new TypeError('the document is not accepted');
+    const compiled = compileJob(job.job);
+    const bench = new Workbench(compiled, prepareJob(compiled));
+    const provenance = { job: '0'.repeat(64), compute: 'test' };
+    const { scored } = evaluateSettings(bench, compiled.space.base, provenance, []);
+    const errors = scored.nominal.upsets?.flatMap((u) => Object.values(u.loops).map((l) => l.iae));
+    const total = errors?.reduce<number>((sum, iae) => sum + (iae ?? Number.NaN), 0);
+    expect(total).toBeCloseTo(90.77, 1);
+    expect(scored.objectives.robustness).toBeCloseTo(1.51, 3);
+  });
+});

@@ -1,4 +1,5 @@
 import { describe, expect, it } from 'vitest';
+import type { LoopDocument } from '../../src/contract/index.js';
 import { firstOrder, integrating, type ProcessModel, rational } from '../../src/responses/index.js';
 import {
   lagFormOf,
@@ -6,6 +7,7 @@ import {
   reduceToSecondOrder,
 } from '../../src/scoring/baselines/reduced-model.js';
 import { simc } from '../../src/scoring/baselines/simc.js';
+import { acceptedJob, exampleJob } from '../documents.js';
 import { analyseSingle, buildSingle, offBy, pi, ruleLoop } from './circuit.js';
 
 /** So short that hold and sampling, half a scan, change no figure in its last place. */
@@ -73,6 +75,26 @@ describe('SIMC', () => {
     expect(offBy(e4?.kc ?? null, 17.9 * factor)).toBeLessThan(0.005);
     expect(offBy(e4?.ti ?? null, 0.224 + 0.22)).toBeLessThan(0.005);
     expect(offBy(e4?.td ?? null, 0.22 / factor)).toBeLessThan(0.005);
+  });
+
+  // Åström & Hägglund, Advanced PID Control, 2006, sec. 4.6 and 3.3, common practice: Ms 1.2 to 2, gain
+  // margin 2 to 5, phase margin 30 to 60 degrees, N 2 to 20. On a first-order process SIMC is 1.4 beyond.
+  it('keeps within the usual bands, as does the derivative gain limit taken where none is stated', () => {
+    const within = (value: number | null, low: number, high: number): void => {
+      expect(value).toBeGreaterThanOrEqual(low);
+      expect(value).toBeLessThanOrEqual(high);
+    };
+    for (const [model, settings] of [
+      [firstOrder(1, 5, 1), pi(2.5, 5)],
+      [integrating(1, 0, 0, 1), pi(0.5, 8)],
+    ] as const) {
+      const figures = analyseSingle(buildSingle(model, settings, scan));
+      within(figures.peakSensitivity, 1.2, 2);
+      within(figures.gainMargin, 2, 5);
+      within(figures.phaseMargin, 30, 61.5);
+    }
+    const { controller } = acceptedJob(exampleJob()).loops[0] as LoopDocument;
+    within(controller.derivativeGain, 2, 20);
   });
 
   it('takes the sign of the process', () => {
