@@ -43,6 +43,8 @@ const checks = [
 ];
 
 const vitest = join('node_modules', 'vitest', 'vitest.mjs');
+/** Runs one benchmark. */
+const bench = join('tests', 'bench', 'run.mjs');
 
 /**
  * @typedef {object} Command
@@ -75,6 +77,10 @@ const commands = new Map([
       environment: { HEDDLE_TEST_LONG: '1' },
     },
   ],
+  ['bench:serving', { build: true, node: [join('tests', 'bench', 'serving.mjs')] }],
+  ['bench:outside', { build: true, node: [bench, 'outside/compare.ts'] }],
+  ['bench:kernel', { build: true, node: [bench, 'kernel/against-c.ts'] }],
+  ['bench:step', { build: true, node: [bench, 'step/tenth.ts'] }],
 ]);
 
 /**

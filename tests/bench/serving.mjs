@@ -1,6 +1,6 @@
 /**
  * How well an embedded server serves while it solves: event-loop delay and requests a second, idle and
- * while a job runs, in one run. Run by `npm run bench` on the built program.
+ * while a job runs, in one run. Run by `npm run bench:serving` on the built program.
  */
 import { spawn } from 'node:child_process';
 import { once } from 'node:events';
