@@ -1,5 +1,6 @@
 import { type DiscreteController, openedBy } from '../controllers/index.js';
 import { LoopTraces } from './loop-traces.js';
+import { anglesBelow, nearlyZero } from './low-angles.js';
 import { type LoopMargins, readMargins } from './margins.js';
 import { findBandPeaks, findPeak } from './peaks.js';
 import type { SampledLoops } from './sampled-loops.js';
@@ -51,19 +52,20 @@ export interface AnalysisRequest {
  */
 export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
   const { loops, controllers } = request;
-  const { equations, angles } = loops;
+  const { equations } = loops;
   const rows = equations.loops;
   const width = rows.length;
+  const low = request.refine ? anglesBelow(loops, controllers) : new Float64Array(0);
+  const angles = low.length === 0 ? loops.angles : Float64Array.of(...low, ...loops.angles);
   const traces = new LoopTraces(angles.length, width);
-  const noise = new NoiseIntegral(request, width);
+  const noise = new NoiseIntegral(request, angles, width);
   let singularS = new Float64Array(0);
   let singularT = new Float64Array(0);
   if (request.singularValues) {
     singularS = new Float64Array(angles.length);
     singularT = new Float64Array(angles.length);
   }
-  const cases = request.manualCases ? rows.map((loop) => rowsOpenedBy(loops, loop)) : [];
-  const [whole, ...manual] = countUnstablePoles(loops, controllers, [[], ...cases], (k) => {
+  const take = (k: number): void => {
     const { matrix } = equations;
     for (let i = 0; i < width; i += 1) {
       traces.re[k * width + i] = matrix.re[i * (width + 1)] as number;
@@ -75,6 +77,14 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
       singularS[k] = values.sensitivity;
       singularT[k] = values.complementary;
     }
+  };
+  low.forEach((angle, k) => {
+    loops.solveBetween(controllers, angle);
+    take(k);
+  });
+  const cases = request.manualCases ? rows.map((loop) => rowsOpenedBy(loops, loop)) : [];
+  const [whole, ...manual] = countUnstablePoles(loops, controllers, [[], ...cases], (k) => {
+    take(low.length + k);
   });
   const stability = whole as PoleCount;
   const withLoopInManual: (PoleCount | null)[] = equations.network.loops.map(() => null);
@@ -111,10 +121,13 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
     const refined = request.refine ? probe : undefined;
     figures[loop] = {
       ...readMargins(traces, i, angles, loops.equations.unit.step, refined),
-      peakSensitivity: findPeak(
-        (k) => traces.sensitivity(k, i),
-        angles,
-        refined && ((angle) => sizeOf(refined(angle), 0)),
+      peakSensitivity: Math.max(
+        refined === undefined ? 0 : sizeOf(refined(nearlyZero), 0),
+        findPeak(
+          (k) => traces.sensitivity(k, i),
+          angles,
+          refined && ((angle) => sizeOf(refined(angle), 0)),
+        ),
       ),
       peakComplementary: Math.max(
         refined === undefined ? 0 : sizeOf(refined(nearlyZero), 1),
@@ -158,9 +171,6 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
   };
 }
 
-/** Close enough to zero for the value there: integral action makes T = 1, which no grid reaches. */
-const nearlyZero = 1e-9;
-
 const sizeOf = (s: { re: number; im: number }, from: 0 | 1): number =>
   Math.hypot(from - s.re, s.im);
 
@@ -175,6 +185,7 @@ class NoiseIntegral {
 
   constructor(
     private readonly request: AnalysisRequest,
+    private readonly angles: Float64Array,
     width: number,
   ) {
     this.total = new Float64Array(width);
@@ -182,8 +193,9 @@ class NoiseIntegral {
   }
 
   take(k: number): void {
+    const { angles } = this;
     const { loops, noise } = this.request;
-    const { angles, equations } = loops;
+    const { equations } = loops;
     const { matrix, controllerRe, controllerIm } = equations;
     const n = matrix.order;
     const last = angles.length - 1;
