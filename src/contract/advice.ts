@@ -2,7 +2,8 @@ import type { Draft, Entry } from './draft.js';
 import type { Findings } from './findings.js';
 import { loopsByTag, processDirection } from './loop-paths.js';
 import type { LoopAsWritten } from './loops.js';
-import { ResponseGraph } from './response-graph.js';
+import { integratorsOf } from './model-facts.js';
+import { pointOfTag, ResponseGraph } from './response-graph.js';
 import type { ResponseDocument } from './responses.js';
 import { secondsPer } from './scalars.js';
 
@@ -14,6 +15,7 @@ export function advise(draft: Draft, findings: Findings): void {
     adviseOnSign(loop, processDirection(loop.value, loops, graph), findings);
     adviseOnFilter(loop, draft, findings);
     adviseOnPresent(loop, findings);
+    adviseOnIntegral(loop, graph, findings);
   }
   for (const list of [draft.responses, ...draft.points.map((point) => point.responses)]) {
     for (const response of list.entries) adviseOnEnd(response, findings);
@@ -65,6 +67,21 @@ function adviseOnFilter(loop: Entry<LoopAsWritten>, draft: Draft, findings: Find
   if (filter >= scan * (1 - 1e-9)) return;
   const problem = 'derivative acts on a filtered PV: the filter is taken as one scan';
   findings.warning([...loop.path, 'present', 'filter'], problem);
+}
+
+/** Two integrators in a row swing without end, unless a lead of the process damps them. */
+function adviseOnIntegral(
+  loop: Entry<LoopAsWritten>,
+  graph: ResponseGraph,
+  findings: Findings,
+): void {
+  const { controller, drives, measurement, task } = loop.value;
+  if (controller.terms !== 'I' || typeof drives !== 'string' || task === 'manual') return;
+  const own = graph.between([pointOfTag(drives)], pointOfTag(measurement));
+  if (!own.some(({ value }) => integratorsOf(value.model) > 0)) return;
+  const problem =
+    'integral action alone on a response that integrates: nothing damps it, unless the response has a lead';
+  findings.warning([...loop.path, 'controller', 'terms'], problem);
 }
 
 /** A retuned loop without present settings is one to be brought into service. */

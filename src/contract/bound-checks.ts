@@ -39,14 +39,19 @@ function checkOne(
     findings.fault('RANGE_ORDER', place, 'the low bound is above the high bound', '[low, high]');
   } else if (!hasSetting(terms, setting)) {
     if (high === 0) return;
-    const problem = `a ${terms} controller has no ${setting} to bound`;
-    findings.fault('SETTING_UNUSED', place, problem, `absent, or terms with ${setting} action`);
+    const scale = setting === 'gain';
+    const problem = scale
+      ? 'the gain of an I controller only scales its integral, which is what is searched'
+      : `a ${terms} controller has no ${setting} to bound`;
+    const allowed = scale ? 'bounds.integral' : `absent, or terms with ${setting} action`;
+    findings.fault('SETTING_UNUSED', place, problem, allowed);
   } else {
     checkReach(loop, bounded, presentSize(loop.value, setting, timeUnit), findings);
   }
 }
 
 function hasSetting(terms: string, setting: SettingName): boolean {
+  if (setting === 'gain') return terms !== 'I';
   if (setting === 'integral') return terms.includes('I');
   return setting !== 'derivative' || terms.includes('D');
 }

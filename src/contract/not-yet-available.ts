@@ -16,7 +16,6 @@ const unavailable: readonly Unavailable[] = [
   { part: 'closed loops with different scans', places: unequalScans },
   { part: 'the objective effort', places: effortObjectives },
   { part: 'a time budget', places: timeBudgets },
-  { part: 'integral-only controllers', places: integralOnly },
 ];
 
 /** Reports every part of a document that this release cannot compute. */
@@ -50,9 +49,4 @@ function effortObjectives(draft: Draft): readonly Path[] {
 
 function timeBudgets(draft: Draft): readonly Path[] {
   return draft.search?.timeBudget === undefined ? [] : [['search', 'timeBudget']];
-}
-
-function integralOnly(draft: Draft): readonly Path[] {
-  const loops = draft.loops.entries.filter(({ value }) => value.controller.terms === 'I');
-  return loops.map(({ path }) => [...path, 'controller', 'terms']);
 }

@@ -22,6 +22,8 @@ export interface ControllerAlgorithm {
   readonly filterOrder: 1 | 2;
   /** s */
   readonly scan: number;
+  /** True: no proportional action; the gain over the integral time is all there is. */
+  readonly integralOnly?: boolean;
 }
 
 /**
@@ -69,7 +71,7 @@ export function discretizeController(
   }
   const derivativeDecay = td > 0 ? Math.exp((-scan * derivativeGain) / td) : 0;
   return {
-    kp: kc,
+    kp: algorithm.integralOnly === true ? 0 : kc,
     ki: (kc * scan) / ti,
     kd: td > 0 ? (kc * td * (1 - derivativeDecay)) / scan : 0,
     derivativeDecay,

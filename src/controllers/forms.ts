@@ -11,6 +11,8 @@ export interface SettingsForm {
   readonly timeUnit: number;
   readonly hasIntegral: boolean;
   readonly hasDerivative: boolean;
+  /** True: no proportional action, so that gain and integral count together alone. */
+  readonly integralOnly?: boolean;
   /** Spans of PV and output, engineering units; they scale percent gains and proportional bands. */
   readonly inputSpan: number;
   readonly outputSpan: number;

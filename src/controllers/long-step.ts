@@ -37,7 +37,8 @@ export function discretizeForLongStep(
   const derivativeDecay = atScan.kd === 0 ? 0 : decayFor(derivativeDelay, longStep);
   const ahead = (settings.kc * (longStep - scan)) / (2 * settings.ti);
   // A gain smaller than what the integral runs ahead would turn its sign; such a loop is all integral.
-  const excess = Math.abs(ahead) < Math.abs(atScan.kp) ? ahead : 0;
+  const isBounded = Math.abs(ahead) < Math.abs(atScan.kp) || algorithm.integralOnly === true;
+  const excess = isBounded ? ahead : 0;
   const kp = atScan.kp - excess;
   return {
     kp,

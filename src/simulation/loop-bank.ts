@@ -100,7 +100,11 @@ export function scanLoop(
   }
   // While the loops it drives are stuck, more output that way is of no use.
   const stuck =
-    innerAt < 0 ? 0 : Math.sign((b[innerAt + SATURATION] as number) * (b[innerAt + KP] as number));
+    innerAt < 0
+      ? 0
+      : Math.sign(
+          (b[innerAt + SATURATION] as number) * (b[innerAt + KI] || (b[innerAt + KP] as number)),
+        );
   let integral = b[at + INTEGRAL] as number;
   const ki = b[at + KI] as number;
   if (ki !== 0) {

@@ -109,7 +109,7 @@ export function simulatePlainly(run: PlainRun): Trajectory {
         const blocked =
           inner >= 0
             ? (states[inner] as ControllerState).saturation *
-              Math.sign((controllers[inner] as DiscreteController).kp)
+              actionOf(controllers[inner] as DiscreteController)
             : 0;
         const known = (told[i] as readonly PlainFeedforward[]).reduce(
           (sum, term) => sum + term.at(k / stepsPerScan, signalAt),
@@ -153,6 +153,9 @@ function movingSources(run: PlainRun, automatic: readonly boolean[]): boolean[] 
   if (run.upset.kind !== 'setpoint') moves[run.upset.source] = true;
   return moves;
 }
+
+/** The sign with which a controller acts, with proportional action or without. */
+const actionOf = ({ ki, kp }: DiscreteController): number => Math.sign(ki === 0 ? kp : ki);
 
 /**
  * One scan of the position algorithm.

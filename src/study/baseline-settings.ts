@@ -54,11 +54,23 @@ function ruleLoop(loop: LoopDocument, loopCase: LoopCase, form: SettingsForm): R
     tag: loop.tag,
     retuned: loop.task === 'retune',
     averaging: loop.goal === 'averaging',
-    terms: loop.controller.terms === 'I' ? 'PI' : loop.controller.terms,
+    terms: loop.controller.terms,
     algorithm: loopCase.algorithm,
     presentFilter: (loop.present?.filter ?? 0) * form.timeUnit,
     ...(band === undefined ? {} : { levelBand: typeof band === 'number' ? band : band.max }),
   };
+}
+
+/** Integral action alone written around today's gain, or a gain of one in the controller's own terms. */
+function aroundGain(
+  loop: LoopDocument,
+  internal: ControllerSettings,
+  form: SettingsForm,
+): ControllerSettings {
+  const present = loop.present ?? { gain: form.gainIn === 'proportional-band' ? 100 : 1 };
+  const size = Math.abs(toInternal({ gain: present.gain }, form).kc);
+  const kc = Math.sign(internal.kc) * size;
+  return { ...internal, kc, ti: (internal.ti * kc) / internal.kc };
 }
 
 /** @throws {CodedError} SETTINGS_NOT_CONVERTIBLE */
@@ -72,7 +84,8 @@ function inOwnTerms(
     // What a rule leaves as it is today stays so to the letter.
     if (loop.task !== 'retune') return loop.present ?? null;
     if (internal === null) return null;
-    const own = toOwn(internal, forms[i] as SettingsForm);
+    const form = forms[i] as SettingsForm;
+    const own = toOwn(form.integralOnly ? aroundGain(loop, internal, form) : internal, form);
     const round = (value: number): number => Number(value.toPrecision(4));
     return {
       gain: round(own.gain),

@@ -238,6 +238,7 @@ function compileLoopCase(job: JobDocument, loop: LoopDocument): LoopCase {
       derivativeSetpointWeight: controller.derivativeOn === 'error' ? 1 : 0,
       derivativeGain: controller.derivativeGain,
       filterOrder: controller.filterOrder,
+      ...(controller.terms === 'I' ? { integralOnly: true } : {}),
       scan: loop.task === 'manual' ? commonScan(job) : scanSeconds(controller),
     },
   };
@@ -253,6 +254,7 @@ function compileForm(loop: LoopDocument, loopCase: LoopCase): SettingsForm {
     timeUnit: secondsPer[controller.timeUnit],
     hasIntegral: controller.terms.includes('I'),
     hasDerivative: controller.terms.includes('D'),
+    ...(controller.terms === 'I' ? { integralOnly: true } : {}),
     inputSpan: loopCase.inputSpan,
     outputSpan: loopCase.outputSpan,
     ...(loop.action === undefined ? {} : { action: loop.action }),

@@ -25,7 +25,8 @@ export function compileSpace(
     base.push(own);
     if (loop.task !== 'retune' || own === null) return;
     const form = forms[i] as SettingsForm;
-    variables.push(variableOf(loop, i, 'gain', Math.abs(own.gain), null));
+    // Of integral action alone only the quotient counts: the integral is searched, the gain stays.
+    if (!form.integralOnly) variables.push(variableOf(loop, i, 'gain', Math.abs(own.gain), null));
     if (form.hasIntegral) variables.push(variableOf(loop, i, 'integral', own.integral ?? 0, null));
     if (form.hasDerivative) {
       const start = derivativeStart(own, form);

@@ -68,7 +68,8 @@ function halved(
   return settings.map((own, i) => {
     if (own === null || compiled.loops[i]?.role !== 'retune') return own;
     const s = internal[i] as ControllerSettings;
-    return toOwn({ ...s, kc: s.kc / 2 }, compiled.forms[i] as SettingsForm);
+    const form = compiled.forms[i] as SettingsForm;
+    return toOwn(form.integralOnly ? { ...s, ti: 2 * s.ti } : { ...s, kc: s.kc / 2 }, form);
   });
 }
 

@@ -109,6 +109,14 @@ describe('An accepted job', () => {
     ]);
   });
 
+  it('is warned of integral action alone on a level', () => {
+    const warnings = warningsOf((job) => {
+      const loop = job.loops[2];
+      loop.controller = { ...loop.controller, terms: 'I' };
+    });
+    expect(warnings).toEqual([expect.stringMatching(/^loops\[2\]\.controller\.terms: .*damps/)]);
+  });
+
   it('is warned of a step response that was broken off before it came to rest', () => {
     const withValues = (values: number[], integrating = false): readonly string[] =>
       warningsOf((job) => {

@@ -260,6 +260,15 @@ export const faultyRelations = {
     set('an integral of zero', 'loops[1].present.integral', 0),
   ],
   SETTING_UNUSED: [
+    change(
+      'a bound on the gain in I',
+      'loops[1].bounds.gain',
+      (job) => {
+        job.loops[1].controller.terms = 'I';
+        job.loops[1].bounds = { gain: [0.1, 1] };
+      },
+      /only scales its integral/,
+    ),
     set('a derivative in PI', 'loops[1].present.derivative', 1),
     change(
       'an integral in P',
@@ -390,11 +399,5 @@ export const faultyRelations = {
       later,
     ),
     change('a time budget', 'search.timeBudget', (job) => (job.search.timeBudget = 600), later),
-    change(
-      'integral alone',
-      'loops[1].controller.terms',
-      (job) => (job.loops[1].controller.terms = 'I'),
-      later,
-    ),
   ],
 } satisfies Record<string, readonly FaultyDocument[]>;

@@ -12,7 +12,7 @@ export const amigoSource =
  * @source Åström & Hägglund, Advanced PID Control, 2006, eqs. 7.3 to 7.8
  */
 export function amigo({ loop, form }: OwnLoop): ControllerSettings | null {
-  if (form === null) return null;
+  if (form === null || loop.terms === 'I') return null;
   const derivative = loop.terms.includes('D');
   const reduced = reduceToFirstOrder(form, addedDelay(loop, filterTime(loop, derivative)));
   if (reduced === null) return null;

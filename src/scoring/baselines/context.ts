@@ -12,7 +12,7 @@ export interface RuleLoop {
   readonly retuned: boolean;
   /** True: a level that is meant to move, so that its outflow does not. */
   readonly averaging: boolean;
-  readonly terms: 'P' | 'PI' | 'PD' | 'PID';
+  readonly terms: 'P' | 'I' | 'PI' | 'PD' | 'PID';
   readonly algorithm: ControllerAlgorithm;
   /** PV filter of today, s; rules leave it where it is. */
   readonly presentFilter: number;

@@ -1,4 +1,5 @@
 import type { ControllerSettings } from '../../controllers/index.js';
+import { integralAlone } from './integral-alone.js';
 import { type ReducedModel, reduceToFirstOrder, reduceToSecondOrder } from './reduced-model.js';
 import { addedDelay, filterTime, type OwnLoop, usableLag, withinTerms } from './rule-terms.js';
 
@@ -16,6 +17,7 @@ export const lambdaSource =
  */
 export function lambda({ loop, form }: OwnLoop): ControllerSettings | null {
   if (form === null) return null;
+  if (loop.terms === 'I') return integralAlone(loop, form, 3);
   if (loop.terms.includes('D')) {
     const filter = filterTime(loop, true);
     const second = reduceToSecondOrder(form, addedDelay(loop, filter));

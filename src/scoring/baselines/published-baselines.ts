@@ -109,7 +109,7 @@ function wholeUnit(context: RuleContext): Baseline {
   if (base.settings === null) return base;
   const detuned = context.network.outermost.filter((index) => {
     const loop = context.loops[index] as RuleLoop;
-    return loop.retuned && !loop.averaging;
+    return loop.retuned && !loop.averaging && loop.terms !== 'I';
   });
   if (detuned.length === 0) {
     return {

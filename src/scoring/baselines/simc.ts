@@ -1,4 +1,5 @@
 import type { ControllerSettings } from '../../controllers/index.js';
+import { integralAlone } from './integral-alone.js';
 import { type ReducedModel, reduceToFirstOrder, reduceToSecondOrder } from './reduced-model.js';
 import { addedDelay, filterTime, type OwnLoop, usableLag, withinTerms } from './rule-terms.js';
 
@@ -18,6 +19,7 @@ export function simc(
   closedLoopTime: (reduced: ReducedModel) => number = (reduced) => reduced.deadTime,
 ): ControllerSettings | null {
   if (form === null) return null;
+  if (loop.terms === 'I') return integralAlone(loop, form, 1);
   if (loop.terms.includes('D')) {
     const filter = filterTime(loop, true);
     const second = reduceToSecondOrder(form, addedDelay(loop, filter));

@@ -11,7 +11,7 @@ export const zieglerNicholsSource =
  * Tu / 8. A loop without integral takes the gain and derivative of the PID.
  */
 export function zieglerNichols({ loop, model }: OwnLoop): ControllerSettings | null {
-  if (model === null) return null;
+  if (model === null || loop.terms === 'I') return null;
   const derivative = loop.terms.includes('D');
   const point = ultimatePoint(model, loop, filterTime(loop, derivative));
   if (point === null) return null;
