@@ -78,6 +78,7 @@ const commands = new Map([
     },
   ],
   ['bench:serving', { build: true, node: [join('tests', 'bench', 'serving.mjs')] }],
+  ['bench:recovery', { servers: true, build: true, node: [bench, 'recovery/recovery.ts'] }],
   ['bench:outside', { build: true, node: [bench, 'outside/compare.ts'] }],
   ['bench:kernel', { build: true, node: [bench, 'kernel/against-c.ts'] }],
   ['bench:step', { build: true, node: [bench, 'step/tenth.ts'] }],

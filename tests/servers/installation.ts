@@ -5,7 +5,6 @@ import { Scratch } from '../service/scratch.js';
 import type { KeptProcess } from './kept-process.js';
 import { startProgram } from './program.js';
 import { type RedisServer, startRedis } from './redis.js';
-import { createDatabase } from './shared.js';
 import { waitLimitMs } from './waiting.js';
 
 /** The sizes Heddle runs in. */
@@ -44,7 +43,7 @@ export class Installation {
     const redis = size === 'PostgreSQL and Redis' ? await startRedis() : undefined;
     const addresses: NodeJS.ProcessEnv = {};
     if (size !== 'embedded') {
-      addresses['DATABASE_URL'] = options.databaseUrl ?? (await createDatabase());
+      addresses['DATABASE_URL'] = options.databaseUrl ?? (await sharedDatabase());
     }
     if (redis !== undefined) addresses['REDIS_URL'] = redis.url;
     const scratch = new Scratch();
@@ -116,4 +115,10 @@ export class Installation {
   private environment(): NodeJS.ProcessEnv {
     return { ...this.addresses, ...this.options.environment };
   }
+}
+
+/** A database on the server of a test run; there is none outside of one. */
+async function sharedDatabase(): Promise<string> {
+  const { createDatabase } = await import('./shared.js');
+  return createDatabase();
 }
