@@ -18,6 +18,8 @@ const upsetMetricsSchema = keyed({
   peakMove: figure,
   /** Largest output move per time unit. */
   peakRate: figure,
+  /** Height of the second wave of the error over that of the first on the same side; null without. */
+  decayRatio: figure.exactOptional(),
 });
 
 export const upsetKindSchema = z.enum(['setpoint', 'load', 'disturbance']);
@@ -61,6 +63,16 @@ const loopMetricsSchema = keyed({
   travel: figure,
   /** Largest deviation of another loop, in its tolerances, while this loop's setpoint is stepped. */
   upsetToOthers: figure,
+  /** The largest decay ratio of the own setpoint and load steps; null where nothing swings. */
+  decayRatio: figure.exactOptional(),
+});
+
+/** Largest singular values of S and T along the frequencies, variables divided by their spans. */
+const singularCurvesSchema = keyed({
+  /** Radians per time unit of the job, ascending. */
+  frequency: z.array(z.number()),
+  sensitivity: z.array(z.number()),
+  complementary: z.array(z.number()),
 });
 
 /** What is known of the unit as a whole. */
@@ -84,6 +96,13 @@ export const metricsSchema = keyed({
   unit: unitMetricsSchema,
   /** Left out in a front; each alternative's own document has them. */
   upsets: z.array(upsetScoreSchema).exactOptional(),
+  /**
+   * Who disturbs whom: by the loop that is stepped or loaded, the worst deviation of each other closed
+   * loop in its tolerances; null for an inner loop that another drives. Not in a front.
+   */
+  upsetMatrix: z.record(tagSchema, z.record(tagSchema, figure)).exactOptional(),
+  /** Not in a front; absent where the loops are unstable. */
+  singularValues: singularCurvesSchema.exactOptional(),
 });
 
 export type UpsetMetrics = z.output<typeof upsetMetricsSchema>;

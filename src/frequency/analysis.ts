@@ -27,6 +27,16 @@ export interface FrequencyFigures {
   readonly loops: readonly (LoopFrequencyFigures | null)[];
   readonly peakSingularValueS: number | null;
   readonly peakSingularValueT: number | null;
+  /** Largest singular values along the grid, where asked for and the unit is stable. */
+  readonly singularValues?: SingularCurves;
+}
+
+/** Largest singular values of S and T. */
+export interface SingularCurves {
+  /** rad/s, ascending. */
+  readonly frequencies: Float64Array;
+  readonly sensitivity: Float64Array;
+  readonly complementary: Float64Array;
 }
 
 export interface AnalysisRequest {
@@ -168,6 +178,15 @@ export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
     loops: figures,
     peakSingularValueS: singularPeak(singularS, 'sensitivity'),
     peakSingularValueT: singularPeak(singularT, 'complementary'),
+    ...(request.singularValues
+      ? {
+          singularValues: {
+            frequencies: angles.map((angle) => angle / equations.unit.step),
+            sensitivity: singularS,
+            complementary: singularT,
+          },
+        }
+      : {}),
   };
 }
 

@@ -3,6 +3,7 @@ export {
   analyseLoops,
   type FrequencyFigures,
   type LoopFrequencyFigures,
+  type SingularCurves,
 } from './analysis.js';
 export { frequencyGrid } from './grid.js';
 export { describeInteraction, type Interaction } from './interaction.js';

@@ -23,7 +23,7 @@ export {
   needsSimulation,
   tightenLimit,
 } from './limits.js';
-export { type LoopTimeFigures, summarizeLoop } from './loop-figures.js';
+export { type LoopTimeFigures, summarizeLoop, upsetMatrix } from './loop-figures.js';
 export {
   plainSpeed,
   referenceSpeed,

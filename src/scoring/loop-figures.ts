@@ -17,6 +17,8 @@ export interface LoopTimeFigures {
   readonly travel: number;
   /** Largest deviation of another loop, in its tolerances, while this loop's setpoint is stepped. */
   readonly upsetToOthers: number | null;
+  /** Largest of the own setpoint and load steps; null where nothing swings. */
+  readonly decayRatio: number | null;
 }
 
 /** @param figures  [upset][loop] */
@@ -33,6 +35,7 @@ export function summarizeLoop(
   let peakRate = 0;
   let travel = 0;
   let upsetToOthers: number | null = null;
+  let decayRatio: number | null = null;
   tuning.upsets.forEach(({ upset, weight, counted }, u) => {
     const own = figures[u]?.[loop] as UpsetFigures;
     if (counted.includes(loop)) iae += weight * own.iae;
@@ -40,6 +43,9 @@ export function summarizeLoop(
     peakMove = Math.max(peakMove, own.peakMove);
     peakRate = Math.max(peakRate, own.peakRate);
     travel += own.travel;
+    if (upset.kind !== 'disturbance' && upset.loop === loop && own.decayRatio !== null) {
+      decayRatio = Math.max(decayRatio ?? 0, own.decayRatio);
+    }
     if (upset.kind !== 'setpoint') {
       peakDeviation = Math.max(peakDeviation ?? 0, own.peakDeviation);
     } else if (upset.loop === loop) {
@@ -53,7 +59,17 @@ export function summarizeLoop(
       );
     }
   });
-  return { iae, overshoot, settlingTime, peakDeviation, peakMove, peakRate, travel, upsetToOthers };
+  return {
+    iae,
+    overshoot,
+    settlingTime,
+    peakDeviation,
+    peakMove,
+    peakRate,
+    travel,
+    upsetToOthers,
+    decayRatio,
+  };
 }
 
 /** The inner loops of a cascade are meant to move with their outer loop and do not count as upset. */
@@ -74,4 +90,31 @@ function largestElsewhere(
     );
   });
   return largest;
+}
+
+/**
+ * Who disturbs whom: by the loop that is stepped or loaded, the worst deviation of each other closed
+ * loop, in its tolerances, over these upsets.
+ * @param figures  [upset][loop]
+ * @returns [stepped or loaded loop][other loop]; null for the loop itself, in manual, without an upset,
+ *   and for an inner loop whose setpoint another moves
+ */
+export function upsetMatrix(
+  tuning: TuningCase,
+  figures: readonly (readonly UpsetFigures[])[],
+): (number | null)[][] {
+  const { loops, outerOf } = tuning.network;
+  const matrix: (number | null)[][] = loops.map(() => loops.map(() => null));
+  tuning.upsets.forEach(({ upset }, u) => {
+    if (upset.kind === 'disturbance') return;
+    const row = matrix[upset.loop] as (number | null)[];
+    loops.forEach(({ automatic }, i) => {
+      if (i === upset.loop || !automatic || upset.opened.includes(i)) return;
+      if ((outerOf[i] as number) >= 0) return;
+      const { peakDeviation } = (figures[u] as readonly UpsetFigures[])[i] as UpsetFigures;
+      const { tolerance } = tuning.loops[i] as { tolerance: number };
+      row[i] = Math.max(row[i] ?? 0, peakDeviation / tolerance);
+    });
+  });
+  return matrix;
 }

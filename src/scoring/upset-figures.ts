@@ -1,4 +1,5 @@
 import type { Trajectory } from '../simulation/index.js';
+import { decayRatioOf } from './decay-ratio.js';
 
 /** What one loop did in one upset, engineering units and seconds. */
 export interface UpsetFigures {
@@ -20,6 +21,8 @@ export interface UpsetFigures {
   readonly peakRate: number;
   /** True when the output met its range or rate limit. */
   readonly limited: boolean;
+  /** Height of the error's third half wave over that of its first; null where it has no third. */
+  readonly decayRatio: number | null;
 }
 
 /**
@@ -76,5 +79,6 @@ export function readUpsetFigures(
     peakMove,
     peakRate: peakMove / scan,
     limited: trajectory.limited[loop] as boolean,
+    decayRatio: decayRatioOf(pv, sp, ownStep !== 0),
   };
 }

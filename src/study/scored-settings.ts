@@ -8,7 +8,8 @@ import type {
 } from '../contract/index.js';
 import type { ControllerSettings, OwnSettings } from '../controllers/index.js';
 import { describeInteraction, type Interaction } from '../frequency/index.js';
-import { type ModelScore, speedOf } from '../scoring/index.js';
+import { type ModelScore, speedOf, upsetMatrix } from '../scoring/index.js';
+import { singularCurves } from './singular-curves.js';
 import { upsetTag } from './upsets.js';
 import { internalSettings } from './variables.js';
 import type { Workbench } from './workbench.js';
@@ -59,6 +60,7 @@ function loopMetrics(bench: Workbench, score: ModelScore, i: number): LoopMetric
     peakRate: t === null ? null : figure(t.peakRate * timeUnit),
     travel: figure(t?.travel),
     upsetToOthers: figure(t?.upsetToOthers),
+    decayRatio: figure(t?.decayRatio),
   };
 }
 
@@ -100,11 +102,48 @@ function upsetScores(bench: Workbench, score: ModelScore): UpsetScore[] {
             travel: figure(f?.travel),
             peakMove: figure(f?.peakMove),
             peakRate: f === undefined ? null : figure(f.peakRate * timeUnit),
+            decayRatio: figure(f?.decayRatio),
           },
         ];
       }),
     ),
   }));
+}
+
+/** What is left out of a front: figures of single upsets, who disturbs whom, curves over frequency. */
+function detailMetrics(
+  bench: Workbench,
+  score: ModelScore,
+): Pick<Metrics, 'upsets' | 'upsetMatrix' | 'singularValues'> {
+  const { compiled } = bench;
+  const curves = score.frequency.singularValues;
+  return {
+    upsets: upsetScores(bench, score),
+    ...(score.upsets === null ? {} : { upsetMatrix: matrixOf(bench, score.upsets) }),
+    ...(curves === undefined ? {} : { singularValues: singularCurves(curves, compiled.timeUnit) }),
+  };
+}
+
+/** Of closed loops with an upset, by tag. */
+function matrixOf(
+  bench: Workbench,
+  upsets: NonNullable<ModelScore['upsets']>,
+): NonNullable<Metrics['upsetMatrix']> {
+  const { tuning, compiled } = bench;
+  const closed = compiled.job.loops.flatMap(({ tag, task }, i) =>
+    task === 'manual' ? [] : [{ tag, i }],
+  );
+  const matrix = upsetMatrix(tuning, upsets);
+  return Object.fromEntries(
+    closed.map((loop) => [
+      loop.tag,
+      Object.fromEntries(
+        closed
+          .filter((other) => other !== loop)
+          .map((other) => [other.tag, figure(matrix[loop.i]?.[other.i])]),
+      ),
+    ]),
+  );
 }
 
 /** The figures that a smaller value makes worse. */
@@ -140,7 +179,7 @@ function worstMetrics(bench: Workbench, models: readonly ModelScore[], nominal: 
     const worst = { ...(each[0] as LoopMetrics) } as Record<string, number | boolean | null>;
     for (const key of Object.keys(worst) as (keyof LoopMetrics)[]) {
       if (unstableModels > 0 && key !== 'stableInManual') worst[key] = null;
-      else worst[key] = each.map((m) => m[key]).reduce((a, b) => worse(key, a, b));
+      else worst[key] = each.map((m) => m[key] ?? null).reduce((a, b) => worse(key, a, b));
     }
     loops[tag] = worst as unknown as LoopMetrics;
   });
@@ -203,7 +242,7 @@ export function scoredSettings(
     unit: unitMetrics(bench, nominal, interaction),
   };
   const worst = worstMetrics(bench, models, metrics);
-  if (withUpsets) metrics.upsets = upsetScores(bench, nominal);
+  if (withUpsets) Object.assign(metrics, detailMetrics(bench, nominal));
   return {
     settings,
     internal: Object.fromEntries(
@@ -222,8 +261,8 @@ export function scoredSettings(
 
 /** Scored settings as a front shows them: the figures of single upsets are left to their own document. */
 export function withoutUpsets(scored: ScoredSettings): ScoredSettings {
-  const { upsets: _, ...nominal } = scored.nominal;
-  return { ...scored, nominal };
+  const { loops, unit } = scored.nominal;
+  return { ...scored, nominal: { loops, unit } };
 }
 
 const internalDocument = (s: ControllerSettings, timeUnit: number) => ({

@@ -114,5 +114,6 @@ function readKernelFigures(
     peakMove,
     peakRate: peakMove / scan,
     limited: flat[offset + 7] === 1,
+    decayRatio: null,
   };
 }

@@ -305,6 +305,7 @@ const figures = (iae: number, peakRate: number): UpsetFigures => ({
   peakMove: 0,
   peakRate,
   limited: false,
+  decayRatio: null,
 });
 
 describe('speed', () => {

@@ -6,6 +6,7 @@ import { interactionTable } from './interaction-table.js';
 import { limitInWords } from './limit-words.js';
 import type { Paper } from './paper.js';
 import { facts, page, remarks, section, wrapped } from './prose.js';
+import { upsetMatrixTable } from './upset-matrix-table.js';
 
 /** One scored tuning set as people read it. */
 export function evaluationPage(view: EvaluationView, paper: Paper): string {
@@ -26,6 +27,7 @@ export function evaluationPage(view: EvaluationView, paper: Paper): string {
       `${responsesTable(view, paper)}\n${responsesNote(view, paper)}`,
       paper,
     ),
+    upsetsPart(view, paper),
     section('Limits', limitsPart(view, paper), paper),
     section('Unit', unitPart(view, paper), paper),
     view.assumed.length === 0 ? null : section('Assumed', remarks(view.assumed, paper), paper),
@@ -121,6 +123,11 @@ function limitsPart({ verdicts, evaluation }: EvaluationView, paper: Paper): str
   ]);
   lines.push(grid(columns, rows, paper));
   return lines.join('\n');
+}
+
+function upsetsPart({ evaluation }: EvaluationView, paper: Paper): string | null {
+  const table = upsetMatrixTable(evaluation.scored.nominal, paper);
+  return table === null ? null : section('Loops: who disturbs whom', table, paper);
 }
 
 function unitPart({ evaluation }: EvaluationView, paper: Paper): string {
