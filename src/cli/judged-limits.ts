@@ -89,7 +89,7 @@ function bothWays(figures: LoopMetrics | undefined): number | null {
 
 interface Measure {
   /** The figure that the limit concerns. */
-  readonly figure: Exclude<keyof LoopMetrics, 'stableInManual'>;
+  readonly figure: Exclude<keyof LoopMetrics, 'stableInManual' | 'limitCycle'>;
   readonly unit: string;
   /** From the calculation's seconds to the job's time unit. */
   readonly scale: number;

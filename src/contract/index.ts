@@ -35,7 +35,14 @@ export type {
   FeedforwardDocument,
   LoopDocument,
 } from './loops.js';
-export type { LoopMetrics, Metrics, UnitMetrics, UpsetMetrics, UpsetScore } from './metrics.js';
+export type {
+  LimitCycleMetrics,
+  LoopMetrics,
+  Metrics,
+  UnitMetrics,
+  UpsetMetrics,
+  UpsetScore,
+} from './metrics.js';
 export { type JobRead, type Refused, readJob } from './read-job.js';
 export { type MessageRead, readMessage } from './read-message.js';
 export { readSettings, type SettingsRead } from './read-settings.js';

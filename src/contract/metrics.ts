@@ -4,10 +4,15 @@ import { keyed, tagSchema } from './scalars.js';
 /** A figure; null where it does not exist, was not reached, or the loops are unstable. */
 const figure = z.number().nullable();
 
-/** What one upset does to one loop. Engineering units and the job's time unit. */
+/**
+ * What one upset does to one loop. Engineering units and the job's time unit. Where an actuator has a
+ * dead band or a resolution they act in every figure but IAE and ITAE, which are those speed is made of.
+ */
 const upsetMetricsSchema = keyed({
   iae: figure,
   itae: figure,
+  /** Only where an actuator has a dead band or a resolution. */
+  iaeWithActuators: figure.exactOptional(),
   peakDeviation: figure,
   /** Percent of the own setpoint step. */
   overshoot: figure,
@@ -31,6 +36,14 @@ const upsetScoreSchema = keyed({
   loops: z.record(tagSchema, upsetMetricsSchema),
 });
 
+/** A loop that swings on for ever in a dead band or between two steps of an actuator. */
+const limitCycleSchema = keyed({
+  /** Half of the PV's swing, PV units. */
+  amplitude: z.number(),
+  /** Time unit of the job. */
+  period: z.number(),
+});
+
 /** What is known of one loop over all upsets and frequencies. */
 const loopMetricsSchema = keyed({
   peakSensitivity: figure,
@@ -49,8 +62,12 @@ const loopMetricsSchema = keyed({
   outputNoiseOwn: figure,
   /** The rest of the unit is stable with this loop in manual; null where not examined. */
   stableInManual: z.boolean().nullable(),
-  /** Sum over the upsets, each by its weight. */
+  /** Sum over the upsets, each by its weight: what speed is made of, without dead band and resolution. */
   iae: figure,
+  /** The same with them; only where an actuator has them. All figures below are with them. */
+  iaeWithActuators: figure.exactOptional(),
+  /** The widest over the upsets, null where the loop comes to rest; only where an actuator has them. */
+  limitCycle: limitCycleSchema.nullable().exactOptional(),
   /** Percent, of the own setpoint step. */
   overshoot: figure,
   /** Of the own setpoint step. */
@@ -82,6 +99,8 @@ const unitMetricsSchema = keyed({
   unstableModels: z.number().int().min(0).exactOptional(),
   /** E over that of the reference; the worst is over the model set. */
   speed: figure,
+  /** The same with dead band and resolution; only where an actuator has them. */
+  speedWithActuators: figure.exactOptional(),
   peakSingularValueS: figure,
   peakSingularValueT: figure,
   /** Relative gains, a row a measurement and a column a manipulated variable, by `rgaLoops`. */
@@ -107,6 +126,7 @@ export const metricsSchema = keyed({
 
 export type UpsetMetrics = z.output<typeof upsetMetricsSchema>;
 export type UpsetScore = z.output<typeof upsetScoreSchema>;
+export type LimitCycleMetrics = z.output<typeof limitCycleSchema>;
 export type LoopMetrics = z.output<typeof loopMetricsSchema>;
 export type UnitMetrics = z.output<typeof unitMetricsSchema>;
 export type Metrics = z.output<typeof metricsSchema>;

@@ -11,8 +11,6 @@ interface Unavailable {
 
 /** What the format has and this release does not compute yet; a part that is built leaves the list. */
 const unavailable: readonly Unavailable[] = [
-  { part: 'dead band', places: (draft) => actuatorsWith(draft, 'deadband') },
-  { part: 'resolution', places: (draft) => actuatorsWith(draft, 'resolution') },
   { part: 'closed loops with different scans', places: unequalScans },
   { part: 'the objective effort', places: effortObjectives },
   { part: 'a time budget', places: timeBudgets },
@@ -26,11 +24,6 @@ export function checkAvailable(draft: Draft, findings: Findings): void {
       findings.fault('NOT_YET_AVAILABLE', path, problem, 'remove it or wait for a later release');
     }
   }
-}
-
-function actuatorsWith(draft: Draft, key: 'deadband' | 'resolution'): readonly Path[] {
-  const actuators = draft.actuators.entries.filter(({ value }) => (value[key] ?? 0) > 0);
-  return actuators.map(({ path }) => [...path, key]);
 }
 
 function unequalScans(draft: Draft): readonly Path[] {

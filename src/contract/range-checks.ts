@@ -12,6 +12,7 @@ export function checkRanges(draft: Draft, findings: Findings): void {
   for (const entry of [...draft.measurements.entries, ...draft.actuators.entries]) {
     checkSpan(entry, findings);
   }
+  for (const actuator of draft.actuators.entries) checkElement(actuator, findings);
   for (const loop of draft.loops.entries) {
     checkOutputRange(loop, draft, findings);
   }
@@ -25,6 +26,19 @@ function checkSpan(entry: Entry<Range & { readonly at?: number }>, findings: Fin
   } else if (value.at !== undefined && !within(value.at, value)) {
     const problem = 'the operating value lies outside the range';
     findings.fault('OUTSIDE_RANGE', [...path, 'at'], problem, rangeText(value));
+  }
+}
+
+/** An element whose gap or step is as wide as its range never moves. */
+function checkElement(
+  { path, value }: Draft['actuators']['entries'][number],
+  findings: Findings,
+): void {
+  const span = value.high - value.low;
+  for (const key of ['deadband', 'resolution'] as const) {
+    if (!((value[key] ?? 0) >= span && span > 0)) continue;
+    const problem = 'as wide as the whole range: the actuator would never move';
+    findings.fault('OUTSIDE_RANGE', [...path, key], problem, `less than the range, ${span}`);
   }
 }
 

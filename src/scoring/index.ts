@@ -16,6 +16,7 @@ export {
   surveyModel,
 } from './judge.js';
 export type { Limit, LoopQuantity, UnitQuantity } from './limit.js';
+export { findLimitCycle, type LimitCycle, widerCycle } from './limit-cycle.js';
 export {
   isLowerLimit,
   limitExcess,
@@ -33,6 +34,7 @@ export {
   speedParts,
 } from './speed.js';
 export {
+  hasElements,
   type LoopCase,
   settlingBands,
   type TuningCase,

@@ -10,10 +10,13 @@ import {
   SampledLoops,
 } from '../frequency/index.js';
 import { type SampledUnit, sampleUnit, type UnitPath } from '../responses/index.js';
-import { simulatePlainly, type Trajectory } from '../simulation/index.js';
-import { type LoopTimeFigures, summarizeLoop } from './loop-figures.js';
-import { type LoopCase, settlingBands, type TuningCase } from './tuning-case.js';
-import { readUpsetFigures, type UpsetFigures } from './upset-figures.js';
+import type { Trajectory } from '../simulation/index.js';
+import { runElements } from './element-runs.js';
+import type { LimitCycle } from './limit-cycle.js';
+import { type LoopTimeFigures, summarizeActed, summarizeLoop } from './loop-figures.js';
+import { hasElements, type LoopCase, type TuningCase } from './tuning-case.js';
+import type { UpsetFigures } from './upset-figures.js';
+import { readUpset, runUpset } from './upset-runs.js';
 
 /** One model of the unit, sampled for simulation and for frequencies. */
 export interface SampledModel {
@@ -46,10 +49,17 @@ export function sampleModel(
 export interface ModelScore {
   readonly stable: boolean;
   readonly frequency: FrequencyFigures;
-  /** [upset][loop]; null when unstable: the figures of a run that grows mean nothing. */
+  /**
+   * [upset][loop], of the run without dead band and resolution that speed is made of; null when
+   * unstable: the figures of a run that grows mean nothing.
+   */
   readonly upsets: readonly (readonly UpsetFigures[])[] | null;
-  /** By loop; null when unstable. */
+  /** The same with the final elements as they are; null where none has a dead band or resolution. */
+  readonly acted: readonly (readonly UpsetFigures[])[] | null;
+  /** By loop, with the final elements as they are: what limits are held to. Null when unstable. */
   readonly time: readonly LoopTimeFigures[] | null;
+  /** By loop; null where it does not cycle. Empty where no final element could make it. */
+  readonly cycles: readonly (LimitCycle | null)[];
 }
 
 /** Controllers of every loop at a scan; a loop in manual has settings that are never run. */
@@ -81,7 +91,8 @@ export function surveyModel(
 }
 
 /**
- * Every upset of one tuning set on one model by the plain path; the set must be stable on it.
+ * Every upset of one tuning set on one model by the plain path, without dead band and resolution of
+ * final elements; the set must be stable on it.
  * @param watch  receives each upset's trajectory
  * @returns figures [upset][loop]
  */
@@ -92,26 +103,10 @@ export function simulateUpsets(
   watch?: (upset: number, trajectory: Trajectory) => void,
 ): UpsetFigures[][] {
   const controllers = controllersOf(tuning, settings, tuning.scan);
-  return tuning.upsets.map(({ upset }, u) => {
-    const trajectory = simulatePlainly({
-      unit,
-      network: tuning.network,
-      controllers,
-      stepsPerScan: tuning.stepsPerScan,
-      upset,
-      steps: tuning.steps,
-    });
+  return tuning.upsets.map((weighted, u) => {
+    const trajectory = runUpset({ tuning, unit, controllers }, weighted, false);
     watch?.(u, trajectory);
-    const bands = settlingBands(tuning, upset);
-    return tuning.loops.map((loop, i) =>
-      readUpsetFigures(
-        trajectory,
-        i,
-        upset.kind === 'setpoint' && upset.loop === i ? upset.size : 0,
-        bands[i] as number,
-        loop.algorithm.scan,
-      ),
-    );
+    return readUpset(tuning, weighted, trajectory);
   });
 }
 
@@ -138,8 +133,14 @@ export function judgeModel(
     manualCases: detail.manualCases || tuning.limitsManual,
   });
   if (frequency.stability.unstable > 0)
-    return { stable: false, frequency, upsets: null, time: null };
-  const upsets = simulateUpsets(tuning, model.unit, settings, watch);
-  const time = tuning.loops.map((_, i) => summarizeLoop(tuning, upsets, i));
-  return { stable: true, frequency, upsets, time };
+    return { stable: false, frequency, upsets: null, acted: null, time: null, cycles: [] };
+  if (!hasElements(tuning)) {
+    const upsets = simulateUpsets(tuning, model.unit, settings, watch);
+    const time = tuning.loops.map((_, i) => summarizeLoop(tuning, upsets, i));
+    return { stable: true, frequency, upsets, acted: null, time, cycles: [] };
+  }
+  const subject = { tuning, unit: model.unit, controllers };
+  const { upsets, acted, cycles } = runElements(subject, detail.manualCases, watch);
+  const time = tuning.loops.map((_, i) => summarizeActed(tuning, upsets, acted, i));
+  return { stable: true, frequency, upsets, acted, time, cycles };
 }

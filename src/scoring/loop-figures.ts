@@ -5,6 +5,8 @@ import type { UpsetFigures } from './upset-figures.js';
 export interface LoopTimeFigures {
   /** Sum over the upsets, each by its weight. */
   readonly iae: number;
+  /** The same with dead band and resolution of the final elements; null where there are none. */
+  readonly iaeWithActuators: number | null;
   /** Percent of the own setpoint step; null when it is not stepped. */
   readonly overshoot: number | null;
   /** Of the own setpoint step; Infinity when not reached in the horizon, null when it is not stepped. */
@@ -61,6 +63,7 @@ export function summarizeLoop(
   });
   return {
     iae,
+    iaeWithActuators: null,
     overshoot,
     settlingTime,
     peakDeviation,
@@ -70,6 +73,22 @@ export function summarizeLoop(
     upsetToOthers,
     decayRatio,
   };
+}
+
+/**
+ * Figures with the final elements as they are, but for the IAE that speed is made of.
+ * @param upsets  [upset][loop], without dead band and resolution
+ * @param acted  the same with them
+ */
+export function summarizeActed(
+  tuning: TuningCase,
+  upsets: readonly (readonly UpsetFigures[])[],
+  acted: readonly (readonly UpsetFigures[])[],
+  loop: number,
+): LoopTimeFigures {
+  const { iae } = summarizeLoop(tuning, upsets, loop);
+  const own = summarizeLoop(tuning, acted, loop);
+  return { ...own, iae, iaeWithActuators: own.iae };
 }
 
 /** The inner loops of a cascade are meant to move with their outer loop and do not count as upset. */

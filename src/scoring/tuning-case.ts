@@ -45,6 +45,10 @@ export interface TuningCase {
   readonly limitsManual: boolean;
 }
 
+/** True where some closed loop's final element has a dead band or a resolution. */
+export const hasElements = ({ network }: Pick<TuningCase, 'network'>): boolean =>
+  network.loops.some((loop) => loop.automatic && loop.element !== undefined);
+
 /** PV deviation within which each loop counts as settled in an upset. */
 export function settlingBands(tuning: TuningCase, upset: Upset): number[] {
   return tuning.loops.map((loop, i) =>

@@ -7,7 +7,7 @@ import {
   type ScoredSettings,
 } from '../contract/index.js';
 
-type LoopFigure = Exclude<keyof LoopMetrics, 'stableInManual'>;
+type LoopFigure = Exclude<keyof LoopMetrics, 'stableInManual' | 'limitCycle'>;
 
 /** A figure of a loop on the sheet: its key, its words, and its unit. */
 type Shown = readonly [key: LoopFigure, words: string, unit: string];
@@ -52,7 +52,7 @@ export function loopExpectations(
     nominal: expected.nominal.loops[loop.tag],
     worst: expected.worst.loops[loop.tag],
   };
-  return figuresOf(job, loop)
+  const lines = figuresOf(job, loop)
     .map(([key, figure, unit]) => ({
       key,
       figure,
@@ -63,6 +63,23 @@ export function loopExpectations(
       expectedWorst: after.worst?.[key] ?? null,
     }))
     .filter((line) => line.key !== 'gainReduction' || hasFigure(line));
+  const cycles = (['amplitude', 'period'] as const).map((key): Expectation => {
+    const of = (metrics: LoopMetrics | undefined): number | null =>
+      metrics?.limitCycle?.[key] ?? null;
+    return {
+      key: `limitCycle.${key}`,
+      figure:
+        key === 'amplitude'
+          ? 'cycle from dead band or resolution, half its swing'
+          : 'period of that cycle',
+      unit: key === 'amplitude' ? loopUnits(job, loop).pv : job.unit.timeUnit,
+      today: of(before.nominal),
+      todayWorst: of(before.worst),
+      expected: of(after.nominal),
+      expectedWorst: of(after.worst),
+    };
+  });
+  return [...lines, ...cycles.filter(hasFigure)];
 }
 
 /** Most loops may be turned down without end, so that this margin is seldom a figure. */

@@ -196,10 +196,18 @@ function compileLoop(job: JobDocument, loop: LoopDocument, tags: Tags, timeUnit:
     outputHigh: (loop.outputHigh ?? range.high) - range.at,
     rateLimit: (range.rateLimit ?? Number.POSITIVE_INFINITY) / timeUnit,
     setpointSource: tags.setpoint.get(loop.tag) ?? -1,
+    ...elementOf(job, loop),
     ...(loop.feedforward.length === 0
       ? {}
       : { feedforward: loop.feedforward.map((term) => compileFeedforward(term, tags, timeUnit)) }),
   };
+}
+
+/** The actuator's dead band and resolution, where it has one of them. */
+function elementOf(job: JobDocument, { drives }: LoopDocument): Pick<Loop, 'element'> {
+  if (typeof drives !== 'string') return {};
+  const { deadband = 0, resolution = 0 } = actuatorOf(job, drives);
+  return deadband > 0 || resolution > 0 ? { element: { deadband, resolution } } : {};
 }
 
 const compileFeedforward = (
@@ -346,6 +354,16 @@ function sayAssumptions(job: JobDocument, assumed: string[]): void {
         `${bare} of ${unit.responses.length} responses state no spread: 20 % on gain and dead time is taken`,
       );
     }
+  }
+  const moved = new Set(job.loops.flatMap((l) => (l.task === 'manual' ? [] : [l.drives])));
+  const stiff = unit.actuators.filter(
+    ({ tag, deadband = 0, resolution = 0 }) => moved.has(tag) && (deadband > 0 || resolution > 0),
+  );
+  if (stiff.length > 0) {
+    const tags = stiff.map(({ tag }) => tag).join(', ');
+    assumed.push(
+      `${tags}: at the start of every upset the element stands at its operating position, its dead band to equal parts on both sides; speed and IAE are without dead band and resolution`,
+    );
   }
   const quiet = unit.measurements.filter((m) => m.noise === undefined).map((m) => m.tag);
   if (quiet.length > 0) {

@@ -16,6 +16,7 @@ import type { RuleSettings } from './baseline-settings.js';
 import type { CompiledJob } from './compiled-job.js';
 import { leastHorizon, stepsBetweenScans } from './horizon.js';
 import { findReference, isStable, type ReferenceTuning } from './reference-tuning.js';
+import { elementsMatter } from './search-elements.js';
 import { chooseSearchStep } from './search-step.js';
 import { settleHorizon, stepsFor } from './settled-horizon.js';
 import { statedLimits } from './stated-limits.js';
@@ -38,6 +39,8 @@ export interface Preparation {
   readonly searchSpeed: SpeedReference;
   /** Largest error of speed at that step, seen on settings from slack to brisk. */
   readonly searchError: number;
+  /** True where the search simulates dead band and resolution, for the limits they move. */
+  readonly searchElements: boolean;
   /** Today's settings are complete and stable on the nominal unit. */
   readonly presentIsStable: boolean;
   /** Published rules' settings, in every loop's own terms. */
@@ -144,6 +147,8 @@ export function prepareJob(compiled: CompiledJob): Preparation {
     searchStride: search.stride,
     searchSpeed: search.speed,
     searchError: search.error,
+    searchElements:
+      isKnown && elementsMatter(compiled, final, nominal, model, sane.slice(0, affordable)),
     presentIsStable,
     baselines: rules,
     assumed,

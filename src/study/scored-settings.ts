@@ -1,4 +1,5 @@
 import type {
+  LimitCycleMetrics,
   LoopMetrics,
   Metrics,
   ScoredSettings,
@@ -8,7 +9,14 @@ import type {
 } from '../contract/index.js';
 import type { ControllerSettings, OwnSettings } from '../controllers/index.js';
 import { describeInteraction, type Interaction } from '../frequency/index.js';
-import { type ModelScore, speedOf, upsetMatrix } from '../scoring/index.js';
+import {
+  hasElements,
+  type LimitCycle,
+  type ModelScore,
+  speedOf,
+  upsetMatrix,
+  widerCycle,
+} from '../scoring/index.js';
 import { singularCurves } from './singular-curves.js';
 import { upsetTag } from './upsets.js';
 import { internalSettings } from './variables.js';
@@ -61,19 +69,32 @@ function loopMetrics(bench: Workbench, score: ModelScore, i: number): LoopMetric
     travel: figure(t?.travel),
     upsetToOthers: figure(t?.upsetToOthers),
     decayRatio: figure(t?.decayRatio),
+    ...(hasElements(bench.tuning)
+      ? {
+          iaeWithActuators: over(t?.iaeWithActuators, timeUnit),
+          limitCycle: cycleDocument(score.cycles[i] ?? null, timeUnit),
+        }
+      : {}),
   };
 }
 
-function speedOn(bench: Workbench, score: ModelScore): number | null {
-  if (score.upsets === null) return null;
-  return figure(speedOf(bench.tuning, score.upsets, bench.preparation.speed));
+const cycleDocument = (cycle: LimitCycle | null, timeUnit: number): LimitCycleMetrics | null =>
+  cycle === null ? null : { amplitude: cycle.amplitude, period: cycle.period / timeUnit };
+
+function speedFrom(bench: Workbench, upsets: ModelScore['upsets']): number | null {
+  if (upsets === null) return null;
+  return figure(speedOf(bench.tuning, upsets, bench.preparation.speed));
 }
+
+const speedOn = (bench: Workbench, score: ModelScore): number | null =>
+  speedFrom(bench, score.upsets);
 
 function unitMetrics(bench: Workbench, score: ModelScore, interaction: Interaction): UnitMetrics {
   const tags = bench.compiled.job.loops.map((loop) => loop.tag);
   return {
     stable: score.stable,
     speed: speedOn(bench, score),
+    ...(hasElements(bench.tuning) ? { speedWithActuators: speedFrom(bench, score.acted) } : {}),
     peakSingularValueS: figure(score.frequency.peakSingularValueS),
     peakSingularValueT: figure(score.frequency.peakSingularValueT),
     rga: interaction.relativeGains?.map((row) => row.map(figure)) ?? null,
@@ -90,12 +111,14 @@ function upsetScores(bench: Workbench, score: ModelScore): UpsetScore[] {
     tag: upsetTag(compiled, weighted),
     loops: Object.fromEntries(
       compiled.job.loops.map(({ tag }, i) => {
-        const f = score.upsets?.[u]?.[i];
+        const linear = score.upsets?.[u]?.[i];
+        const f = (score.acted ?? score.upsets)?.[u]?.[i];
         return [
           tag,
           {
-            iae: over(f?.iae, timeUnit),
-            itae: over(f?.itae, timeUnit * timeUnit),
+            iae: over(linear?.iae, timeUnit),
+            itae: over(linear?.itae, timeUnit * timeUnit),
+            ...(hasElements(tuning) ? { iaeWithActuators: over(f?.iae, timeUnit) } : {}),
             peakDeviation: figure(f?.peakDeviation),
             overshoot: figure(f?.overshoot),
             settlingTime: over(f?.settlingTime, timeUnit),
@@ -119,7 +142,7 @@ function detailMetrics(
   const curves = score.frequency.singularValues;
   return {
     upsets: upsetScores(bench, score),
-    ...(score.upsets === null ? {} : { upsetMatrix: matrixOf(bench, score.upsets) }),
+    ...(score.upsets === null ? {} : { upsetMatrix: matrixOf(bench, score.acted ?? score.upsets) }),
     ...(curves === undefined ? {} : { singularValues: singularCurves(curves, compiled.timeUnit) }),
   };
 }
@@ -147,17 +170,19 @@ function matrixOf(
 }
 
 /** The figures that a smaller value makes worse. */
-const smallerIsWorse: ReadonlySet<keyof LoopMetrics> = new Set([
+const smallerIsWorse: ReadonlySet<FigureKey> = new Set([
   'gainMargin',
   'phaseMargin',
   'delayMargin',
 ]);
 /** Figures whose null is the worst there is: not settled within the horizon. */
-const nullIsWorst: ReadonlySet<keyof LoopMetrics> = new Set(['settlingTime']);
+const nullIsWorst: ReadonlySet<FigureKey> = new Set(['settlingTime']);
+
+type FigureKey = Exclude<keyof LoopMetrics, 'limitCycle'>;
 
 /** The worse of two figures of one name; null is no figure, or the worst, by name. */
 function worse(
-  key: keyof LoopMetrics,
+  key: FigureKey,
   a: number | boolean | null,
   b: number | boolean | null,
 ): number | boolean | null {
@@ -176,12 +201,16 @@ function worstMetrics(bench: Workbench, models: readonly ModelScore[], nominal: 
   const loops: Record<string, LoopMetrics> = {};
   tags.forEach((tag, i) => {
     const each = models.map((m) => loopMetrics(bench, m, i));
-    const worst = { ...(each[0] as LoopMetrics) } as Record<string, number | boolean | null>;
-    for (const key of Object.keys(worst) as (keyof LoopMetrics)[]) {
+    const { limitCycle, ...first } = each[0] as LoopMetrics;
+    const worst = { ...first } as Record<string, number | boolean | null>;
+    for (const key of Object.keys(worst) as FigureKey[]) {
       if (unstableModels > 0 && key !== 'stableInManual') worst[key] = null;
       else worst[key] = each.map((m) => m[key] ?? null).reduce((a, b) => worse(key, a, b));
     }
-    loops[tag] = worst as unknown as LoopMetrics;
+    const widest = each.map((m) => m.limitCycle ?? null).reduce((a, b) => widerCycle(a, b));
+    const cycle =
+      limitCycle === undefined ? {} : { limitCycle: unstableModels > 0 ? null : widest };
+    loops[tag] = { ...(worst as unknown as LoopMetrics), ...cycle };
   });
   const peak = (key: 'peakSingularValueS' | 'peakSingularValueT'): number | null => {
     if (unstableModels > 0) return null;
@@ -196,6 +225,14 @@ function worstMetrics(bench: Workbench, models: readonly ModelScore[], nominal: 
       stable: unstableModels === 0,
       unstableModels,
       speed: unstableModels > 0 ? null : Math.max(...models.map((m) => speedOn(bench, m) ?? 0)),
+      ...(hasElements(bench.tuning)
+        ? {
+            speedWithActuators:
+              unstableModels > 0
+                ? null
+                : Math.max(...models.map((m) => speedFrom(bench, m.acted) ?? 0)),
+          }
+        : {}),
       peakSingularValueS: peak('peakSingularValueS'),
       peakSingularValueT: peak('peakSingularValueT'),
     },

@@ -30,13 +30,19 @@ export class SearchSimulation {
   /** s between scans of each loop, as simulated. */
   private readonly scans: readonly number[];
   private readonly upsetIndices: readonly number[];
+  /** At the true scan with dead band and resolution; null where they are left out. */
+  private readonly actedKernel: SimulationKernel | null;
 
-  /** @param variants  models of the unit, nominal first */
+  /**
+   * @param variants  models of the unit, nominal first
+   * @param elements  true: dead band and resolution are to be simulated as well
+   */
   constructor(
     compiled: CompiledJob,
     private readonly tuning: TuningCase,
     stride: number,
     variants: readonly (readonly Response[])[],
+    elements = false,
   ) {
     const { sourceCount, measurementCount } = compiled;
     const paths = variants.map((v) => pathsOf(v, measurementCount));
@@ -48,8 +54,18 @@ export class SearchSimulation {
       bands: tuning.upsets.map((u) => settlingBands(tuning, u.upset)),
     };
     this.upsetIndices = tuning.upsets.map((_, u) => u);
+    const { stepsPerScan, steps } = tuning;
+    this.actedKernel = elements
+      ? kernelAtScan({
+          ...shared,
+          units: paths.map((p) => sample(p, tuning.scan / stepsPerScan)),
+          stepsPerScan,
+          steps,
+          elements,
+        })
+      : null;
     if (stride === 1) {
-      const { stepsPerScan, steps, scan } = tuning;
+      const { scan } = tuning;
       this.scans = tuning.loops.map(() => scan);
       const units = paths.map((p) => sample(p, scan / stepsPerScan));
       this.kernel = kernelAtScan({ ...shared, units, stepsPerScan, steps });
@@ -72,16 +88,39 @@ export class SearchSimulation {
     });
   }
 
+  /** True where dead band and resolution are simulated as well. */
+  get acts(): boolean {
+    return this.actedKernel !== null;
+  }
+
   /**
-   * Figures [model][upset][loop] of one tuning set.
+   * Figures [model][upset][loop] of one tuning set, without dead band and resolution.
    * @param models  which of the models to run
    */
   simulate(settings: readonly ControllerSettings[], models: readonly number[]): UpsetFigures[][][] {
-    const { tuning, scans } = this;
+    return this.run(this.kernel, this.scans, settings, models);
+  }
+
+  /** The same with them, where they are simulated. */
+  simulateActed(
+    settings: readonly ControllerSettings[],
+    models: readonly number[],
+  ): UpsetFigures[][][] {
+    const scans = this.tuning.loops.map(() => this.tuning.scan);
+    return this.run(this.actedKernel ?? this.kernel, scans, settings, models);
+  }
+
+  private run(
+    kernel: SimulationKernel,
+    scans: readonly number[],
+    settings: readonly ControllerSettings[],
+    models: readonly number[],
+  ): UpsetFigures[][][] {
+    const { tuning } = this;
     const controllers = settings.map((s, i) =>
       discretizeForLongStep(s, (tuning.loops[i] as LoopCase).algorithm, scans[i] as number),
     );
-    const flat = this.kernel.simulate([controllers], models, this.upsetIndices);
+    const flat = kernel.simulate([controllers], models, this.upsetIndices);
     const count = tuning.loops.length;
     return models.map((_, k) =>
       tuning.upsets.map(({ upset }, u) =>

@@ -138,10 +138,12 @@ export class TuningProblem implements Problem {
         at += bands;
       }
     }
-    const figures = simulation.simulate(settings, this.focus);
+    // Speed is of the run without dead band and resolution, limits are held with them.
+    const figures = simulation.simulate(settings, simulation.acts ? [0] : this.focus);
+    const held = simulation.acts ? simulation.simulateActed(settings, this.focus) : figures;
     const time = new Map<number, LoopTimeFigures[]>();
     this.focus.forEach((m, k) => {
-      const own = figures[k] as UpsetFigures[][];
+      const own = held[k] as UpsetFigures[][];
       time.set(
         m,
         tuning.loops.map((_, i) => summarizeLoop(tuning, own, i)),

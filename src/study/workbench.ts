@@ -83,13 +83,13 @@ export class Workbench {
     const sample = (v: readonly Response[]): SampledLoops =>
       sampleVariant(compiled, tuning, v, gridDensity.searching).loops;
     this.searching ??= this.variants.map(sample);
-    const { searchStride, searchSpeed } = preparation;
+    const { searchStride, searchSpeed, searchElements } = preparation;
     const variants = [...this.variants, ...extra];
     return {
       space: compiled.space,
       tuning,
       loops: [...this.searching, ...extra.map(sample)],
-      simulation: new SearchSimulation(compiled, tuning, searchStride, variants),
+      simulation: new SearchSimulation(compiled, tuning, searchStride, variants, searchElements),
       stride: searchStride,
       speed: searchSpeed,
     };

@@ -64,6 +64,8 @@ export const faultyRelations = {
     set('a measurement', 'unit.measurements[1].at', 21, /0 to 20/),
     set('an actuator', 'unit.actuators[0].at', -3),
     set('an output limit', 'loops[1].outputHigh', 101, /0 to 100/),
+    set('a dead band', 'unit.actuators[0].deadband', 100, /less than the range, 100/),
+    set('a resolution', 'unit.actuators[1].resolution', 150, /never move/),
     set('a setpoint limit', 'loops[0].outputHigh', 21, /0 to 20/),
     set('a limit above the position', 'loops[1].outputLow', 50, /today's position, 46/),
     set('a limit below the position', 'loops[1].outputHigh', 45),
@@ -374,18 +376,6 @@ export const faultyRelations = {
   ],
   HORIZON_SHORT: [set('nine scans', 'unit.horizon', 0.15, /at least 0\.166/)],
   NOT_YET_AVAILABLE: [
-    change(
-      'a dead band',
-      'unit.actuators[0].deadband',
-      (job) => (job.unit.actuators[0].deadband = 0.3),
-      later,
-    ),
-    change(
-      'a resolution',
-      'unit.actuators[0].resolution',
-      (job) => (job.unit.actuators[0].resolution = 0.1),
-      later,
-    ),
     change(
       'a slower scan',
       'loops[3].controller.scan',

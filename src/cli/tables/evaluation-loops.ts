@@ -86,6 +86,7 @@ export function responsesTable(view: EvaluationView, paper: Paper): string {
     { head: 'IAE', lean: 'right' },
     { head: 'output\ntravel', lean: 'right' },
     { head: 'move a\nscan', lean: 'right' },
+    ...(acts(view) ? actedColumns(timeUnit) : []),
   ] as const;
   const rows = twoRows(view, paper, (loop, metrics, { unit }) => {
     const units = loopUnits(view.job, loop);
@@ -98,10 +99,28 @@ export function responsesTable(view: EvaluationView, paper: Paper): string {
       figure(metrics.iae),
       withUnit(metrics.travel, units.output),
       withUnit(metrics.peakMove, units.output),
+      ...(acts(view)
+        ? [
+            figure(metrics.iaeWithActuators ?? null),
+            withUnit(metrics.limitCycle?.amplitude ?? null, units.pv),
+            figure(metrics.limitCycle?.period ?? null),
+          ]
+        : []),
     ];
   });
   return grid(columns, rows, paper);
 }
+
+/** True where some actuator's dead band or resolution acts. */
+export const acts = ({ evaluation }: EvaluationView): boolean =>
+  evaluation.scored.nominal.unit.speedWithActuators !== undefined;
+
+const actedColumns = (timeUnit: string) =>
+  [
+    { head: 'IAE with\nactuators', lean: 'right' },
+    { head: 'cycle,\n+/-', lean: 'right' },
+    { head: `its period,\n${timeUnit}`, lean: 'right' },
+  ] as const;
 
 const isStepped = ({ evaluation }: EvaluationView, tag: string): boolean =>
   evaluation.scored.nominal.upsets?.some((u) => u.kind === 'setpoint' && u.tag === tag) ?? false;

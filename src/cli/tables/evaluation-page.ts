@@ -1,5 +1,11 @@
 import type { EvaluationDocument } from '../../contract/index.js';
-import { type EvaluationView, isExact, marginsTable, responsesTable } from './evaluation-loops.js';
+import {
+  acts,
+  type EvaluationView,
+  isExact,
+  marginsTable,
+  responsesTable,
+} from './evaluation-loops.js';
 import { counted, fixed, significant } from './figures.js';
 import { grid } from './grid.js';
 import { interactionTable } from './interaction-table.js';
@@ -75,14 +81,22 @@ function summary({ evaluation, job }: EvaluationView, paper: Paper): string {
   const worst = scored.worst.unit.speed;
   const onWorst = isExact(job) || worst === null ? '' : `; ${fixed(worst, 2)} on the worst model`;
   list.unshift(['speed', `${speed}${onWorst}`]);
+  const acted = scored.nominal.unit.speedWithActuators ?? null;
+  if (acted !== null) {
+    list.splice(1, 0, ['', `${fixed(acted, 2)} with dead band and resolution of the actuators`]);
+  }
   return facts(list, paper);
 }
 
-function responsesNote({ job }: EvaluationView, paper: Paper): string {
+function responsesNote(view: EvaluationView, paper: Paper): string {
+  const { job } = view;
   const { setpoint, load, disturbance } = job.search.upsetWeights;
   const text =
     `IAE is the sum over all upsets, each by its weight (setpoint ${significant(setpoint)}, load ` +
-    `${significant(load)}, disturbance ${significant(disturbance)}), in PV unit x ${job.unit.timeUnit}.`;
+    `${significant(load)}, disturbance ${significant(disturbance)}), in PV unit x ${job.unit.timeUnit}.` +
+    (acts(view)
+      ? ' It and the speed made of it are without dead band and resolution of the actuators; everything else is with them.'
+      : '');
   const lines = wrapped(text, Math.max(30, paper.width - 2)).map((line) => `  ${line}`);
   return paper.paint.faint(lines.join('\n'));
 }

@@ -2,7 +2,8 @@ import type { LoopLimitName, LoopMetrics, Metrics } from '../../contract/index.j
 import { dialled, figure, noFigure } from '../text/figures.js';
 import type { LoopView } from '../text/unit-view.js';
 
-type FigureName = Exclude<keyof LoopMetrics, 'stableInManual'>;
+type CycleName = 'cycleAmplitude' | 'cyclePeriod';
+type FigureName = Exclude<keyof LoopMetrics, 'stableInManual' | 'limitCycle'> | CycleName;
 
 interface FigureKind {
   readonly name: FigureName;
@@ -49,6 +50,20 @@ const kinds: readonly FigureKind[] = [
     words: 'Peak deviation',
     unit: pv,
     limits: ['peakDeviation', 'levelBand'],
+  },
+  {
+    name: 'cycleAmplitude',
+    words: 'Cycle from dead band or resolution, half its swing',
+    unit: pv,
+    limits: [],
+    isShownFor: 'figure',
+  },
+  {
+    name: 'cyclePeriod',
+    words: 'Period of that cycle',
+    unit: time,
+    limits: [],
+    isShownFor: 'figure',
   },
   { name: 'outputNoise', words: 'Output noise', unit: output, limits: ['outputNoise'] },
   { name: 'travel', words: 'Output travel', unit: output, limits: ['travel'] },
@@ -119,9 +134,10 @@ export function loopFigures(
         unit: kind.unit(loop, timeUnit),
         today: shown(today),
         chosen: shown(chosen),
-        // A level that is there to swing is judged by its band, not by how little it swings.
+        // A level that is there to swing is judged by its band, not by how little it swings; and a
+        // cycle by its swing, not by how long it takes.
         verdict:
-          loop.averaging && kind.name === 'peakDeviation'
+          (loop.averaging && kind.name === 'peakDeviation') || kind.name === 'cyclePeriod'
             ? null
             : verdict(kind, numberOf(kind, today?.worst, loop), numberOf(kind, chosen.worst, loop)),
         limit:
@@ -138,8 +154,12 @@ export function loopFigures(
 const limitOf = (loop: LoopView, { limits }: FigureKind) =>
   limits.map((name) => loop.limits[name]).find((limit) => limit !== undefined);
 
-const numberOf = (kind: FigureKind, metrics: Metrics | undefined, loop: LoopView): number | null =>
-  metrics?.loops[loop.tag]?.[kind.name] ?? null;
+function numberOf(kind: FigureKind, metrics: Metrics | undefined, loop: LoopView): number | null {
+  const own = metrics?.loops[loop.tag];
+  if (kind.name === 'cycleAmplitude') return own?.limitCycle?.amplitude ?? null;
+  if (kind.name === 'cyclePeriod') return own?.limitCycle?.period ?? null;
+  return own?.[kind.name] ?? null;
+}
 
 function isShown(kind: FigureKind, loop: LoopView, scored: readonly (Scored | null)[]): boolean {
   if (kind.isShownFor === 'limit') return limitOf(loop, kind) !== undefined;
