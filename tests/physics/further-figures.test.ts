@@ -9,7 +9,7 @@ import { simulatePlainly, type Upset } from '../../src/simulation/index.js';
 import { compileJob, evaluateSettings, prepareJob, Workbench } from '../../src/study/index.js';
 import { acceptedJob } from '../documents.js';
 import { twinHeater } from '../service/twin-heater.js';
-import { at, between, few } from './cases.js';
+import { at, between } from './cases.js';
 import { freeLoop } from './drawn-units.js';
 import { algorithmAt, analyse, controllerOf, loopsOf, scaleOne, unstableOf } from './loop-bench.js';
 import { loadStep, setpointStep } from './run-bench.js';
@@ -90,7 +90,7 @@ describe('the delay margin', () => {
         expect(figures.loops[0]?.delayMargin ?? 0).toBeCloseTo(scans, 4);
         compared += 1;
       }),
-      few(60),
+      { numRuns: 60 },
     );
     expect(compared).toBeGreaterThan(40);
   });

@@ -127,6 +127,34 @@ describe('the stability of a loop around a measured step response', () => {
   });
 });
 
+describe('the noise on the output of a loop around a measured step response', () => {
+  it('is what a long run of its moves shows', () => {
+    const values = [0.1, 0.5, 1.1, 1.6, 1.9, 2.1, 2];
+    const model = stepResponse(1, values, false, 2);
+    const c = controllerOf({ kc: 0.3, ti: 4, td: 1, tf: 1.5 });
+    const noise = 0.4;
+    const found = analyse(loopsOf(single(model), oneLoop), [c], { noise: [noise] }).loops[0];
+    const random = new Random(8);
+    const moves = [0, 0, ...values.map((v, k) => v - (values[k - 1] ?? 0))];
+    const past = new Float64Array(moves.length);
+    let [filtered, derivative, before, integral, squares] = [0, 0, 0, 0, 0];
+    const steps = 200_000;
+    for (let k = 0; k < steps; k += 1) {
+      const measured = moves.reduce((sum, p, j) => sum + p * at(past, j), 0);
+      filtered =
+        c.filterDecay * filtered + (1 - c.filterDecay) * (measured + noise * random.normal());
+      derivative = c.derivativeDecay * derivative + c.kd * (-filtered - before);
+      before = -filtered;
+      integral -= c.ki * filtered;
+      const out = integral + derivative - c.kp * filtered;
+      past.copyWithin(1, 0);
+      past[0] = out;
+      squares += out * out;
+    }
+    expect((found?.outputNoise ?? 0) / Math.sqrt(squares / steps)).toBeCloseTo(1, 1);
+  });
+});
+
 interface Figures {
   readonly ms: number;
   readonly gainMargin: number;
