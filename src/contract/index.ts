@@ -53,6 +53,7 @@ export type {
   SpreadDocument,
 } from './responses.js';
 export { secondsPer, type TimeUnit } from './scalars.js';
+export { commonGrid } from './scans.js';
 export {
   type Objectives,
   type ScoredSettings,

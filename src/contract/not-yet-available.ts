@@ -1,7 +1,5 @@
 import type { Draft } from './draft.js';
 import type { Findings, Path } from './findings.js';
-import { closedScans } from './scan-checks.js';
-import { snappedScans } from './scans.js';
 
 /** A part of the format that this release cannot compute, and where a document asks for it. */
 interface Unavailable {
@@ -11,7 +9,6 @@ interface Unavailable {
 
 /** What the format has and this release does not compute yet; a part that is built leaves the list. */
 const unavailable: readonly Unavailable[] = [
-  { part: 'closed loops with different scans', places: unequalScans },
   { part: 'the objective effort', places: effortObjectives },
   { part: 'a time budget', places: timeBudgets },
 ];
@@ -24,16 +21,6 @@ export function checkAvailable(draft: Draft, findings: Findings): void {
       findings.fault('NOT_YET_AVAILABLE', path, problem, 'remove it or wait for a later release');
     }
   }
-}
-
-function unequalScans(draft: Draft): readonly Path[] {
-  if (draft.timeUnit === undefined) return [];
-  const closed = closedScans(draft, draft.timeUnit);
-  const snapped = snappedScans(closed.map(({ seconds }) => seconds));
-  const fastest = Math.min(...snapped.map((scan) => scan ?? Number.POSITIVE_INFINITY));
-  return closed
-    .filter((_, index) => (snapped[index] ?? fastest) > fastest)
-    .map(({ loop }) => [...loop.path, 'controller', 'scan']);
 }
 
 function effortObjectives(draft: Draft): readonly Path[] {

@@ -3,10 +3,14 @@ import type { Findings } from './findings.js';
 import { type JobDocument, scanSeconds } from './job.js';
 import type { ControllerDocument, LoopAsWritten } from './loops.js';
 import { secondsPer, type TimeUnit } from './scalars.js';
-import { isMoved, snappedScans } from './scans.js';
+import { commonGrid, commonPeriod, isMoved, knottedScans, snappedScans } from './scans.js';
 
-/** The most scans a horizon or dead time may have. */
+/** The most common scans a horizon or dead time may have. */
 export const mostScans = 200_000;
+/** The most steps of the common grid after which all scans fall together again. */
+const longestPeriod = 720;
+/** The most scans in that time of loops whose scans do not divide one another. */
+const mostKnotted = 96;
 /** The fewest scans that show how a loop settles. */
 const fewestScans = 10;
 
@@ -35,11 +39,37 @@ export function checkScans(draft: Draft, findings: Findings): void {
       );
     }
   }
-  checkTimes(
-    draft,
-    timeUnit,
-    closed.map(({ seconds }) => seconds),
-    findings,
+  const scans = snapped.filter((scan) => scan !== undefined);
+  const onGrid = scans.length === closed.length;
+  if (onGrid) checkPeriod(closed, scans, findings);
+  const slowest = Math.max(...closed.map(({ seconds }) => seconds));
+  const grid = onGrid ? commonGrid(scans) : fastest;
+  checkTimes(draft, timeUnit, { grid, slowest }, findings);
+}
+
+/** The scans fall together often enough for the closed loops to be judged as one sampled system. */
+function checkPeriod(
+  closed: readonly { readonly loop: Entry<LoopAsWritten>; readonly seconds: number }[],
+  scans: readonly number[],
+  findings: Findings,
+): void {
+  const grid = commonGrid(scans);
+  const period = commonPeriod(scans, grid);
+  const knotted = knottedScans(scans, grid);
+  if (period <= longestPeriod && knotted <= mostKnotted) return;
+  const slowest = closed[scans.indexOf(Math.max(...scans))]?.loop;
+  const written = [...new Set(scans.map((scan) => `${shortNumber(scan)} s`))].join(', ');
+  const steps = `every ${period} steps of their common grid of ${shortNumber(grid)} s`;
+  const problem =
+    knotted <= mostKnotted
+      ? `scans of ${written} fall together only ${steps}`
+      : `scans of ${written} fall together ${steps}, in which the loops whose scans do not divide one another scan ${knotted} times`;
+  const allowed = `at most ${longestPeriod} steps and ${mostKnotted} such scans: scans that are multiples of one another are few`;
+  findings.fault(
+    'SCANS_UNRELATED',
+    [...(slowest?.path ?? []), 'controller', 'scan'],
+    problem,
+    allowed,
   );
 }
 
@@ -58,7 +88,7 @@ export function withSnappedScans(job: JobDocument): JobDocument {
 }
 
 /** The scans of the closed loops, in seconds. */
-export function closedScans(
+function closedScans(
   draft: Draft,
   timeUnit: TimeUnit,
 ): readonly { readonly loop: Entry<LoopAsWritten>; readonly seconds: number }[] {
@@ -78,15 +108,15 @@ const shortNumber = (value: number): number => Number(value.toPrecision(12));
 function checkTimes(
   draft: Draft,
   timeUnit: TimeUnit,
-  scans: readonly number[],
+  scans: { readonly grid: number; readonly slowest: number },
   findings: Findings,
 ): void {
-  const fastest = Math.min(...scans) / secondsPer[timeUnit];
-  const slowest = Math.max(...scans) / secondsPer[timeUnit];
-  const longest = `at most ${shortNumber(mostScans * fastest)} ${timeUnit} (${mostScans} scans)`;
+  const grid = scans.grid / secondsPer[timeUnit];
+  const slowest = scans.slowest / secondsPer[timeUnit];
+  const longest = `at most ${shortNumber(mostScans * grid)} ${timeUnit} (${mostScans} scans)`;
   const { horizon } = draft;
-  if (horizon !== undefined && horizon / fastest > mostScans) {
-    const problem = `the horizon of ${horizon} ${timeUnit} is ${Math.ceil(horizon / fastest)} scans`;
+  if (horizon !== undefined && horizon / grid > mostScans) {
+    const problem = `the horizon of ${horizon} ${timeUnit} is ${Math.ceil(horizon / grid)} scans`;
     findings.fault('TOO_MANY_SCANS', ['unit', 'horizon'], problem, longest);
   } else if (horizon !== undefined && horizon / slowest < fewestScans) {
     const problem = `the horizon of ${horizon} ${timeUnit} is under ${fewestScans} scans`;
@@ -96,13 +126,13 @@ function checkTimes(
   for (const list of [draft.responses, ...draft.points.map((point) => point.responses)]) {
     for (const { path, value } of list.entries) {
       const { model } = value;
-      const count = Math.ceil(model.deadTime / fastest);
+      const count = Math.ceil(model.deadTime / grid);
       if (count > mostScans) {
         const problem = `a dead time of ${count} scans`;
         findings.fault('TOO_MANY_SCANS', [...path, 'model', 'deadTime'], problem, longest);
       }
       if (model.kind !== 'step-response') continue;
-      const length = Math.ceil((model.interval * model.values.length) / fastest);
+      const length = Math.ceil((model.interval * model.values.length) / grid);
       if (length > mostScans) {
         const problem = `a step response of ${length} scans`;
         findings.fault('TOO_MANY_SCANS', [...path, 'model', 'interval'], problem, longest);

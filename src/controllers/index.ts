@@ -20,6 +20,8 @@ export {
 } from './long-step.js';
 export {
   buildNetwork,
+  commonPeriod,
+  everyOf,
   type FinalElement,
   type Loop,
   type LoopNetwork,

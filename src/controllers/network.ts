@@ -26,7 +26,21 @@ export interface Loop {
   readonly feedforward?: readonly Feedforward[];
   /** Of the actuator it drives, where that has a dead band or a resolution. */
   readonly element?: FinalElement;
+  /** Common scans of the unit from one scan of this loop to the next; 1 where left out. */
+  readonly every?: number;
 }
+
+/** Common scans from one scan of a loop to the next. */
+export const everyOf = (loop: Loop): number => loop.every ?? 1;
+
+const gcd = (a: number, b: number): number => (b === 0 ? a : gcd(b, a % b));
+
+/** Common scans after which all automatic loops scan together again; 1 where they share one scan. */
+export const commonPeriod = ({ loops }: LoopNetwork): number =>
+  loops.reduce((period, loop) => {
+    const every = loop.automatic ? everyOf(loop) : 1;
+    return (period / gcd(period, every)) * every;
+  }, 1);
 
 /** All loops of a unit and how they hang together. */
 export interface LoopNetwork {

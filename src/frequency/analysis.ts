@@ -1,71 +1,48 @@
-import { type DiscreteController, openedBy } from '../controllers/index.js';
+import { openedBy } from '../controllers/index.js';
+import type { AnalysisRequest, FrequencyFigures, LoopFrequencyFigures } from './figures.js';
+import { analyseLifted } from './lifted-analysis.js';
+import { LiftedLoops } from './lifted-loops.js';
 import { LoopTraces } from './loop-traces.js';
 import { anglesBelow, nearlyZero } from './low-angles.js';
-import { type LoopMargins, readMargins } from './margins.js';
+import { readMargins } from './margins.js';
 import { findBandPeaks, findPeak } from './peaks.js';
 import type { SampledLoops } from './sampled-loops.js';
 import { singularValuesAt } from './singular-values.js';
-import { countUnstablePoles, type PoleCount, rowsOpenedBy } from './stability.js';
-
-/** Frequency-domain figures of one loop, cut at its controller's output, everything else closed. */
-export interface LoopFrequencyFigures extends LoopMargins {
-  readonly peakSensitivity: number;
-  readonly peakComplementary: number;
-  /** Standard deviation of the output from white noise on all measurements, one sample a scan. */
-  readonly outputNoise: number;
-  /** The same from the loop's own measurement alone. */
-  readonly outputNoiseOwn: number;
-  /** Peak sensitivity in each of the bands asked for. */
-  readonly bandSensitivities?: Float64Array;
-}
-
-export interface FrequencyFigures {
-  readonly stability: PoleCount;
-  /** The unit with one loop (and its outer loops) in manual, by loop; null where not asked or in manual. */
-  readonly withLoopInManual: readonly (PoleCount | null)[];
-  /** By loop; null in manual, and all null when the unit is unstable: then they mean nothing. */
-  readonly loops: readonly (LoopFrequencyFigures | null)[];
-  readonly peakSingularValueS: number | null;
-  readonly peakSingularValueT: number | null;
-  /** Largest singular values along the grid, where asked for and the unit is stable. */
-  readonly singularValues?: SingularCurves;
-}
-
-/** Largest singular values of S and T. */
-export interface SingularCurves {
-  /** rad/s, ascending. */
-  readonly frequencies: Float64Array;
-  readonly sensitivity: Float64Array;
-  readonly complementary: Float64Array;
-}
-
-export interface AnalysisRequest {
-  readonly loops: SampledLoops;
-  readonly controllers: readonly DiscreteController[];
-  /** Standard deviation of the PV noise of each loop's measurement, PV units. */
-  readonly noise: readonly number[];
-  /** PV span of each loop. */
-  readonly spans: readonly number[];
-  /** True: peaks and crossings are closed in on between the angles of the grid. */
-  readonly refine: boolean;
-  readonly singularValues: boolean;
-  readonly manualCases: boolean;
-  /** Stretches of the grid whose peak sensitivities are wanted one by one. */
-  readonly bands?: number;
-}
+import { countUnstablePoles, rowsOpenedBy } from './stability.js';
+import type { PoleCount } from './winding.js';
 
 /**
  * Stability, margins, peaks and noise of all loops of a unit at one tuning set.
  *
  * All figures are those of the sampled system. With `refine` peaks are exact to about 1e-6, without
- * it to a few parts in a thousand.
+ * it to a few parts in a thousand. Loops that scan at different intervals: see `analyseLifted`.
  */
 export function analyseLoops(request: AnalysisRequest): FrequencyFigures {
+  return request.loops instanceof LiftedLoops
+    ? analyseLifted(request, request.loops)
+    : analyseSampled({ ...request, loops: request.loops });
+}
+
+/** A request on loops of one scan. */
+interface SampledRequest extends AnalysisRequest {
+  readonly loops: SampledLoops;
+}
+
+function analyseSampled(request: SampledRequest): FrequencyFigures {
   const { loops, controllers } = request;
   const { equations } = loops;
   const rows = equations.loops;
   const width = rows.length;
-  const low = request.refine ? anglesBelow(loops, controllers) : new Float64Array(0);
+  const sensitivities = (angle: number): { re: number; im: number }[] => {
+    loops.solveBetween(controllers, angle);
+    const { re, im } = equations.matrix;
+    return rows.map((_, i) => ({
+      re: re[i * (width + 1)] as number,
+      im: im[i * (width + 1)] as number,
+    }));
+  };
+  const first = loops.angles[0] as number;
+  const low = request.refine ? anglesBelow(first, sensitivities) : new Float64Array(0);
   const angles = low.length === 0 ? loops.angles : Float64Array.of(...low, ...loops.angles);
   const traces = new LoopTraces(angles.length, width);
   const noise = new NoiseIntegral(request, angles, width);
@@ -203,7 +180,7 @@ class NoiseIntegral {
   readonly own: Float64Array;
 
   constructor(
-    private readonly request: AnalysisRequest,
+    private readonly request: SampledRequest,
     private readonly angles: Float64Array,
     width: number,
   ) {

@@ -19,21 +19,24 @@ interface FeedforwardPath {
  * A term of a disturbance is no part of any loop and does not appear.
  */
 export class FeedforwardPaths {
+  /** False: no output is told to another loop. */
+  readonly isAny: boolean;
   private readonly paths: readonly FeedforwardPath[];
   private readonly scratch: FeedforwardResponse = { re: 0, im: 0 };
 
   /**
    * @param loops  loop numbers of the automatic loops, the order of rows and columns
-   * @param scan  s
+   * @param scanOf  s between scans of a loop
    */
-  constructor(network: LoopNetwork, loops: readonly number[], scan: number) {
+  constructor(network: LoopNetwork, loops: readonly number[], scanOf: (loop: number) => number) {
     this.paths = loops.flatMap((loop, row) =>
       (network.loops[loop]?.feedforward ?? []).flatMap((term): FeedforwardPath[] => {
         const column = 'loop' in term.from ? loops.indexOf(term.from.loop) : -1;
         if (column < 0) return [];
-        return [{ row, column, sampled: discretizeFeedforward(term, scan) }];
+        return [{ row, column, sampled: discretizeFeedforward(term, scanOf(loop)) }];
       }),
     );
+    this.isAny = this.paths.length > 0;
   }
 
   /** Subtract every path at z = exp(i angle). */
@@ -45,6 +48,19 @@ export class FeedforwardPaths {
       const at = row * matrix.order + column;
       matrix.re[at] = (matrix.re[at] as number) - scratch.re;
       matrix.im[at] = (matrix.im[at] as number) - scratch.im;
+    }
+  }
+
+  /** Every path to one row at z = exp(i angle) of that row's scan. */
+  respond(
+    row: number,
+    angle: number,
+    take: (column: number, re: number, im: number) => void,
+  ): void {
+    for (const path of this.paths) {
+      if (path.row !== row) continue;
+      respondFeedforward(path.sampled, angle, this.scratch);
+      take(path.column, this.scratch.re, this.scratch.im);
     }
   }
 

@@ -56,7 +56,7 @@ export class LoopEquations {
     this.outerRow = Int32Array.from(this.loops, (loop) =>
       this.loops.indexOf(network.outerOf[loop] as number),
     );
-    this.feedforward = new FeedforwardPaths(network, this.loops, unit.step);
+    this.feedforward = new FeedforwardPaths(network, this.loops, () => unit.step);
   }
 
   /**

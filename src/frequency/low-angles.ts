@@ -1,6 +1,3 @@
-import type { DiscreteController } from '../controllers/index.js';
-import type { SampledLoops } from './sampled-loops.js';
-
 /** Close enough to zero for the value there: integral action makes T = 1, which no grid reaches. */
 export const nearlyZero = 1e-9;
 
@@ -13,21 +10,13 @@ const restingDistance = 0.1;
  *
  * The grid reaches to periods of twenty horizons. A loop slower than that crosses over, and passes most
  * of its noise, further down.
+ * @param first  lowest angle of the grid
+ * @param sensitivities  of all loops at an angle
  */
 export function anglesBelow(
-  loops: SampledLoops,
-  controllers: readonly DiscreteController[],
+  first: number,
+  sensitivities: (angle: number) => readonly { readonly re: number; readonly im: number }[],
 ): Float64Array {
-  const { matrix, loops: rows } = loops.equations;
-  const width = rows.length;
-  const first = loops.angles[0] as number;
-  const sensitivities = (angle: number): { re: number; im: number }[] => {
-    loops.solveBetween(controllers, angle);
-    return rows.map((_, i) => ({
-      re: matrix.re[i * (width + 1)] as number,
-      im: matrix.im[i * (width + 1)] as number,
-    }));
-  };
   const rest = sensitivities(nearlyZero);
   const isAtRest = (angle: number): boolean =>
     sensitivities(angle).every(({ re, im }, i) => {

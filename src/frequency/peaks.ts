@@ -6,11 +6,13 @@
  * @param values  value at grid index k
  * @param angles  the grid, ascending
  * @param probe  the function anywhere
+ * @param share  local maxima below this share of the largest are left as they are
  */
 export function findPeak(
   values: (k: number) => number,
   angles: Float64Array,
   probe?: (angle: number) => number,
+  share = 0.8,
 ): number {
   const count = angles.length;
   let best = 0;
@@ -28,7 +30,7 @@ export function findPeak(
     const value = values(k);
     const isCrest =
       (k === 0 || values(k - 1) <= value) && (k === count - 1 || values(k + 1) <= value);
-    if (!isCrest || value < 0.8 * best) continue;
+    if (!isCrest || value < share * best) continue;
     const from = Math.log(angles[Math.max(0, k - 1)] as number);
     const to = Math.log(angles[Math.min(count - 1, k + 1)] as number);
     peak = Math.max(

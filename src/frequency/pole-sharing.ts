@@ -16,9 +16,11 @@ export class PoleSharing {
   readonly isAny: boolean;
   private readonly known = new Map<string, readonly Surplus[]>();
 
+  /** @param count  steps of the unit between the instants at which it is looked at */
   constructor(
     private readonly unit: SampledUnit,
     private readonly network: LoopNetwork,
+    private readonly count = 1,
   ) {
     this.isAny = unit.sharedPoles.length > 0;
   }
@@ -56,7 +58,7 @@ export class PoleSharing {
     let log = 0;
     let turn = 0;
     for (const { pole, count } of this.surplusOf(loops)) {
-      const one = poleFactor(pole, this.unit.step, angle);
+      const one = poleFactor(pole, this.unit.step * this.count, angle);
       log += count * one.log;
       turn += count * one.angle;
     }

@@ -1,13 +1,7 @@
 import type { DiscreteController } from '../controllers/index.js';
 import { openedBy } from '../controllers/index.js';
 import type { SampledLoops } from './sampled-loops.js';
-
-/** How many closed-loop poles lie on or outside the unit circle. */
-export interface PoleCount {
-  readonly unstable: number;
-  /** False when a pole sits so close to the circle that it could not be placed; it counts as unstable. */
-  readonly decided: boolean;
-}
+import { countTurns, type PoleCount, type Sample, wrap } from './winding.js';
 
 /** A case of the count: the rows that are taken out, their loops being in manual. */
 export type OpenRows = readonly number[];
@@ -20,31 +14,13 @@ export function rowsOpenedBy(loops: SampledLoops, loop: number): number[] {
     .filter((row) => row >= 0);
 }
 
-/** Halfway in the logarithm, or plainly where the interval is wide or begins at zero. */
-const middleOf = (from: number, to: number): number =>
-  from > 0 && to < 2 * from ? Math.sqrt(from * to) : (from + to) / 2;
-
-const fullTurn = 2 * Math.PI;
-const wrap = (angle: number): number => angle - fullTurn * Math.round(angle / fullTurn);
-/** Largest step of log F between neighbours, and largest change of that step, that count as followed. */
-const largestTurn = 1;
-const largestBend = 0.6;
-const deepest = 48;
-
-interface Sample {
-  readonly log: Float64Array;
-  readonly angle: Float64Array;
-}
-
 /**
  * Count the closed loop's poles on or outside the unit circle, for all loops closed and for chosen
  * cases with loops in manual.
  *
  * By the argument principle: F (see `LoopEquations`) has no poles on or outside the circle and is one
- * at infinity, so the turns of F along the upper half circle count its zeros there. F is followed
- * from its exact real value at z = 1 to z = -1; an interval across which log F bends is halved until
- * it does not, so neither a sharp resonance nor two at one frequency slip through the grid. The pole
- * factors make F finite at z = 1, so no contour is indented and drift is seen by the sign of F(1).
+ * at infinity, so the turns of F along the upper half circle count its zeros there. The pole factors
+ * make F finite at z = 1, so no contour is indented and drift is seen by the sign of F(1).
  *
  * @param cases  rows in manual; an empty list is the whole unit closed
  * @param visit  called once for each grid angle, with the equations solved there
@@ -57,100 +33,29 @@ export function countUnstablePoles(
   cases: readonly OpenRows[],
   visit?: (k: number) => void,
 ): PoleCount[] {
-  const { angles } = loops;
-  const count = angles.length;
   const width = cases.length;
-  const log = new Float64Array(count * width);
-  const angle = new Float64Array(count * width);
-  const sampleAt = (k: number): Sample => ({
-    log: log.subarray(k * width, (k + 1) * width),
-    angle: angle.subarray(k * width, (k + 1) * width),
-  });
-  const read = (into: Sample): Sample => {
+  const read = (): Sample => {
+    const into = { log: new Float64Array(width), angle: new Float64Array(width) };
     cases.forEach((open, c) => {
       readCase(loops, open, into, c);
     });
     return into;
   };
-  for (let k = 0; k < count; k += 1) {
-    loops.solveAt(controllers, k);
-    read(sampleAt(k));
-    visit?.(k);
-  }
-
-  const total = new Float64Array(width);
-  const lost = new Uint8Array(width);
-  const between = (at: number): Sample => {
-    loops.solveBetween(controllers, at);
-    return read({ log: new Float64Array(width), angle: new Float64Array(width) });
-  };
-  const bends = (a: Sample, m: Sample, b: Sample): boolean => {
-    for (let c = 0; c < width; c += 1) {
-      if (lost[c]) continue;
-      const first = wrap((m.angle[c] as number) - (a.angle[c] as number));
-      const second = wrap((b.angle[c] as number) - (m.angle[c] as number));
-      const rise = (m.log[c] as number) - (a.log[c] as number);
-      const rise2 = (b.log[c] as number) - (m.log[c] as number);
-      if (
-        !(Math.abs(first) < largestTurn) ||
-        !(Math.abs(second) < largestTurn) ||
-        !(Math.abs(first - second) < largestBend) ||
-        !(Math.abs(rise - rise2) < largestBend)
-      ) {
-        return true;
-      }
-    }
-    return false;
-  };
-  const take = (a: Sample, b: Sample): void => {
-    for (let c = 0; c < width; c += 1) {
-      total[c] = (total[c] as number) + wrap((b.angle[c] as number) - (a.angle[c] as number));
-    }
-  };
-  const follow = (a: Sample, from: number, b: Sample, to: number, depth: number): void => {
-    const middle = middleOf(from, to);
-    const m = between(middle);
-    // Both halves must be straight too: coinciding zeros may hide from one middle, not from three.
-    const straight =
-      !bends(a, m, b) &&
-      !bends(a, between(middleOf(from, middle)), m) &&
-      !bends(m, between(middleOf(middle, to)), b);
-    if (straight) {
-      take(a, m);
-      take(m, b);
-    } else if (depth >= deepest || middle <= from || middle >= to) {
-      markLost(a, m, b, lost);
-      take(a, b);
-    } else {
-      follow(a, from, m, middle, depth + 1);
-      follow(m, middle, b, to, depth + 1);
-    }
-  };
-
-  const rest = sampleAtRest(loops, controllers, cases, lost);
-  follow(rest, 0, sampleAt(0), angles[0] as number, 0);
-  const smooth = new Uint8Array(count);
-  for (let k = 1; k + 1 < count; k += 1) {
-    smooth[k] = bends(sampleAt(k - 1), sampleAt(k), sampleAt(k + 1)) ? 0 : 1;
-  }
-  for (let k = 0; k + 1 < count; k += 1) {
-    if (smooth[k] && smooth[k + 1]) take(sampleAt(k), sampleAt(k + 1));
-    else follow(sampleAt(k), angles[k] as number, sampleAt(k + 1), angles[k + 1] as number, 0);
-  }
-  return cases.map((_, c) => {
-    const turns = -(total[c] as number) / Math.PI;
-    const unstable = Math.round(turns) + 0;
-    const decided = lost[c] === 0 && Math.abs(turns - unstable) < 0.2 && unstable >= 0;
-    return { unstable: decided ? unstable : Math.max(1, unstable), decided };
+  return countTurns({
+    angles: loops.angles,
+    width,
+    sampleAt: (k) => {
+      loops.solveAt(controllers, k);
+      const sample = read();
+      visit?.(k);
+      return sample;
+    },
+    between: (angle) => {
+      loops.solveBetween(controllers, angle);
+      return read();
+    },
+    atRest: (lost) => sampleAtRest(loops, controllers, cases, lost),
   });
-}
-
-function markLost(a: Sample, m: Sample, b: Sample, lost: Uint8Array): void {
-  for (let c = 0; c < lost.length; c += 1) {
-    const first = wrap((m.angle[c] as number) - (a.angle[c] as number));
-    const second = wrap((b.angle[c] as number) - (m.angle[c] as number));
-    if (!(Math.abs(first) < largestTurn && Math.abs(second) < largestTurn)) lost[c] = 1;
-  }
 }
 
 /** log F and arg F of one case: F without rows R is F times the minor of the inverse on R. */

@@ -1,4 +1,11 @@
 export { ComplexMatrix, largestSingularValue } from './complex-matrix.js';
+export {
+  addAdjointProduct,
+  addProduct,
+  type ComplexArray,
+  complexArray,
+  type Place,
+} from './complex-products.js';
 export { eliminate, identity, multiplyMatrices, solveLinear } from './matrix.js';
 export { discretizeHeld, exponentiate } from './matrix-exponential.js';
 export {

@@ -1,12 +1,16 @@
 import {
   type ControllerSettings,
+  commonPeriod,
   type DiscreteController,
   discretizeController,
+  everyOf,
+  type Loop,
 } from '../controllers/index.js';
 import {
   analyseLoops,
   type FrequencyFigures,
   frequencyGrid,
+  LiftedLoops,
   SampledLoops,
 } from '../frequency/index.js';
 import { type SampledUnit, sampleUnit, type UnitPath } from '../responses/index.js';
@@ -22,8 +26,8 @@ import { readUpset, runUpset } from './upset-runs.js';
 export interface SampledModel {
   /** At the simulation's step. */
   readonly unit: SampledUnit;
-  /** At the scan, on a grid of angles. */
-  readonly loops: SampledLoops;
+  /** At the scan, or over the common period of unequal scans, on a grid of angles. */
+  readonly loops: SampledLoops | LiftedLoops;
 }
 
 /** Angles a decade: enough for `analyseLoops` to close in on every peak, or for the search. */
@@ -41,8 +45,15 @@ export function sampleModel(
   const atScan = sampleUnit(paths, sourceCount, measurementCount, tuning.scan);
   const unit =
     tuning.stepsPerScan === 1 ? atScan : sampleUnit(paths, sourceCount, measurementCount, step);
-  const grid = frequencyGrid(tuning.scan, tuning.steps * step, tuning.longestDeadTime, perDecade);
-  return { unit, loops: new SampledLoops(atScan, tuning.network, grid) };
+  const { network } = tuning;
+  const period = commonPeriod(network);
+  const horizon = tuning.steps * step;
+  const grid = frequencyGrid(tuning.scan * period, horizon, tuning.longestDeadTime, perDecade);
+  const loops =
+    period === 1
+      ? new SampledLoops(atScan, network, grid)
+      : new LiftedLoops(atScan, network, grid, perDecade === gridDensity.searching);
+  return { unit, loops };
 }
 
 /** One tuning set on one model. */
@@ -62,15 +73,15 @@ export interface ModelScore {
   readonly cycles: readonly (LimitCycle | null)[];
 }
 
-/** Controllers of every loop at a scan; a loop in manual has settings that are never run. */
+/** Controllers of every loop at its scan; a loop in manual has settings that are never run. */
 export function controllersOf(
   tuning: TuningCase,
   settings: readonly ControllerSettings[],
-  scan: number,
 ): DiscreteController[] {
-  return settings.map((s, i) =>
-    discretizeController(s, { ...(tuning.loops[i] as LoopCase).algorithm, scan }),
-  );
+  return settings.map((s, i) => {
+    const scan = tuning.scan * everyOf(tuning.network.loops[i] as Loop);
+    return discretizeController(s, { ...(tuning.loops[i] as LoopCase).algorithm, scan });
+  });
 }
 
 /** Stability, margins and noise of one tuning set on one model as read off the grid, nothing closed in on. */
@@ -81,7 +92,7 @@ export function surveyModel(
 ): FrequencyFigures {
   return analyseLoops({
     loops: model.loops,
-    controllers: controllersOf(tuning, settings, tuning.scan),
+    controllers: controllersOf(tuning, settings),
     noise: tuning.loops.map((loop) => loop.noise),
     spans: tuning.loops.map((loop) => loop.inputSpan),
     refine: false,
@@ -102,7 +113,7 @@ export function simulateUpsets(
   settings: readonly ControllerSettings[],
   watch?: (upset: number, trajectory: Trajectory) => void,
 ): UpsetFigures[][] {
-  const controllers = controllersOf(tuning, settings, tuning.scan);
+  const controllers = controllersOf(tuning, settings);
   return tuning.upsets.map((weighted, u) => {
     const trajectory = runUpset({ tuning, unit, controllers }, weighted, false);
     watch?.(u, trajectory);
@@ -122,7 +133,7 @@ export function judgeModel(
   detail: { readonly singularValues: boolean; readonly manualCases: boolean },
   watch?: (upset: number, trajectory: Trajectory) => void,
 ): ModelScore {
-  const controllers = controllersOf(tuning, settings, tuning.scan);
+  const controllers = controllersOf(tuning, settings);
   const frequency = analyseLoops({
     loops: model.loops,
     controllers,

@@ -31,9 +31,9 @@ export interface TuningCase {
   readonly loops: readonly LoopCase[];
   readonly upsets: readonly WeightedUpset[];
   readonly limits: readonly Limit[];
-  /** s between scans, one for all loops. */
+  /** s between the common scans of the unit: one for all loops, or the grid that all of them are on. */
   readonly scan: number;
-  /** Simulated steps between scans. */
+  /** Simulated steps between common scans. */
   readonly stepsPerScan: number;
   /** Simulated steps of every upset. */
   readonly steps: number;

@@ -1,4 +1,4 @@
-import type { FinalElement } from '../controllers/index.js';
+import { everyOf, type FinalElement } from '../controllers/index.js';
 import { FeedforwardBank } from './feedforward-bank.js';
 import { advanceGroups, advanceTaps, advanceWide, type FlatUnit } from './flat-unit.js';
 import type { KernelSetup, SimulationKernel } from './kernel.js';
@@ -32,7 +32,12 @@ class EquippedKernel extends ScalarKernel {
     const { network, units, stepsPerScan, steps, elements } = setup;
     const scan = ((units[0] as { step: number }).step ?? 1) * stepsPerScan;
     const scans = Math.floor(steps / stepsPerScan);
-    this.feedforward = new FeedforwardBank(network.loops, { scan, step: scan, steps: scans });
+    this.feedforward = new FeedforwardBank(network.loops, {
+      scan,
+      step: scan,
+      steps: scans,
+      every: network.loops.map(everyOf),
+    });
     const of = (key: keyof FinalElement): Float64Array =>
       Float64Array.from(network.loops, ({ element }) => (elements ? (element?.[key] ?? 0) : 0));
     this.halfGap = of('deadband').map((gap) => gap / 2);
@@ -43,7 +48,7 @@ class EquippedKernel extends ScalarKernel {
   protected override run(flat: FlatUnit, count: number, upset: Upset): void {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
     const { active, bases, feedforward } = this;
-    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;
+    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf, every } = this;
     const { groups, taps, wide, direct } = flat;
     const { steps, stepsPerScan } = this.setup;
     const loops = order.length;
@@ -80,7 +85,7 @@ class EquippedKernel extends ScalarKernel {
             ? (bank[outer * SLOTS + OUTPUT] as number)
             : (bank[at + OWN_SETPOINT] as number);
         const measured = values[measurementOf[i] as number] as number;
-        if (scanning && automatic[i] === 1) {
+        if (scanning && automatic[i] === 1 && scan % (every[i] as number) === 0) {
           const inner = innerOf[i] as number;
           feedforward.feed(bank, i, scan, pushed, push);
           feedforward.scan(bank, i, inner < 0 ? -1 : inner * SLOTS, setpoint, measured);

@@ -1,4 +1,5 @@
 import {
+  everyOf,
   type Feedforward,
   feedforwardForLongStep,
   type LongStepFeedforward,
@@ -8,12 +9,14 @@ import { INTEGRAL, OUTPUT, SLOTS, scanLoop } from './loop-bank.js';
 
 /** How often the loops run. */
 export interface FeedforwardSteps {
-  /** s, of each loop as it scans. */
+  /** s between common scans. */
   readonly scan: number;
-  /** s, of each loop as it is simulated. */
+  /** s between steps. */
   readonly step: number;
   /** Steps of an upset. */
   readonly steps: number;
+  /** By loop: steps from one run to the next. */
+  readonly every: readonly number[];
 }
 
 /** The feedforward terms of all loops on flat arrays; the kernels' part of it. */
@@ -23,6 +26,8 @@ export class FeedforwardBank {
   /** Of each term: the loop whose output it takes, or -1; the disturbance's source, or -1. */
   private readonly loopOf: Int32Array;
   private readonly sourceOf: Int32Array;
+  /** Of each term: steps between runs of the loop it is for. */
+  private readonly every: Int32Array;
   private readonly sampled: readonly LongStepFeedforward[];
   private readonly lagged: Float64Array;
   /** By loop: what its terms add now. */
@@ -32,16 +37,22 @@ export class FeedforwardBank {
   private readonly lead: number;
   private readonly rowLength: number;
 
-  constructor(loops: readonly Loop[], { scan, step, steps }: FeedforwardSteps) {
+  constructor(loops: readonly Loop[], { scan, step, steps, every }: FeedforwardSteps) {
     const terms: Feedforward[] = [];
+    const owners: number[] = [];
     this.start = new Int32Array(loops.length + 1);
     loops.forEach((loop, i) => {
       terms.push(...(loop.feedforward ?? []));
+      while (owners.length < terms.length) owners.push(i);
       this.start[i + 1] = terms.length;
     });
     this.loopOf = Int32Array.from(terms, ({ from }) => ('loop' in from ? from.loop : -1));
     this.sourceOf = Int32Array.from(terms, ({ from }) => ('source' in from ? from.source : -1));
-    this.sampled = terms.map((term) => feedforwardForLongStep(term, scan, step));
+    this.every = Int32Array.from(owners, (i) => every[i] as number);
+    this.sampled = terms.map((term, t) => {
+      const own = scan * everyOf(loops[owners[t] as number] as Loop);
+      return feedforwardForLongStep(term, own, step * (this.every[t] as number));
+    });
     this.lagged = new Float64Array(terms.length);
     this.known = new Float64Array(loops.length);
     this.lead = 2 + this.sampled.reduce((n, f) => Math.max(n, f.delay, f.directDelay), 0);
@@ -70,7 +81,7 @@ export class FeedforwardBank {
   }
 
   /**
-   * What the terms of a loop add at step k; once a step, before the loop runs.
+   * What the terms of a loop add at step k, at which it runs; once, before it does.
    * @param pushed  the source that a disturbance moves by `push`, or -1
    */
   feed(bank: Float64Array, loop: number, k: number, pushed: number, push: number): void {
@@ -78,7 +89,7 @@ export class FeedforwardBank {
     let sum = 0;
     for (let t = start[loop] as number; t < (start[loop + 1] as number); t += 1) {
       const f = sampled[t] as LongStepFeedforward;
-      const at = t * rowLength + lead + k;
+      const at = t * rowLength + lead + k / (this.every[t] as number);
       signals[at] = this.signalOf(t, bank, pushed, push);
       const x =
         f.decay * (lagged[t] as number) +
@@ -95,9 +106,11 @@ export class FeedforwardBank {
 
   /** Keep the signals as they are once every loop has run step k. */
   record(bank: Float64Array, k: number, pushed: number, push: number): void {
-    const { signals, loopOf, rowLength, lead } = this;
+    const { signals, loopOf, rowLength, lead, every } = this;
     for (let t = 0; t < loopOf.length; t += 1) {
-      signals[t * rowLength + lead + k] = this.signalOf(t, bank, pushed, push);
+      const own = every[t] as number;
+      if (k % own !== 0) continue;
+      signals[t * rowLength + lead + k / own] = this.signalOf(t, bank, pushed, push);
     }
   }
 

@@ -24,6 +24,7 @@ export interface KernelSetup {
   readonly upsets: readonly Upset[];
   /** PV deviation that counts as settled, [upset][loop]. */
   readonly bands: readonly (readonly number[])[];
+  /** Between scans; a loop of its own scan runs at every so many of these. */
   readonly stepsPerScan: number;
   readonly steps: number;
   /** True where dead band and resolution of the final elements act; range and rate always do. */

@@ -1,4 +1,10 @@
-import type { DiscreteController, Feedforward, Loop, LoopNetwork } from '../controllers/index.js';
+import {
+  type DiscreteController,
+  everyOf,
+  type Feedforward,
+  type Loop,
+  type LoopNetwork,
+} from '../controllers/index.js';
 import type {
   SampledChannel,
   SampledInput,
@@ -28,7 +34,7 @@ export interface PlainRun {
   readonly network: LoopNetwork;
   /** One a loop; ignored for a loop in manual. */
   readonly controllers: readonly DiscreteController[];
-  /** Steps of the unit between scans. */
+  /** Steps of the unit between scans; a loop of its own scan runs at every so many of these. */
   readonly stepsPerScan: number;
   readonly upset: Upset;
   readonly steps: number;
@@ -64,7 +70,8 @@ const rest = (): ControllerState => ({
  * The closed loop simulated as written down in the equations, one sample after the other.
  *
  * This is the path that judges: it shares no code with the search's kernel, holds every trajectory
- * and is written to be read. Exact for held inputs at the unit's step.
+ * and is written to be read. Exact for held inputs at the unit's step. All loops scan at t = 0, when
+ * the upset begins: a load or disturbance then waits for the next scan of each loop as long as it can.
  */
 export function simulatePlainly(run: PlainRun): Trajectory {
   const { unit, controllers, stepsPerScan, upset, steps } = run;
@@ -78,16 +85,18 @@ export function simulatePlainly(run: PlainRun): Trajectory {
   const states = loops.map(rest);
   const held = Array.from({ length: unit.sourceCount }, fresh);
   const process = new Process(unit, movingSources(run, automatic));
-  const scanTime = stepsPerScan * unit.step;
-  const told = loops.map((loop) =>
-    (loop.feedforward ?? []).map((term) => new PlainFeedforward(term, scanTime)),
+  const stepsOf = loops.map((loop) => stepsPerScan * everyOf(loop));
+  const told = loops.map((loop, i) =>
+    (loop.feedforward ?? []).map(
+      (term) => new PlainFeedforward(term, (stepsOf[i] as number) * unit.step),
+    ),
   );
   const elements = loops.map((loop) =>
     run.elements && loop.element !== undefined ? new PlainElement(loop.element) : null,
   );
-  /** What the signal of a feedforward term was at a scan. */
-  const signalAt = ({ from }: Feedforward, n: number): number => {
-    if ('loop' in from) return (op[from.loop] as Float64Array)[n * stepsPerScan] as number;
+  /** What the signal of a feedforward term was at a step. */
+  const signalAt = ({ from }: Feedforward, k: number): number => {
+    if ('loop' in from) return (op[from.loop] as Float64Array)[k] as number;
     return upset.kind === 'disturbance' && upset.source === from.source ? upset.size : 0;
   };
 
@@ -104,7 +113,8 @@ export function simulatePlainly(run: PlainRun): Trajectory {
       if (driven) setpoint = (states[outer] as ControllerState).output;
       const state = states[i] as ControllerState;
       const measured = values[loop.measurement] as number;
-      if (automatic[i] && k % stepsPerScan === 0) {
+      const ownSteps = stepsOf[i] as number;
+      if (automatic[i] && k % ownSteps === 0) {
         const inner = 'loop' in loop.drives ? loop.drives.loop : -1;
         const blocked =
           inner >= 0
@@ -112,7 +122,7 @@ export function simulatePlainly(run: PlainRun): Trajectory {
               actionOf(controllers[inner] as DiscreteController)
             : 0;
         const known = (told[i] as readonly PlainFeedforward[]).reduce(
-          (sum, term) => sum + term.at(k / stepsPerScan, signalAt),
+          (sum, term) => sum + term.at(k / ownSteps, (t, n) => signalAt(t, n * ownSteps)),
           0,
         );
         scan(
@@ -121,7 +131,7 @@ export function simulatePlainly(run: PlainRun): Trajectory {
           loop,
           setpoint,
           measured,
-          scanTime,
+          ownSteps * unit.step,
           blocked,
           known,
         );

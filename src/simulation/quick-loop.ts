@@ -48,6 +48,8 @@ export interface LongStep {
   readonly base: number;
   readonly load: number;
   readonly automatic: boolean;
+  /** Scans of the long step from one scan of this loop to the next; it scans at the first. */
+  readonly every: number;
 }
 
 /**
@@ -62,7 +64,7 @@ export function runQuickLoop(
   own: OwnResponse,
   longStep: LongStep,
 ): number {
-  const { from, scans, last, setpoint, base, load, automatic } = longStep;
+  const { from, scans, last, setpoint, base, load, automatic, every } = longStep;
   const { decay, now, before, delay, states, history, lead } = own;
   const sections = states.length;
   const kp = b[at + slot.KP] as number;
@@ -94,12 +96,15 @@ export function runQuickLoop(
   let travel = 0;
   let peakMove = b[at + slot.PEAK_MOVE] as number;
   let sum = 0;
+  let untilScan = 0;
 
   for (let j = 0; j < scans; j += 1) {
     const k = from + j;
     let measured = base;
     for (let s = 0; s < sections; s += 1) measured += states[s] as number;
-    if (automatic) {
+    const due = untilScan === 0;
+    untilScan = due ? every - 1 : untilScan - 1;
+    if (automatic && due) {
       filtered1 = filterDecay * filtered1 + filterGain * measured;
       let filtered = filtered1;
       if (second) {

@@ -1,4 +1,4 @@
-import type { DiscreteController, Loop } from '../controllers/index.js';
+import { type DiscreteController, everyOf, type Loop } from '../controllers/index.js';
 import {
   advanceGroups,
   advanceTaps,
@@ -41,6 +41,9 @@ export class ScalarKernel implements SimulationKernel {
   protected readonly setpointSourceOf: Int32Array;
   protected readonly outerOf: Int32Array;
   protected readonly innerOf: Int32Array;
+  /** Common scans between scans of each loop, and whether all loops scan at every one. */
+  protected readonly every: Int32Array;
+  protected readonly together: boolean;
   protected readonly automatic: Uint8Array;
   protected readonly moves: Uint8Array;
   protected readonly active: Int32Array;
@@ -70,6 +73,8 @@ export class ScalarKernel implements SimulationKernel {
     this.setpointSourceOf = Int32Array.from(loops, (l) => l.setpointSource);
     this.innerOf = Int32Array.from(loops, (l) => ('loop' in l.drives ? l.drives.loop : -1));
     this.outerOf = Int32Array.from(network.outerOf);
+    this.every = Int32Array.from(loops, everyOf);
+    this.together = this.every.every((n) => n === 1);
     this.automatic = new Uint8Array(loops.length);
     this.moves = new Uint8Array(sources);
     const mostGroups = Math.max(1, ...this.flat.map((f) => f.groups.source.length));
@@ -108,7 +113,8 @@ export class ScalarKernel implements SimulationKernel {
   private loadControllers(controllers: readonly DiscreteController[]): void {
     const { bank, scanTime } = this;
     this.setup.network.loops.forEach((loop, i) => {
-      loadLoop(bank, i * SLOTS, loop, controllers[i] as DiscreteController, scanTime);
+      const ownTime = scanTime * everyOf(loop);
+      loadLoop(bank, i * SLOTS, loop, controllers[i] as DiscreteController, ownTime);
     });
   }
 
@@ -140,7 +146,7 @@ export class ScalarKernel implements SimulationKernel {
   protected run(flat: FlatUnit, count: number, upset: Upset): void {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
     const { active, bases } = this;
-    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;
+    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf, every, together } = this;
     const { groups, taps, wide, direct } = flat;
     const tapped = taps.source.length > 0;
     const { steps, stepsPerScan } = this.setup;
@@ -148,6 +154,7 @@ export class ScalarKernel implements SimulationKernel {
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
     const push = upset.size;
     let untilScan = 0;
+    let scans = -1;
 
     for (let k = 0; k <= steps; k += 1) {
       for (let m = 0; m < values.length; m += 1) values[m] = 0;
@@ -164,6 +171,7 @@ export class ScalarKernel implements SimulationKernel {
       }
       const scanning = untilScan === 0;
       untilScan = scanning ? stepsPerScan - 1 : untilScan - 1;
+      if (scanning) scans += 1;
       for (let o = 0; o < loops; o += 1) {
         const i = order[o] as number;
         const at = i * SLOTS;
@@ -173,7 +181,8 @@ export class ScalarKernel implements SimulationKernel {
             ? (bank[outer * SLOTS + OUTPUT] as number)
             : (bank[at + OWN_SETPOINT] as number);
         const measured = values[measurementOf[i] as number] as number;
-        if (scanning && automatic[i] === 1) {
+        const due = scanning && (together || scans % (every[i] as number) === 0);
+        if (due && automatic[i] === 1) {
           const inner = innerOf[i] as number;
           scanLoop(bank, at, inner < 0 ? -1 : inner * SLOTS, setpoint, measured);
         }

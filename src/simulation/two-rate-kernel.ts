@@ -1,4 +1,9 @@
-import type { DiscreteController, Loop, LoopNetwork } from '../controllers/index.js';
+import {
+  type DiscreteController,
+  everyOf,
+  type Loop,
+  type LoopNetwork,
+} from '../controllers/index.js';
 import type { SampledUnit } from '../responses/index.js';
 import { FeedforwardBank } from './feedforward-bank.js';
 import {
@@ -27,12 +32,17 @@ import type { Upset } from './upset.js';
 /** What the kernel is built for: a unit split into quick loops and all the rest. */
 export interface TwoRateSetup {
   readonly network: LoopNetwork;
-  /** By loop: true where it runs at every scan on its own response, all others at every `stride` scans. */
+  /**
+   * By loop: true where it runs at its scans on its own response, all others once a long step, or at
+   * their own scans where these are whole numbers of long steps. A quick loop's scan divides the long
+   * step.
+   */
   readonly quick: readonly boolean[];
   /** Models without the quick loops' own responses, sampled at `stride` scans. */
   readonly units: readonly SampledUnit[];
   /** The quick loops' own responses alone, sampled at the scan; first order only. */
   readonly ownUnits: readonly SampledUnit[];
+  /** Common scans in a long step. */
   readonly stride: number;
   /** Long steps of every upset. */
   readonly steps: number;
@@ -46,7 +56,8 @@ export interface TwoRateSetup {
  * loops of minutes.
  *
  * Quick loops scan as they do, each on its own response; to everything else they show the mean of
- * their output over a long step. All other loops scan once a long step. The longer hold of these is
+ * their output over a long step. All other loops scan once a long step, or as they do where that is
+ * less often. The longer hold of these is
  * made good by dead times shortened by half of what it adds, so that the error is of second order in
  * the long step. The caller has to show that it is small.
  *
@@ -68,6 +79,9 @@ export class TwoRateKernel implements SimulationKernel {
   private readonly automatic: Uint8Array;
   private readonly slowOrder: readonly number[];
   private readonly quickLoops: readonly number[];
+  /** Long steps between scans of each slow loop, and whether all of them scan at every one. */
+  private readonly every: Int32Array;
+  private readonly together: boolean;
   private readonly moves: Uint8Array;
   private readonly active: Int32Array;
   private readonly bases: Int32Array;
@@ -81,6 +95,8 @@ export class TwoRateKernel implements SimulationKernel {
     this.flat = units.map((unit) => flattenUnit(unit, network));
     this.quickLoops = network.order.filter((i) => quick[i]);
     this.slowOrder = network.order.filter((i) => !quick[i]);
+    this.every = Int32Array.from(network.loops, (loop) => Math.max(1, everyOf(loop) / stride));
+    this.together = this.slowOrder.every((i) => this.every[i] === 1);
     this.own = ownUnits.map((unit) =>
       this.quickLoops.map((i) => new OwnResponse(unit, network.loops[i] as Loop, steps * stride)),
     );
@@ -102,7 +118,10 @@ export class TwoRateKernel implements SimulationKernel {
     this.bases = new Int32Array(mostGroups);
     const step = first?.step ?? 1;
     this.feedforward = network.loops.some((loop) => (loop.feedforward ?? []).length > 0)
-      ? new FeedforwardBank(network.loops, { scan: step / stride, step, steps })
+      ? new FeedforwardBank(network.loops, {
+          ...{ scan: step / stride, step, steps },
+          every: Array.from(this.every),
+        })
       : null;
   }
 
@@ -127,10 +146,18 @@ export class TwoRateKernel implements SimulationKernel {
     return out;
   }
 
-  private scanOf(loop: number): number {
+  /** s between samples of a loop's PV. */
+  private stepOf(loop: number): number {
     const { quick, units, stride } = this.setup;
     const step = (units[0] as SampledUnit).step;
     return quick[loop] ? step / stride : step;
+  }
+
+  /** s between scans of a loop, as simulated. */
+  private scanOf(loop: number): number {
+    const { quick, network } = this.setup;
+    const every = quick[loop] ? everyOf(network.loops[loop] as Loop) : (this.every[loop] as number);
+    return this.stepOf(loop) * every;
   }
 
   private loadControllers(controllers: readonly DiscreteController[]): void {
@@ -173,7 +200,8 @@ export class TwoRateKernel implements SimulationKernel {
         const at = i * SLOTS;
         const setpoint = this.setpointOf(i);
         const measured = values[loop.measurement] as number;
-        if (automatic[i] === 1) {
+        const due = this.together || k % (this.every[i] as number) === 0;
+        if (due && automatic[i] === 1) {
           const inner = 'loop' in loop.drives ? loop.drives.loop * SLOTS : -1;
           if (feedforward === null) scanLoop(bank, at, inner, setpoint, measured);
           else {
@@ -202,6 +230,7 @@ export class TwoRateKernel implements SimulationKernel {
           base,
           load,
           automatic: automatic[i] === 1,
+          every: everyOf(loop),
         });
         this.record(response.source, k, pushed, upset, mean);
         if (loop.setpointSource >= 0)
@@ -254,7 +283,7 @@ export class TwoRateKernel implements SimulationKernel {
     const { network, quick, stride, steps } = this.setup;
     for (let i = 0; i < network.loops.length; i += 1) {
       const to = offset + i * figureCount;
-      const step = this.scanOf(i);
+      const step = this.stepOf(i);
       reportLoop(this.bank, i * SLOTS, out, to, step, quick[i] ? steps * stride : steps);
     }
   }

@@ -1,6 +1,7 @@
 import type { CheckReport, JobDocument, Warning } from '../contract/index.js';
 import { countSignChanges, describeUnit } from './check.js';
 import type { Provenance } from './evaluation.js';
+import { slowestEvery } from './horizon.js';
 import type { Workbench } from './workbench.js';
 
 /**
@@ -68,8 +69,10 @@ function runOf({ search }: JobDocument, bench: Workbench): CheckReport['run'] {
   const { compiled, preparation, tuning, steps } = bench;
   const inJobUnit = (seconds: number): number =>
     Number((seconds / compiled.timeUnit).toPrecision(12));
+  const slowest = slowestEvery(compiled);
   return {
     scan: inJobUnit(tuning.scan),
+    ...(slowest === 1 ? {} : { slowestScan: inJobUnit(slowest * tuning.scan) }),
     step: inJobUnit(tuning.scan / tuning.stepsPerScan),
     searchStep: inJobUnit(steps.searching),
     searchError: preparation.searchError,

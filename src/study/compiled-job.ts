@@ -5,7 +5,7 @@ import type {
   LoopDocument,
   ResponseDocument,
 } from '../contract/index.js';
-import { scanSeconds, secondsPer } from '../contract/index.js';
+import { commonGrid, scanSeconds, secondsPer } from '../contract/index.js';
 import {
   buildNetwork,
   type Feedforward,
@@ -42,7 +42,7 @@ export interface CompiledJob {
   readonly measurementCount: number;
   /** Source of each disturbance. */
   readonly disturbanceSources: readonly number[];
-  /** s, common to all closed loops. */
+  /** s, common to all closed loops, or the grid that the scans of all of them are on. */
   readonly scan: number;
   /** What was taken because the document does not state it, in words. */
   readonly assumed: readonly string[];
@@ -185,6 +185,8 @@ function drivenRange(
 function compileLoop(job: JobDocument, loop: LoopDocument, tags: Tags, timeUnit: number): Loop {
   const range = drivenRange(job, loop);
   const { drives } = loop;
+  const every =
+    loop.task === 'manual' ? 1 : Math.round(scanSeconds(loop.controller) / commonScan(job));
   return {
     measurement: tags.measurement.get(loop.measurement) as number,
     drives:
@@ -200,6 +202,7 @@ function compileLoop(job: JobDocument, loop: LoopDocument, tags: Tags, timeUnit:
     ...(loop.feedforward.length === 0
       ? {}
       : { feedforward: loop.feedforward.map((term) => compileFeedforward(term, tags, timeUnit)) }),
+    ...(every === 1 ? {} : { every }),
   };
 }
 
@@ -269,10 +272,12 @@ function compileForm(loop: LoopDocument, loopCase: LoopCase): SettingsForm {
   };
 }
 
-/** All closed loops of a document without faults share one scan. */
+const shortNumber = (value: number): number => Number(value.toPrecision(6));
+
+/** s: the scan of the closed loops, or the longest interval of which all their scans are multiples. */
 export function commonScan(job: JobDocument): number {
-  const closed = job.loops.find((l) => l.task !== 'manual') as LoopDocument;
-  return scanSeconds(closed.controller);
+  const closed = job.loops.filter((l) => l.task !== 'manual');
+  return commonGrid(closed.map((l) => scanSeconds(l.controller)));
 }
 
 function compileUncertainty(
@@ -345,6 +350,15 @@ function inOrderOf(
 
 function sayAssumptions(job: JobDocument, assumed: string[]): void {
   const { unit, search } = job;
+  const grid = commonScan(job);
+  const slower = job.loops.filter(
+    (l) => l.task !== 'manual' && scanSeconds(l.controller) > grid * (1 + 1e-9),
+  );
+  if (slower.length > 0) {
+    assumed.push(
+      `the closed loops scan at different intervals, on a grid of ${shortNumber(grid)} s: all of them scan at the moment an upset begins, so that a load or disturbance waits for the next scan of each as long as it can; stability, peak sensitivity and noise are exact, phase and delay margins of a loop that scans more often than the slowest are those at one frequency at a time`,
+    );
+  }
   if (search.models === 1) {
     assumed.push('search.models is 1: the models are taken as exact and verified as such');
   } else {

@@ -1,4 +1,9 @@
-import type { ControllerSettings, Feedforward, Loop } from '../controllers/index.js';
+import {
+  type ControllerSettings,
+  everyOf,
+  type Feedforward,
+  type Loop,
+} from '../controllers/index.js';
 import {
   isIntegrator,
   isUnstableFactor,
@@ -26,6 +31,10 @@ export const lagsOf = ({ factors, course }: ProcessModel): number =>
     .filter((f) => !isUnstableFactor(f))
     .reduce((sum, f) => sum + timeConstantOf(f), (course?.settling ?? 0) / lagsToSettle);
 
+/** Common scans between scans of the slowest closed loop. */
+export const slowestEvery = ({ network }: CompiledJob): number =>
+  network.loops.reduce((most, l) => (l.automatic ? Math.max(most, everyOf(l)) : most), 1);
+
 /** Paths into the measurements of closed loops. */
 function seenPaths(compiled: CompiledJob): UnitPath[] {
   const seen = new Set(
@@ -50,7 +59,7 @@ export function longestDeadTime(compiled: CompiledJob): number {
 }
 
 /**
- * Simulated steps between scans: enough that no lag is shorter than four steps, at most ten.
+ * Simulated steps between common scans: enough that no lag is shorter than four steps, at most ten.
  *
  * Between samples a PV that follows a held input through a lag T bends by at most step^2 / (8 T^2) of
  * its move, under one percent at four steps a lag, so no overshoot hides there.
@@ -75,7 +84,7 @@ export function leastHorizon(
   compiled: CompiledJob,
   settings: readonly ControllerSettings[],
 ): number {
-  let horizon = 20 * compiled.scan;
+  let horizon = 20 * slowestEvery(compiled) * compiled.scan;
   for (const { model } of seenPaths(compiled)) {
     horizon = Math.max(horizon, model.deadTime + 5 * lagsOf(model));
   }

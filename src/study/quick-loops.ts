@@ -1,4 +1,4 @@
-import type { Loop } from '../controllers/index.js';
+import { everyOf, type Loop, type LoopNetwork } from '../controllers/index.js';
 import { type UnitPath, unstablePoles } from '../responses/index.js';
 import type { CompiledJob } from './compiled-job.js';
 import { lagsOf } from './horizon.js';
@@ -11,12 +11,14 @@ const ownPaths = (paths: readonly UnitPath[], loop: Loop, source: number): UnitP
 
 /**
  * True where a loop has to run at its own scan when the rest of the unit takes long steps: an inner
- * loop, or one whose own response is over within a few of them.
+ * loop, or one whose own response is over within a few of them. A loop that scans no more often than
+ * that is never one.
  */
 export function isQuick(compiled: CompiledJob, index: number, longStep: number): boolean {
   const { network, paths } = compiled;
   const loop = network.loops[index] as Loop;
   if (!loop.automatic || !('source' in loop.drives)) return false;
+  if (everyOf(loop) * compiled.scan >= longStep * (1 - 1e-9)) return false;
   const own = ownPaths(paths, loop, loop.drives.source);
   if (own.some((p) => unstablePoles(p.model) > 0)) return false;
   const time = own.reduce((most, p) => Math.max(most, p.model.deadTime + lagsOf(p.model)), 0);
@@ -46,23 +48,30 @@ function separated(factors: readonly Float64Array[]): boolean {
 export interface SplitPaths {
   /** Quick loops' own responses. */
   readonly own: UnitPath[];
-  /** Everything else; what loops move comes earlier by up to `shift`. */
+  /** Everything else; what loops move comes earlier by up to half of what a long step adds to their hold. */
   readonly rest: UnitPath[];
 }
 
 /**
- * @param shift  s that a longer hold adds to every loop on average, taken off the dead times where
- *   there is as much
+ * What a longer hold adds to each loop on average is taken off the dead times behind it, where there
+ * is as much. Behind a quick inner loop that is the hold of its outer loop.
+ * @param scan  s between the unit's common scans
+ * @param longStep  s
  */
 export function splitPaths(
   paths: readonly UnitPath[],
-  loops: readonly Loop[],
+  { loops, outerOf }: LoopNetwork,
   quick: readonly boolean[],
-  shift: number,
+  scan: number,
+  longStep: number,
 ): SplitPaths {
-  const moved = new Set(
-    loops.flatMap((l) => (l.automatic && 'source' in l.drives ? [l.drives.source] : [])),
-  );
+  const added = new Map<number, number>();
+  loops.forEach((l, i) => {
+    if (!l.automatic || !('source' in l.drives)) return;
+    const outer = loops[outerOf[i] as number];
+    const holding = quick[i] && outer?.automatic ? outer : l;
+    added.set(l.drives.source, Math.max(0, (longStep - everyOf(holding) * scan) / 2));
+  });
   const isOwn = (p: UnitPath): boolean =>
     loops.some(
       (l, i) =>
@@ -71,13 +80,11 @@ export function splitPaths(
         l.drives.source === p.source &&
         l.measurement === p.measurement,
     );
-  const shorten = (deadTime: number): number => Math.max(0, deadTime - shift);
   const rest = paths
     .filter((p) => !isOwn(p))
-    .map((p) =>
-      moved.has(p.source)
-        ? { ...p, model: { ...p.model, deadTime: shorten(p.model.deadTime) } }
-        : p,
-    );
+    .map((p) => {
+      const deadTime = Math.max(0, p.model.deadTime - (added.get(p.source) ?? 0));
+      return { ...p, model: { ...p.model, deadTime } };
+    });
   return { own: paths.filter(isOwn), rest };
 }

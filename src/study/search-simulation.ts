@@ -1,4 +1,4 @@
-import { type ControllerSettings, discretizeForLongStep } from '../controllers/index.js';
+import { type ControllerSettings, discretizeForLongStep, everyOf } from '../controllers/index.js';
 import {
   pathsOf,
   type Response,
@@ -66,18 +66,19 @@ export class SearchSimulation {
       : null;
     if (stride === 1) {
       const { scan } = tuning;
-      this.scans = tuning.loops.map(() => scan);
+      this.scans = tuning.network.loops.map((loop) => scan * everyOf(loop));
       const units = paths.map((p) => sample(p, scan / stepsPerScan));
       this.kernel = kernelAtScan({ ...shared, units, stepsPerScan, steps });
       return;
     }
     const long = tuning.scan * stride;
     const quick = tuning.network.loops.map((_, i) => isQuick(compiled, i, long));
-    this.scans = quick.map((q) => (q ? tuning.scan : long));
+    this.scans = tuning.network.loops.map((loop, i) => {
+      const own = tuning.scan * everyOf(loop);
+      return quick[i] ? own : Math.max(own, long);
+    });
     const thinned = paths.map((p) => p.map((path) => ({ ...path, model: thinModel(path.model) })));
-    const split = thinned.map((p) =>
-      splitPaths(p, tuning.network.loops, quick, (long - tuning.scan) / 2),
-    );
+    const split = thinned.map((p) => splitPaths(p, tuning.network, quick, tuning.scan, long));
     this.kernel = new TwoRateKernel({
       ...shared,
       quick,
@@ -106,7 +107,7 @@ export class SearchSimulation {
     settings: readonly ControllerSettings[],
     models: readonly number[],
   ): UpsetFigures[][][] {
-    const scans = this.tuning.loops.map(() => this.tuning.scan);
+    const scans = this.tuning.network.loops.map((loop) => this.tuning.scan * everyOf(loop));
     return this.run(this.actedKernel ?? this.kernel, scans, settings, models);
   }
 

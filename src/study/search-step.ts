@@ -1,4 +1,4 @@
-import type { ControllerSettings, Loop } from '../controllers/index.js';
+import { type ControllerSettings, everyOf, type Loop } from '../controllers/index.js';
 import { isDirect, type Response } from '../responses/index.js';
 import {
   referenceSpeed,
@@ -53,7 +53,8 @@ export function chooseSearchStep(
   let best: SearchStep = { stride: 1, speed, error: 0 };
   if (tuning.stepsPerScan > 1 || needsEveryScan(compiled, tuning)) return best;
   for (const stride of strides) {
-    if (tuning.steps / stride < fewestSteps || !canStride(compiled, tuning, stride)) break;
+    if (tuning.steps / stride < fewestSteps) break;
+    if (!canStride(compiled, tuning, stride)) continue;
     const figures = figuresAt(stride);
     const reference = referenceSpeed(tuning, figures[0] as UpsetFigures[][]);
     let worst = 0;
@@ -81,7 +82,10 @@ function needsEveryScan(compiled: CompiledJob, tuning: TuningCase): boolean {
   return byScan || compiled.paths.some(({ model }) => isDirect(model));
 }
 
-/** Every quick loop can be simulated apart, every inner loop is quick, and feedforward is for slow ones. */
+/**
+ * Every quick loop can be simulated apart, every inner loop is quick or no faster than the long step,
+ * all scans that stay fit into long steps or long steps into them, and feedforward is for slow loops.
+ */
 function canStride(compiled: CompiledJob, tuning: TuningCase, stride: number): boolean {
   const { order } = compiled.network;
   const isSlow = (i: number): boolean => !isQuick(compiled, i, tuning.scan * stride);
@@ -94,7 +98,12 @@ function canStride(compiled: CompiledJob, tuning: TuningCase, stride: number): b
         (!('loop' in from) || (isSlow(from.loop) && order.indexOf(from.loop) < order.indexOf(i))),
     );
     if (!hears) return false;
-    if (isQuick(compiled, i, tuning.scan * stride)) return standsApart(compiled, i);
+    const every = everyOf(loop);
+    if (isQuick(compiled, i, tuning.scan * stride)) {
+      return stride % every === 0 && standsApart(compiled, i);
+    }
+    if (every > stride && every % stride !== 0) return false;
+    if (every >= stride) return true;
     const outer = compiled.network.outerOf[i] as number;
     return outer < 0 || !('source' in loop.drives);
   });

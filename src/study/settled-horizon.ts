@@ -3,13 +3,16 @@ import type { SampledUnit } from '../responses/index.js';
 import { simulateUpsets, type TuningCase } from '../scoring/index.js';
 import type { Trajectory } from '../simulation/index.js';
 import type { CompiledJob } from './compiled-job.js';
-import { leastHorizon, mostSteps, roundHorizon } from './horizon.js';
+import { leastHorizon, mostSteps, roundHorizon, slowestEvery } from './horizon.js';
 
 /** Steps of a horizon in s; never fewer than a few scans, never more than can be simulated. */
 export const stepsFor = (compiled: CompiledJob, stepsPerScan: number, horizon: number): number =>
   Math.min(
     mostSteps,
-    Math.max(10 * stepsPerScan, Math.round((horizon * stepsPerScan) / compiled.scan)),
+    Math.max(
+      10 * slowestEvery(compiled) * stepsPerScan,
+      Math.round((horizon * stepsPerScan) / compiled.scan),
+    ),
   );
 
 /** How often a horizon may be doubled. */

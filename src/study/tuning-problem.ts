@@ -1,5 +1,5 @@
 import type { ControllerSettings } from '../controllers/index.js';
-import { analyseLoops, type FrequencyFigures, type SampledLoops } from '../frequency/index.js';
+import { analyseLoops, type FrequencyFigures } from '../frequency/index.js';
 import {
   controllersOf,
   type Limit,
@@ -7,6 +7,7 @@ import {
   limitExcess,
   limitedValue,
   needsSimulation,
+  type SampledModel,
   type SpeedReference,
   speedOf,
   summarizeLoop,
@@ -36,7 +37,7 @@ export interface SearchSetup {
   readonly space: DecisionSpace;
   readonly tuning: TuningCase;
   /** Every model's loops on the searching grid, nominal first. */
-  readonly loops: readonly SampledLoops[];
+  readonly loops: readonly SampledModel['loops'][];
   /** Of the same models. */
   readonly simulation: SearchSimulation;
   /** Scans a step of it. */
@@ -164,7 +165,7 @@ export class TuningProblem implements Problem {
 
   private analyse(settings: readonly ControllerSettings[]): FrequencyFigures[] {
     const { tuning, loops: models } = this.setup;
-    const controllers = controllersOf(tuning, settings, tuning.scan);
+    const controllers = controllersOf(tuning, settings);
     return models.map((loops) =>
       analyseLoops({
         loops,

@@ -1,4 +1,3 @@
-import type { SampledLoops } from '../frequency/index.js';
 import type { Response } from '../responses/index.js';
 import { gridDensity, type SampledModel, type TuningCase } from '../scoring/index.js';
 import type { CompiledJob } from './compiled-job.js';
@@ -20,7 +19,7 @@ export class Workbench {
   readonly variants: readonly (readonly Response[])[];
   private judging: readonly SampledModel[] | undefined;
   private readonly fresh = new Map<number, readonly SampledModel[]>();
-  private searching: readonly SampledLoops[] | undefined;
+  private searching: readonly SampledModel['loops'][] | undefined;
 
   constructor(
     readonly compiled: CompiledJob,
@@ -80,7 +79,7 @@ export class Workbench {
   /** @param extra  models that broke a limit in verification and join the search */
   searchSetup(extra: readonly (readonly Response[])[] = []): SearchSetup {
     const { compiled, tuning, preparation } = this;
-    const sample = (v: readonly Response[]): SampledLoops =>
+    const sample = (v: readonly Response[]): SampledModel['loops'] =>
       sampleVariant(compiled, tuning, v, gridDensity.searching).loops;
     this.searching ??= this.variants.map(sample);
     const { searchStride, searchSpeed, searchElements } = preparation;

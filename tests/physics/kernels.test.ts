@@ -27,8 +27,8 @@ import {
   TwoRateKernel,
   type Upset,
 } from '../../src/simulation/index.js';
-import { at, few } from './cases.js';
-import { drawUnit, freeLoop } from './drawn-units.js';
+import { at, chance, few, pick } from './cases.js';
+import { type DrawnUnit, drawUnit, freeLoop } from './drawn-units.js';
 import {
   algorithm,
   controllerOf,
@@ -42,6 +42,14 @@ import {
   setpointStep,
   simulate,
 } from './run-bench.js';
+
+/** The same unit, each loop scanning at every first to fourth of the common scans. */
+const unequally = (drawn: DrawnUnit, random: Random): DrawnUnit => ({
+  ...drawn,
+  network: buildNetwork(
+    drawn.network.loops.map((loop) => ({ ...loop, every: pick(random, [1, 2, 3, 4]) })),
+  ),
+});
 
 describe('the kernel of the search', () => {
   it.each([
@@ -100,7 +108,10 @@ describe('the kernel of the search', () => {
         fc.constantFrom(1, 2, 3),
         fc.boolean(),
         (seed, stepsPerScan, elements) => {
-          const drawn = drawUnit(new Random(seed), equipped);
+          const random = new Random(seed);
+          const together = drawUnit(random, equipped);
+          // Half of the units scan loop by loop as they like.
+          const drawn = chance(random, 0.5) ? together : unequally(together, random);
           const { paths, sourceCount, network, controllers, upsets } = drawn;
           const steps = 150 * stepsPerScan;
           const unit = sampleUnit(paths, sourceCount, network.loops.length, 1 / stepsPerScan);
@@ -268,5 +279,51 @@ describe('the kernel of two rates', () => {
       // Sixteen times by the order; a first-order error would leave four.
       expect(short).toBeLessThan(long / 7 + 2e-4);
     }
+  });
+
+  it('is the plain simulation where loops scan no more often than a long step, at their own scans', () => {
+    const { paths, loops, settings } = twoScales();
+    const scans = [2, 8, 16];
+    const network = buildNetwork(loops.map((loop, i) => ({ ...loop, every: at(scans, i) })));
+    const controllers = settings.map((own, i) =>
+      discretizeController(own, { ...algorithm, scan: at(scans, i) }),
+    );
+    // What a quick loop shows to the others is its mean; a unit without such paths has no error.
+    const isOwn = (p: UnitPath): boolean => p.source === 0 && p.measurement === 0;
+    const apart = paths.filter((p) => p.source === 1 || isOwn(p));
+    const upset = setpointStep(2, -2);
+    const unit = sampleUnit(apart, 2, 3, 1);
+    const run = simulatePlainly({
+      unit,
+      network,
+      controllers,
+      stepsPerScan: 1,
+      upset,
+      steps: 4096,
+    });
+    const kernel = new TwoRateKernel({
+      network,
+      quick: [true, false, false],
+      units: [
+        sampleUnit(
+          apart.filter((p) => !isOwn(p)),
+          2,
+          3,
+          8,
+        ),
+      ],
+      ownUnits: [sampleUnit(apart.filter(isOwn), 2, 3, 1)],
+      stride: 8,
+      steps: 512,
+      upsets: [upset],
+      bands: [[0, 1, 2].map((i) => bandOf(upset, i))],
+    });
+    const figures = kernel.simulate([controllers], [0], [0]);
+    [0, 1, 2].forEach((i) => {
+      const read = readUpsetFigures(run, i, i === 2 ? -2 : 0, 0.05, 1);
+      expect(at(figures, i * figureCount + 5)).toBeCloseTo(read.travel, 9);
+      expect(at(figures, i * figureCount + 6)).toBeCloseTo(read.peakMove, 9);
+    });
+    expect(readUpsetFigures(run, 2, -2, 0.05, 1).travel).toBeGreaterThan(1);
   });
 });

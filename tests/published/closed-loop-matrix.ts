@@ -3,6 +3,7 @@ import {
   type DiscreteController,
   type DiscreteFeedforward,
   discretizeFeedforward,
+  everyOf,
   type LoopNetwork,
 } from '../../src/controllers/index.js';
 
@@ -76,7 +77,7 @@ const toldOf = (network: LoopNetwork): Told[] =>
   network.loops.flatMap((loop, to) =>
     (loop.feedforward ?? []).flatMap((term) =>
       'loop' in term.from
-        ? [{ to, from: term.from.loop, sampled: discretizeFeedforward(term, 1) }]
+        ? [{ to, from: term.from.loop, sampled: discretizeFeedforward(term, everyOf(loop)) }]
         : [],
     ),
   );
@@ -85,6 +86,8 @@ const toldOf = (network: LoopNetwork): Told[] =>
  * The matrix that carries the closed loop from scan to scan, written down from the controllers' and
  * the process's difference equations: process states, past outputs, and of each controller its filter
  * lags, derivative, its input and the integral where there is one; last the lags of feedforward terms.
+ * Loops that scan at different intervals are carried over their common period: the product of the
+ * matrices of its steps.
  */
 export function closedLoopMatrix(
   paths: readonly LagPath[],
@@ -93,14 +96,17 @@ export function closedLoopMatrix(
 ): Matrix {
   const sampled = sample(paths);
   const told = toldOf(network);
-  const longest = Math.max(0, ...told.map((t) => Math.max(t.sampled.delay, t.sampled.directDelay)));
-  const process = { ...sampled, history: Math.max(sampled.history, 2 + longest) };
+  const longest = told.map(({ to, sampled: f }) => {
+    const every = everyOf(network.loops[to] as LoopNetwork['loops'][number]);
+    return every * (2 + Math.max(f.delay, f.directDelay));
+  });
+  const process = { ...sampled, history: Math.max(sampled.history, ...longest) };
   const width = network.loops.length;
   const states = process.decays.length;
   const past = states + width * process.history;
   const lags = past + 5 * width;
   const order = lags + told.length;
-  const step = (from: Float64Array): Float64Array => {
+  const step = (from: Float64Array, k: number): Float64Array<ArrayBuffer> => {
     const to = new Float64Array(order);
     const at = (i: number): number => from[i] as number;
     const pv = new Float64Array(width);
@@ -114,6 +120,14 @@ export function closedLoopMatrix(
       const outer = network.outerOf[i] as number;
       const setpoint = outer >= 0 ? (out[outer] as number) : 0;
       const base = past + 5 * i;
+      if (k % everyOf(loop) !== 0) {
+        to.set(from.subarray(base, base + 5), base);
+        told.forEach(({ to: hearing }, t) => {
+          if (hearing === i) to[lags + t] = at(lags + t);
+        });
+        out[i] = at(states + i * process.history);
+        continue;
+      }
       const blend = (before: number, value: number): number =>
         c.filterDecay * before + (1 - c.filterDecay) * value;
       const first = blend(at(base), pv[loop.measurement] as number);
@@ -126,8 +140,12 @@ export function closedLoopMatrix(
       out[i] = c.kp * (c.setpointWeight * setpoint - filtered) + integral + derivative;
       told.forEach(({ to: hearing, from: telling, sampled: f }, t) => {
         if (hearing !== i) return;
-        const before = (ago: number): number =>
-          ago === 0 ? (out[telling] as number) : at(states + telling * process.history + ago - 1);
+        const before = (scans: number): number => {
+          const ago = scans * everyOf(loop);
+          return ago === 0
+            ? (out[telling] as number)
+            : at(states + telling * process.history + ago - 1);
+        };
         const lag =
           f.decay * at(lags + t) + f.now * before(1 + f.delay) + f.before * before(2 + f.delay);
         to[lags + t] = lag;
@@ -156,14 +174,19 @@ export function closedLoopMatrix(
     }
     return to;
   };
+  const period = network.loops.map(everyOf).reduce(leastCommonMultiple, 1);
   const matrix = new Matrix(order, order);
   for (let j = 0; j < order; j += 1) {
-    const unit = new Float64Array(order);
-    unit[j] = 1;
-    matrix.setColumn(j, Array.from(step(unit)));
+    let state = new Float64Array(order);
+    state[j] = 1;
+    for (let k = 0; k < period; k += 1) state = step(state, k);
+    matrix.setColumn(j, Array.from(state));
   }
   return matrix;
 }
+
+const gcd = (a: number, b: number): number => (b === 0 ? a : gcd(b, a % b));
+const leastCommonMultiple = (a: number, b: number): number => (a / gcd(a, b)) * b;
 
 /** Moduli of all eigenvalues, largest first. */
 export function eigenvalueSizes(matrix: Matrix): number[] {

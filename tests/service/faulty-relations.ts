@@ -361,7 +361,18 @@ export const faultyRelations = {
       job.search.upsetWeights = { setpoint: 0, load: 0, disturbance: 0 };
     }),
   ],
-  SCANS_UNRELATED: [set('1.37 s beside 1 s', 'loops[3].controller.scan', 1.37, /1\.37 s.*1 s/)],
+  SCANS_UNRELATED: [
+    set('1.37 s beside 1 s', 'loops[3].controller.scan', 1.37, /1\.37 s.*1 s/),
+    set('997 s beside 1 s', 'loops[3].controller.scan', 997, /every 997 steps.*at most 720/),
+    change(
+      'scans that do not divide one another, many of them in a period',
+      'loops[1].controller.scan',
+      (job) => {
+        for (const [i, scan] of [1.9, 3.7, 1.9, 3.7].entries()) job.loops[i].controller.scan = scan;
+      },
+      /every 703 steps.*112 times.*at most 720 steps and 96/,
+    ),
+  ],
   TOO_MANY_SCANS: [
     change(
       'a feedforward',
@@ -376,12 +387,6 @@ export const faultyRelations = {
   ],
   HORIZON_SHORT: [set('nine scans', 'unit.horizon', 0.15, /at least 0\.166/)],
   NOT_YET_AVAILABLE: [
-    change(
-      'a slower scan',
-      'loops[3].controller.scan',
-      (job) => (job.loops[3].controller.scan = 2),
-      later,
-    ),
     change(
       'effort',
       'search.objectives',

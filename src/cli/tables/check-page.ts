@@ -92,7 +92,12 @@ function runFacts({ run, unit, reference, present, estimate }: CheckReport, pape
       ],
       ['limits', `${run.limits}`],
       ['models', models],
-      ['scan', time(run.scan)],
+      [
+        'scan',
+        run.slowestScan === undefined
+          ? time(run.scan)
+          : `on a grid of ${time(run.scan)}, the slowest every ${time(run.slowestScan)}`,
+      ],
       ['horizon', `${time(run.horizon)} an upset`],
       ['step', steps],
       ['speed', speed],

@@ -32,6 +32,8 @@ export const checkReportSchema = keyed({
   run: keyed({
     /** Time unit of the job, like every time here. */
     scan: time,
+    /** Where closed loops scan at different intervals: the slowest; `scan` is then their common grid. */
+    slowestScan: time.exactOptional(),
     step: time,
     searchStep: time,
     /** Largest error of speed at that step, seen on settings from slack to brisk; a share. */
