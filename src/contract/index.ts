@@ -1,6 +1,6 @@
 export { documentSizeFault, mostDocumentBytes, readDocumentText } from './document-text.js';
 export { type EvaluationDocument, evaluationFormat, evaluationSchema } from './evaluation.js';
-export { excerpt } from './excerpt.js';
+export { excerpt, pathText } from './excerpt.js';
 export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } from './faults.js';
 export {
   type Alternative,
@@ -115,6 +115,23 @@ export {
   sheetFormat,
   sheetSchema,
 } from './service/sheet.js';
+export {
+  type CellFault,
+  type CellWarning,
+  cellFaultSchema,
+  cellWarningSchema,
+  describeCellFault,
+  describeCellWarning,
+  type Grid,
+  type GridCell,
+  type GridSheet,
+  gridSchema,
+  mostOfSpreadsheet,
+  type SpreadsheetFaultCode,
+  type SpreadsheetReading,
+  spreadsheetFaultCodes,
+  spreadsheetReadingSchema,
+} from './service/spreadsheet.js';
 export {
   controllerInWords,
   loopUnits,
