@@ -11,7 +11,7 @@ import {
 import { serializerCompiler, type ZodTypeProvider } from 'fastify-type-provider-zod';
 import { excerpt, mostDocumentBytes } from '../contract/index.js';
 import { type Service, ServiceProblem } from '../service/index.js';
-import { mostMessageBytes, readBodies, refusePacked } from './bodies.js';
+import { mostMessageBytes, readBodies, refuseFile, refusePacked } from './bodies.js';
 import { announcesTooMuch, BrokenConnections, leaveBodyUnread } from './broken-connections.js';
 import { changeRoutes } from './change-routes.js';
 import { checkRoutes } from './check-routes.js';
@@ -30,6 +30,7 @@ import { RouteTable } from './route-table.js';
 import { securityHeaders } from './security-headers.js';
 import { sheetRoute } from './sheet-route.js';
 import type { Skin } from './skin.js';
+import { spreadsheetRoutes } from './spreadsheet-routes.js';
 
 /** How long the server waits for others, in ms. */
 export interface ApiTimes {
@@ -94,6 +95,7 @@ export async function buildApi(options: ApiOptions): Promise<FastifyInstance> {
 
 const routes = [
   checkRoutes,
+  spreadsheetRoutes,
   jobRoutes,
   eventRoute,
   resultRoutes,
@@ -162,6 +164,7 @@ function guardRequests(
     refuseCrossSite(request, allowedHosts);
     table.refuseUnknown(request, reply);
     refusePacked(request);
+    refuseFile(request);
   });
   app.setNotFoundHandler((request) => {
     throw new ServiceProblem('NOT_FOUND', `there is nothing at ${excerpt(request.url)}`);

@@ -7,6 +7,7 @@ import {
   checkReportSchema,
   evaluationSchema,
   frontSchema,
+  gridSchema,
   jobListSchema,
   jobRecordSchema,
   jobSchema,
@@ -18,6 +19,7 @@ import {
   scoredSettingsSchema,
   settingsSchema,
   sheetSchema,
+  spreadsheetReadingSchema,
 } from '../contract/index.js';
 
 interface About {
@@ -38,6 +40,7 @@ const named = {
   CheckReport: checkReportSchema,
   Evaluation: evaluationSchema,
   Front: frontSchema,
+  Grid: gridSchema,
   Job: jobRecordSchema,
   JobDocument: jobSchema,
   JobList: jobListSchema,
@@ -49,6 +52,7 @@ const named = {
   ScoredSettings: scoredSettingsSchema,
   Settings: settingsSchema,
   Sheet: sheetSchema,
+  SpreadsheetReading: spreadsheetReadingSchema,
 } as const satisfies Record<string, z.ZodType>;
 
 for (const [id, schema] of Object.entries(named)) components.add(schema, { id });
@@ -58,10 +62,18 @@ for (const [id, schema] of Object.entries(named)) components.add(schema, { id })
  * kept as it came, and what is handed out is the same for everybody. Without a body there are none.
  */
 function bytesOf(reference: string) {
+  return bytesAs(referTo(reference));
+}
+
+function referTo(reference: string): About {
+  return { $ref: `#/components/schemas/${reference}` };
+}
+
+function bytesAs(about: About) {
   const schema = z
     .custom<Buffer | undefined>((value) => value === undefined || Buffer.isBuffer(value))
     .transform((value): Uint8Array => value ?? new Uint8Array());
-  components.add(schema, { $ref: `#/components/schemas/${reference}` });
+  components.add(schema, about);
   return schema;
 }
 
@@ -80,3 +92,10 @@ export const originalBytes = bytesOf('JobDocumentInput');
 export const frontBytes = bytesOf('Front');
 export const alternativeBytes = bytesOf('Alternative');
 export const evaluationBytes = bytesOf('Evaluation');
+export const spreadsheetReadingBytes = bytesOf('SpreadsheetReading');
+
+const file = { type: 'string', format: 'binary' };
+/** A file, of which nothing is described but that it is bytes. */
+export const fileBytes = bytesAs(file);
+/** The same, or the cells of a spreadsheet as JSON. */
+export const fileOrGridBytes = bytesAs({ anyOf: [file, referTo('GridInput')] });

@@ -7,6 +7,7 @@ import {
   problemType,
 } from '../contract/index.js';
 import { ServiceProblem } from '../service/index.js';
+import { typeDetail } from './bodies.js';
 
 export const problemMediaType = 'application/problem+json';
 
@@ -98,8 +99,4 @@ function sizeDetail(request: FastifyRequest): string {
   const stated = Number(request.headers['content-length']);
   const found = Number.isFinite(stated) ? `${stated}` : `more than ${most}`;
   return `the body is too large; found ${found} bytes; allowed: at most ${most} bytes`;
-}
-
-function typeDetail(request: FastifyRequest): string {
-  return `found Content-Type ${excerpt(request.headers['content-type'])}; allowed: application/json`;
 }

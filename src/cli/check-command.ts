@@ -16,7 +16,7 @@ interface Options {
 export function checkCommand(finish: (code: ExitCode) => void): Command {
   return new Command('check')
     .description('read a job document: its faults, the unit in numbers, what will be run')
-    .argument('<file>', 'job document, - for standard input')
+    .argument('<file>', 'job document or spreadsheet, - for standard input')
     .addOption(threadsOption())
     .addOption(jsonOption())
     .action(async (file: string, options: Options) => {

@@ -16,6 +16,7 @@ import { watchCommand } from './remote/watch-command.js';
 import { serveCommand } from './serving/serve-command.js';
 import { workerCommand } from './serving/worker-command.js';
 import { solveCommand } from './solve-command.js';
+import { templateCommand } from './template-command.js';
 
 /**
  * Runs one command to its end.
@@ -65,7 +66,7 @@ const termOf = (command: Command): string =>
   [command.name(), ...command.registeredArguments.map((taken) => `<${taken.name()}>`)].join(' ');
 
 const commandGroups = {
-  'Here, in this process:': [checkCommand, evaluateCommand, solveCommand],
+  'Here, in this process:': [templateCommand, checkCommand, evaluateCommand, solveCommand],
   'As a service:': [serveCommand, workerCommand],
   'Jobs at a server:': [submitCommand, watchCommand, jobsCommand, frontCommand, cancelCommand],
   'Changes at a server:': [proposeCommand, approveCommand, rejectCommand, sheetCommand],

@@ -23,7 +23,7 @@ interface Options {
 export function evaluateCommand(finish: (code: ExitCode) => void): Command {
   return new Command('evaluate')
     .description("score today's settings, or any other set, with the responses they give")
-    .argument('<file>', 'job document, - for standard input')
+    .argument('<file>', 'job document or spreadsheet, - for standard input')
     .addOption(option('--settings <file>', 'document with the settings to score instead'))
     .addOption(jsonOption())
     .action(async (file: string, options: Options) => {

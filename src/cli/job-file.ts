@@ -5,6 +5,7 @@ import { type JobDocument, readJob, type Warning } from '../contract/index.js';
 import { compileJob, prepareJob, type StudyContext, Workbench } from '../study/index.js';
 import { type DocumentBytes, readDocument } from './read-document.js';
 import { exitCode, Refusal, refuseDocument } from './refusal.js';
+import { documentIn, warningsAt } from './spreadsheet-file.js';
 
 /** A job document that was read and accepted. */
 export interface JobFile {
@@ -15,15 +16,16 @@ export interface JobFile {
 }
 
 /**
- * Reads a job document.
+ * Reads a job document, or the spreadsheet that makes one.
  * @param file  a path, or `-` for standard input
  * @throws {Refusal} where it cannot be read or has faults
  */
 export async function readJobFile(file: string): Promise<JobFile> {
-  const document = await readDocument(file);
+  const document = await documentIn(await readDocument(file));
   const read = readJob(document.bytes);
   if (!read.ok) throw refuseDocument(document.name, read);
-  const { job, warnings } = read;
+  const { job } = read;
+  const warnings = warningsAt(read.warnings, document.warnings);
   const provenance = { job: hashOfBytes(document), compute: computeVersion() };
   return { name: document.name, job, warnings, provenance };
 }

@@ -1,6 +1,12 @@
 import type { ErrorCode } from '../base/index.js';
 import type { ThreadFailureCode } from '../compute/index.js';
-import { describeFault, type Fault, type ProblemCode, type Refused } from '../contract/index.js';
+import {
+  describeFault,
+  type Fault,
+  type ProblemCode,
+  type Refused,
+  type SpreadsheetFaultCode,
+} from '../contract/index.js';
 import { printable } from './printable.js';
 
 /** How a command ends. */
@@ -25,6 +31,7 @@ export type Complaint = Omit<Fault, 'code'> & {
     | ErrorCode
     | ThreadFailureCode
     | ProblemCode
+    | SpreadsheetFaultCode
     | 'SERVER_UNREACHABLE'
     | 'SERVER_UNKNOWN'
     | 'UNFORESEEN';

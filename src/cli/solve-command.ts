@@ -26,7 +26,7 @@ interface Options {
 export function solveCommand(finish: (code: ExitCode) => void): Command {
   return new Command('solve')
     .description('run a whole job here: find, verify and write the front')
-    .argument('<file>', 'job document, - for standard input')
+    .argument('<file>', 'job document or spreadsheet, - for standard input')
     .addOption(option('--out <front>', 'file for the front document').makeOptionMandatory())
     .addOption(option('--responses <dir>', 'folder for the responses of everything scored'))
     .addOption(threadsOption())

@@ -9,6 +9,7 @@ import {
   readSettings,
   type Warning,
 } from '../contract/index.js';
+import type { SpreadsheetFormat } from '../spreadsheet/index.js';
 import {
   assembleFront,
   canonicalText,
@@ -31,6 +32,7 @@ import {
 } from '../study/index.js';
 import { estimateSeconds } from './estimate.js';
 import { JobBench } from './job-bench.js';
+import { readCells, writeCells } from './spreadsheet-work.js';
 
 /** A job by its document's bytes, and what its results belong to. */
 export interface StoredJob {
@@ -82,6 +84,16 @@ export interface ThreadWork {
       readonly preparation: Uint8Array | null;
     };
     readonly answer: JudgedSettings | Refused;
+  };
+  /** What a spreadsheet says: the bytes of a file, or of a grid as JSON. */
+  readonly 'read spreadsheet': {
+    readonly given: { readonly source: Uint8Array; readonly isGrid: boolean };
+    readonly answer: Uint8Array | Refused;
+  };
+  /** A job document as a spreadsheet; an example to fill in where there is none. */
+  readonly 'write spreadsheet': {
+    readonly given: { readonly document: Uint8Array | null; readonly format: SpreadsheetFormat };
+    readonly answer: Uint8Array;
   };
 }
 
@@ -148,7 +160,9 @@ export class ThreadWorker {
   private latest: { readonly hash: string; readonly job: JobDocument } | undefined;
   private readonly desk = new JobBench();
 
-  do(request: ThreadRequest): ThreadWork[ThreadWorkKind]['answer'] {
+  do(
+    request: ThreadRequest,
+  ): ThreadWork[ThreadWorkKind]['answer'] | Promise<ThreadWork[ThreadWorkKind]['answer']> {
     switch (request.kind) {
       case 'task':
         return this.runner.run(request.context, request.task);
@@ -164,6 +178,10 @@ export class ThreadWorker {
         return this.evaluate(request);
       case 'judge':
         return this.judge(request);
+      case 'read spreadsheet':
+        return readCells(request);
+      case 'write spreadsheet':
+        return writeCells(request);
     }
   }
 

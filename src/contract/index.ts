@@ -121,7 +121,7 @@ export {
   cellFaultSchema,
   cellWarningSchema,
   describeCellFault,
-  describeCellWarning,
+  describeSpot,
   type Grid,
   type GridCell,
   type GridSheet,

@@ -9,7 +9,7 @@ import { ServiceProblem } from './problem.js';
 const mostWaiting = 16;
 
 /** Kinds of work that answer a question at once. */
-type Question = 'read' | 'check' | 'evaluate' | 'judge';
+type Question = 'read' | 'check' | 'evaluate' | 'judge' | 'read spreadsheet' | 'write spreadsheet';
 
 /** An accepted job: its document, and what was fixed when its work began, if it has. */
 export interface AcceptedDocument {
@@ -61,6 +61,20 @@ export class CalculationDesk {
     signal: AbortSignal,
   ) {
     return this.ask('judge', { ...this.stored(document), id, settings, preparation }, signal);
+  }
+
+  /** @param source  the bytes of a file, or of a grid as JSON */
+  readSpreadsheet(source: Uint8Array, isGrid: boolean, signal: AbortSignal): Promise<Uint8Array> {
+    return this.ask('read spreadsheet', { source, isGrid }, signal);
+  }
+
+  /** @param document  an accepted document; null for an example to fill in */
+  writeSpreadsheet(
+    document: Uint8Array | null,
+    format: 'xlsx' | 'csv',
+    signal: AbortSignal,
+  ): Promise<Uint8Array> {
+    return this.ask('write spreadsheet', { document, format }, signal);
   }
 
   private stored(document: Uint8Array) {

@@ -27,6 +27,11 @@ export function recordService(parts: ServiceParts): Service {
       reaching(() => own.evaluate(job, settings, models, signal)),
     keep: (job, keeping, signal) => reaching(() => own.keep(job, keeping, signal)),
     ownSettings: (job) => reaching(() => own.list(job)),
+    readSpreadsheet: (source, isGrid, signal) =>
+      calculations.readSpreadsheet(source, isGrid, signal),
+    template: (format, signal) => calculations.writeSpreadsheet(null, format, signal),
+    spreadsheet: (id, format, signal) =>
+      reaching(async () => calculations.writeSpreadsheet(await jobs.document(id), format, signal)),
     submit: (document, submission) => reaching(() => jobs.submit(document, submission)),
     jobs: (query) => reaching(() => jobs.jobs(query)),
     job: (id) => reaching(() => jobs.job(id)),

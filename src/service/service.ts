@@ -56,6 +56,17 @@ export interface Service {
   ownSettings(job: string): Promise<OwnSettingsList>;
 
   /**
+   * What a spreadsheet says, as JSON of a `SpreadsheetReading`; its faults are part of the answer.
+   * @param source  the bytes of a file, or of a grid as JSON
+   * @throws DOCUMENT_REFUSED for a grid that is none
+   */
+  readSpreadsheet(source: Uint8Array, isGrid: boolean, signal: AbortSignal): Promise<Uint8Array>;
+  /** An example to fill in, as a file. */
+  template(format: 'xlsx' | 'csv', signal: AbortSignal): Promise<Uint8Array>;
+  /** The document of a job as a spreadsheet file, which reads back as the same document. */
+  spreadsheet(id: string, format: 'xlsx' | 'csv', signal: AbortSignal): Promise<Uint8Array>;
+
+  /**
    * Accepts a job: recorded before it is answered, queued after.
    * @returns `isNew` false where the key had been seen
    */

@@ -13,6 +13,7 @@ import { type FileContent, fileFault } from './files/file-content.js';
 import { readWorkbook } from './files/workbook-reader.js';
 import { writeWorkbook } from './files/workbook-writer.js';
 import { readGrid } from './grid-reading.js';
+import { isForPeople } from './layout/sheets.js';
 import { SheetFindings } from './sheet-findings.js';
 import { templateGrid } from './template.js';
 
@@ -90,7 +91,12 @@ export function writeTemplate(
   job?: JobInput,
   format: SpreadsheetFormat = 'xlsx',
 ): Promise<Uint8Array> {
-  return written(templateGrid(job), format);
+  const grid = templateGrid(job);
+  if (format === 'xlsx') return written(grid, format);
+  // A text is read from its top, where the unit should stand.
+  const notes = grid.sheets.filter(({ name }) => isForPeople(name));
+  const others = grid.sheets.filter(({ name }) => !isForPeople(name));
+  return written({ sheets: [...others, ...notes] }, format);
 }
 
 async function written(grid: Grid, format: SpreadsheetFormat): Promise<Uint8Array> {

@@ -23,6 +23,7 @@ import {
   type Submission,
 } from '../../src/service/index.js';
 import type { StudyOutcome } from '../../src/study/index.js';
+import { spreadsheetAnswer, spreadsheetFile } from '../spreadsheet-answers.js';
 
 interface HeldJob {
   record: JobRecord;
@@ -76,6 +77,18 @@ export class FixtureService implements Service {
       alternatives: outcome.front.alternatives.length,
       cost: { evaluations: outcome.evaluations, cpuSeconds: 190, wallSeconds: 120 },
     });
+  }
+
+  async readSpreadsheet(source: Uint8Array, isGrid: boolean): Promise<Uint8Array> {
+    return spreadsheetAnswer(source, isGrid);
+  }
+
+  async template(format: 'xlsx' | 'csv'): Promise<Uint8Array> {
+    return spreadsheetFile(null, format);
+  }
+
+  async spreadsheet(id: string, format: 'xlsx' | 'csv'): Promise<Uint8Array> {
+    return spreadsheetFile(await this.document(id), format);
   }
 
   async submit(

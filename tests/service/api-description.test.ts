@@ -5,7 +5,7 @@ import { jobBytes, jsonType, openApi, submitted } from './api-server.js';
 
 /** The parts of OpenAPI 3.1 that the description uses, and nothing beside them. */
 const schema = z.record(z.string(), z.unknown());
-const media = z.record(z.string().regex(/^\w+\/[\w+-]+$/), z.strictObject({ schema }));
+const media = z.record(z.string().regex(/^\w+\/[\w.+-]+$/), z.strictObject({ schema }));
 const parameter = z.strictObject({
   name: z.string(),
   in: z.enum(['path', 'query', 'header']),
@@ -62,7 +62,9 @@ describe('the description of the interface', () => {
       'get /api/jobs/{job}/events',
       'get /api/jobs/{job}/front',
       'get /api/jobs/{job}/own',
+      'get /api/jobs/{job}/spreadsheet',
       'get /api/openapi.json',
+      'get /api/spreadsheet/template',
       'get /healthz',
       'get /readyz',
       'post /api/changes/{change}/approve',
@@ -74,6 +76,7 @@ describe('the description of the interface', () => {
       'post /api/jobs/{job}/changes',
       'post /api/jobs/{job}/evaluate',
       'post /api/jobs/{job}/own',
+      'post /api/spreadsheet',
     ]);
   });
 

@@ -27,6 +27,7 @@ import {
   ServiceProblem,
   type Submission,
 } from '../../src/service/index.js';
+import { spreadsheetAnswer, spreadsheetFile } from '../spreadsheet-answers.js';
 import {
   alternativeBytes,
   checkReport,
@@ -98,6 +99,18 @@ export class FakeService implements Service {
   async ownSettings(id: string): Promise<OwnSettingsList> {
     this.find(id);
     return { own: this.own.filter(({ job }) => job === id) };
+  }
+
+  async readSpreadsheet(source: Uint8Array, isGrid: boolean): Promise<Uint8Array> {
+    return spreadsheetAnswer(source, isGrid);
+  }
+
+  async template(format: 'xlsx' | 'csv'): Promise<Uint8Array> {
+    return spreadsheetFile(null, format);
+  }
+
+  async spreadsheet(id: string, format: 'xlsx' | 'csv'): Promise<Uint8Array> {
+    return spreadsheetFile(this.find(id).bytes, format);
   }
 
   async submit(

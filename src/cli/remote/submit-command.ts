@@ -6,6 +6,7 @@ import { paperOf, writeJson } from '../output.js';
 import { printable } from '../printable.js';
 import { readDocument } from '../read-document.js';
 import { type ExitCode, exitCode, refuseOption } from '../refusal.js';
+import { documentIn } from '../spreadsheet-file.js';
 import { remarks, section } from '../tables/prose.js';
 import { Client } from './client.js';
 import { handIn } from './handing-in.js';
@@ -25,7 +26,7 @@ interface Options {
 export function submitCommand(finish: (code: ExitCode) => void): Command {
   return new Command('submit')
     .description('hand in a job document; the server computes it')
-    .argument('<file>', 'job document, - for standard input')
+    .argument('<file>', 'job document or spreadsheet, - for standard input')
     .addOption(serverOption())
     .option('--key <text>', 'the same key and document make one job (default: a new key)')
     .option('--watch', 'then follow the job to its end')
@@ -41,7 +42,12 @@ async function submit(file: string, options: Options): Promise<ExitCode> {
   const { server, patience } = options;
   const key = keyOf(options);
   const client = new Client(server);
-  const { isNew, ...accepted } = await handIn(client, await readDocument(file), key, patience);
+  const { isNew, ...accepted } = await handIn(
+    client,
+    await documentIn(await readDocument(file)),
+    key,
+    patience,
+  );
   if (!json) printAccepted(accepted, isNew, server);
   else if (!options.watch) writeJson(accepted);
   if (!options.watch) return exitCode.done;

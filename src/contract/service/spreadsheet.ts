@@ -118,7 +118,8 @@ export type CellWarning = z.output<typeof cellWarningSchema>;
 export type SpreadsheetReading = z.output<typeof spreadsheetReadingSchema>;
 
 /** A cell in words: `loops!F4 (TC-110, gain)`. */
-function describeSpot({ sheet, cell, heading, subject }: CellWarning): string {
+export function describeSpot(spot: Omit<CellWarning, 'problem'>): string {
+  const { sheet, cell, heading, subject } = spot;
   if (sheet === null) return 'file';
   const about = [subject, heading].filter((part) => part !== null && part !== '');
   const place = cell === null ? sheet : `${sheet}!${cell}`;
@@ -129,9 +130,4 @@ function describeSpot({ sheet, cell, heading, subject }: CellWarning): string {
 export function describeCellFault(fault: CellFault): string {
   const { problem, value, allowed } = fault;
   return `${describeSpot(fault)}: ${problem}; found ${value}; allowed: ${allowed}`;
-}
-
-/** The warning on one line. */
-export function describeCellWarning(warning: CellWarning): string {
-  return `${describeSpot(warning)}: ${warning.problem} (${warning.value})`;
 }
