@@ -14,9 +14,11 @@ import {
 const worker = new ThreadWorker();
 
 /** The answer of one piece of work, or the code it failed with. */
-export function answer(request: ThreadRequest): ThreadAnswer<ThreadWork[ThreadWorkKind]['answer']> {
+export async function answer(
+  request: ThreadRequest,
+): Promise<ThreadAnswer<ThreadWork[ThreadWorkKind]['answer']>> {
   try {
-    return { ok: true, result: worker.do(request) };
+    return { ok: true, result: await worker.do(request) };
   } catch (error) {
     if (!(error instanceof CodedError)) throw error;
     return { ok: false, code: error.code, message: error.message };
