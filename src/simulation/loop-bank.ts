@@ -30,7 +30,9 @@ export const LAST_OUTSIDE = 24;
 export const TRAVEL = 25;
 export const PEAK_MOVE = 26;
 export const LIMITED = 27;
-export const SLOTS = 28;
+/** PV of the loop's last scan. */
+export const MEASURED = 28;
+export const SLOTS = 29;
 
 /** Coefficients and limits of one loop into its slots. */
 export function loadLoop(
@@ -110,6 +112,7 @@ export function scanLoop(
   if (ki !== 0) {
     const step = ki * (setpoint - filtered);
     if (step * stuck <= 0) integral += step;
+    else integral += resetStep(b, at, innerAt, setpoint, stuck);
   }
   const wanted = fixed + integral;
   const before = b[at + OUTPUT] as number;
@@ -133,9 +136,28 @@ export function scanLoop(
   b[at + SATURATION] = saturation !== 0 ? saturation : stuck;
   b[at + INTEGRAL] = integral;
   b[at + OUTPUT] = delivered;
+  b[at + MEASURED] = measured;
   const move = Math.abs(delivered - before);
   b[at + TRAVEL] = (b[at + TRAVEL] as number) + move;
   if (move > (b[at + PEAK_MOVE] as number)) b[at + PEAK_MOVE] = move;
+}
+
+/**
+ * What the integral gives back in a scan while the inner loop is stuck: it falls back, in the integral
+ * time, to where the output at no error is what the inner loop delivers.
+ */
+function resetStep(
+  b: Float64Array,
+  at: number,
+  innerAt: number,
+  setpoint: number,
+  stuck: number,
+): number {
+  const kp = b[at + KP] as number;
+  if (kp === 0) return 0;
+  const ahead = kp * ((b[at + SETPOINT_WEIGHT] as number) - 1) * setpoint;
+  const excess = (b[innerAt + MEASURED] as number) - ahead - (b[at + INTEGRAL] as number);
+  return excess * stuck < 0 ? Math.min(1, (b[at + KI] as number) / kp) * excess : 0;
 }
 
 /** Add one sample to a loop's sums; `last` is true at the horizon, whose error holds no interval. */

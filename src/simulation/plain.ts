@@ -53,6 +53,8 @@ interface ControllerState {
   saturation: number;
   /** The output met its own range or rate in the last scan. */
   limited: boolean;
+  /** PV of the last scan. */
+  measured: number;
 }
 
 const rest = (): ControllerState => ({
@@ -64,6 +66,7 @@ const rest = (): ControllerState => ({
   output: 0,
   saturation: 0,
   limited: false,
+  measured: 0,
 });
 
 /**
@@ -132,7 +135,7 @@ export function simulatePlainly(run: PlainRun): Trajectory {
           setpoint,
           measured,
           ownSteps * unit.step,
-          blocked,
+          { blocked, delivers: inner >= 0 ? (states[inner] as ControllerState).measured : 0 },
           known,
         );
         if (state.limited) limited[i] = true;
@@ -169,7 +172,7 @@ const actionOf = ({ ki, kp }: DiscreteController): number => Math.sign(ki === 0 
 
 /**
  * One scan of the position algorithm.
- * @param blocked  the direction in which the inner loop is stuck
+ * @param inner  of the loop it drives: the direction in which it is stuck, and its PV, in its last scan
  * @param known  what the feedforward terms add
  */
 function scan(
@@ -179,7 +182,7 @@ function scan(
   setpoint: number,
   measured: number,
   scanTime: number,
-  blocked: number,
+  { blocked, delivers }: { readonly blocked: number; readonly delivers: number },
   known: number,
 ): void {
   s.filtered1 = c.filterDecay * s.filtered1 + (1 - c.filterDecay) * measured;
@@ -191,6 +194,13 @@ function scan(
   s.derivativeInput = input;
   const step = c.ki * (setpoint - filtered);
   if (step * blocked <= 0) s.integral += step;
+  else if (c.kp !== 0) {
+    // External reset: more is of no use, and what is too much already falls back, in the integral
+    // time, to where the output at no error is what the inner loop delivers.
+    const due = delivers - known - c.kp * (c.setpointWeight - 1) * setpoint;
+    const excess = due - s.integral;
+    if (excess * blocked < 0) s.integral += Math.min(1, c.ki / c.kp) * excess;
+  }
 
   const wanted = proportional + s.integral + s.derivative + known;
   const reach = loop.rateLimit * scanTime;
@@ -204,6 +214,7 @@ function scan(
     s.integral = delivered - proportional - s.derivative - known;
   }
   s.output = delivered;
+  s.measured = measured;
 }
 
 /** The sampled process with its states; inputs are read from the history of held values. */

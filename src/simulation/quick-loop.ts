@@ -97,6 +97,7 @@ export function runQuickLoop(
   let peakMove = b[at + slot.PEAK_MOVE] as number;
   let sum = 0;
   let untilScan = 0;
+  let seen = b[at + slot.MEASURED] as number;
 
   for (let j = 0; j < scans; j += 1) {
     const k = from + j;
@@ -105,6 +106,7 @@ export function runQuickLoop(
     const due = untilScan === 0;
     untilScan = due ? every - 1 : untilScan - 1;
     if (automatic && due) {
+      seen = measured;
       filtered1 = filterDecay * filtered1 + filterGain * measured;
       let filtered = filtered1;
       if (second) {
@@ -166,6 +168,7 @@ export function runQuickLoop(
   b[at + slot.DERIVATIVE] = derivative;
   b[at + slot.INTEGRAL] = integral;
   b[at + slot.OUTPUT] = output;
+  b[at + slot.MEASURED] = seen;
   b[at + slot.SATURATION] = saturation;
   b[at + slot.SUM_ERROR] = (b[at + slot.SUM_ERROR] as number) + sumError;
   b[at + slot.SUM_TIMED_ERROR] = (b[at + slot.SUM_TIMED_ERROR] as number) + sumTimedError;
