@@ -119,6 +119,7 @@ function decisionRoute(
             ...ofBodies,
             'CHANGE_UNKNOWN',
             'CHANGE_DECIDED',
+            'SAME_PERSON',
             'STORAGE_FULL',
             'RECORDS_UNREACHABLE',
           ),

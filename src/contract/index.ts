@@ -14,6 +14,7 @@ export {
   frontFormat,
   frontSchema,
   type Infeasibility,
+  proposableIdSchema,
   scoredNameSchema,
   type Verification,
 } from './front.js';
@@ -135,9 +136,11 @@ export {
 export {
   controllerInWords,
   loopUnits,
+  moveInWords,
   type SettingName,
   settingNames,
   settingUnits,
+  settingWords,
 } from './setting-units.js';
 export {
   type InternalSettingsDocument,

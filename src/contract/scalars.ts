@@ -128,6 +128,15 @@ export function text(least: number, most: number) {
   });
 }
 
+/** A name or a reason: a text in which something can be read. */
+export function words(most: number) {
+  return text(1, most).superRefine((value, context) => {
+    if (value.trim() !== '') return;
+    const allowed = `1 to ${most} printable characters, not only blanks`;
+    refuse(context, { code: 'VALUE_TEXT', problem: 'nothing but blanks', allowed });
+  });
+}
+
 export const timeUnitSchema = z.enum(['s', 'min', 'h']);
 export type TimeUnit = z.output<typeof timeUnitSchema>;
 

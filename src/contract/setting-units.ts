@@ -31,13 +31,55 @@ export function settingUnits(job: JobDocument, loop: LoopDocument): SettingUnits
   const time = controller.timeUnit;
   const gain = controller.gainIn === 'engineering' ? `${output || '1'}/${pv || '1'}` : '%/%';
   const integral = { time, repeats: `rep/${time}`, gain: `${gain}/${time}` };
-  const derivative = { time, gain: `${gain} ${time}` };
+  const [output100 = '', pv100 = ''] = gain.split('/');
+  // Written so that nobody reads it as an integral gain's per time.
+  const derivative = { time, gain: `${output100}·${time}/${pv100}` };
   return {
     gain: controller.gainIn === 'proportional-band' ? '% band' : gain,
     integral: integral[controller.integralIn],
     derivative: derivative[controller.derivativeIn],
     filter: time,
   };
+}
+
+/** What each number of a controller is called, as it is dialled. */
+export function settingWords(
+  controller: ControllerDocument,
+): Readonly<Record<SettingName, string>> {
+  const { gainIn, integralIn, derivativeIn } = controller;
+  return {
+    gain: gainIn === 'proportional-band' ? 'proportional band' : 'gain',
+    integral: { time: 'integral time', repeats: 'integral rate', gain: 'integral gain' }[
+      integralIn
+    ],
+    derivative: { time: 'derivative time', gain: 'derivative gain' }[derivativeIn],
+    filter: 'PV filter time',
+  };
+}
+
+/**
+ * What a move of a number does to the action it stands for, in words: a longer integral time is less
+ * integral action, a wider proportional band less gain.
+ */
+export function moveInWords(
+  setting: SettingName,
+  controller: ControllerDocument,
+  old: number | null,
+  proposed: number,
+): string {
+  if (old === null) return 'not set today';
+  if (old === proposed) return 'unchanged';
+  if (setting === 'filter' || setting === 'derivative' || controller.integralIn !== 'time') {
+    if (old === 0) return 'switched on';
+    if (proposed === 0) return 'switched off';
+  }
+  const inverse =
+    (setting === 'gain' && controller.gainIn === 'proportional-band') ||
+    (setting === 'integral' && controller.integralIn === 'time');
+  const ratio = Math.abs(inverse ? old / proposed : proposed / old);
+  if (!Number.isFinite(ratio)) return 'switched';
+  const words = setting === 'filter' ? ['longer', 'shorter'] : ['stronger', 'weaker'];
+  return `${words[ratio > 1 ? 0 : 1]}, ${Number(ratio.toPrecision(2))} x`;
 }
 
 const gainWords = {
@@ -57,7 +99,14 @@ export function controllerInWords(controller: ControllerDocument): string {
   const { form, terms, gainIn, integralIn, derivativeIn, scan, scanUnit } = controller;
   const parts = [`${terms}, ${form} form`, gainWords[gainIn]];
   if (terms.includes('I')) parts.push(integralWords[integralIn]);
-  if (terms.includes('D')) parts.push(derivativeWords[derivativeIn]);
+  if (terms.includes('D')) {
+    const { derivativeOn, derivativeGain } = controller;
+    parts.push(
+      `${derivativeWords[derivativeIn]}, on the ${derivativeOn}, limited to N ${derivativeGain}`,
+    );
+  }
+  if (controller.filterOrder === 2) parts.push('second-order PV filter');
+  if (controller.setpointWeight !== 1) parts.push(`setpoint weight ${controller.setpointWeight}`);
   parts.push(`scan of ${scan} ${scanUnit}`);
   return parts.join(', ');
 }

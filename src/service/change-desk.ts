@@ -113,6 +113,7 @@ export class ChangeDesk {
     await this.ledger.inTurn(async (write) => {
       const row = await this.find(id);
       if (row.state !== 'proposed') throw decided(row);
+      if (state === 'approved' && isSamePerson(row.proposed_by, person)) throw samePerson(row);
       const at = new Date();
       await write({ kind: state, id, at: at.toISOString(), person, reason });
       const decision = { id, state, person, reason, at };
@@ -173,6 +174,15 @@ function unknownAlternative(
 
 const unstable = (id: string): ServiceProblem =>
   new ServiceProblem('NOT_PROPOSABLE', `${id} is unstable on some of the models it was judged on`);
+
+const isSamePerson = (a: string, b: string): boolean =>
+  a.trim().toLowerCase() === b.trim().toLowerCase();
+
+const samePerson = ({ id, proposed_by }: ChangeRow): ServiceProblem =>
+  new ServiceProblem(
+    'SAME_PERSON',
+    `change ${id} was proposed by ${proposed_by}; allowed: approval by another person`,
+  );
 
 const decided = ({ id, state, decided_by, decided_at }: ChangeRow): ServiceProblem =>
   new ServiceProblem(

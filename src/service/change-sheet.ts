@@ -6,12 +6,14 @@ import {
   type JobDocument,
   type LoopDocument,
   type LoopSettingsDocument,
+  moveInWords,
   type OwnSettings,
   type SheetDocument,
   type SheetLoop,
   type SheetSetting,
   settingNames,
   settingUnits,
+  settingWords,
   sheetFormat,
 } from '../contract/index.js';
 import { hashOf } from '../study/index.js';
@@ -82,7 +84,7 @@ function sheetLoop(
     measurement: loop.measurement,
     drives: drivesInWords(loop.drives),
     task: loop.task,
-    controller: controllerInWords(controller),
+    controller: `${controllerInWords(controller)}, ${signInWords(loop)}`,
     action: loop.action ?? null,
     settings,
     changes,
@@ -104,15 +106,28 @@ function sheetSettings(
   const dialled = proposed ?? present;
   if (loop.task === 'manual' || dialled === undefined) return [];
   const units = settingUnits(job, loop);
+  const words = settingWords(loop.controller);
   return settingNames
     .filter((name) => present?.[name] !== undefined || dialled[name] !== undefined)
-    .map((name) => ({
-      setting: name,
-      unit: units[name],
-      old: present === undefined ? null : (present[name] ?? 0),
-      new: dialled[name] ?? 0,
-    }));
+    .map((name) => {
+      const old = present === undefined ? null : (present[name] ?? 0);
+      const proposed = dialled[name] ?? 0;
+      return {
+        setting: name,
+        name: words[name],
+        unit: units[name],
+        old,
+        new: proposed,
+        effect: moveInWords(name, loop.controller, old, proposed),
+      };
+    });
 }
+
+/** Which way a positive gain acts. */
+const signInWords = ({ action }: LoopDocument): string =>
+  action === undefined
+    ? 'the sign is part of the gain: output = gain (SP - PV)'
+    : `${action} action, gains without sign`;
 
 const drivesInWords = (drives: DrivesDocument): string =>
   typeof drives === 'string' ? drives : `setpoint of ${drives.loop}`;

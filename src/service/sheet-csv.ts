@@ -78,13 +78,14 @@ function loopRows(loop: SheetLoop): readonly Row[] {
     { kind: 'loop', loop: tag, what: 'drives', words: loop.drives },
     { kind: 'loop', loop: tag, what: 'controller', words: loop.controller },
     { kind: 'loop', loop: tag, what: 'action', words: loop.action },
-    ...settings.map(({ setting, unit, old, new: next }) => ({
+    ...settings.map(({ name, unit, old, new: next, effect }) => ({
       kind: 'setting',
       loop: tag,
-      what: setting,
+      what: name,
       unit,
       today: old,
       new: next,
+      words: effect,
     })),
     ...expectations.map((expectation) => expectationRow('expectation', expectation, tag)),
     ...notes.map((words) => ({ kind: 'note', loop: tag, words })),

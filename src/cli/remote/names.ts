@@ -1,6 +1,6 @@
 import { Argument, InvalidArgumentError } from 'commander';
 import type { z } from 'zod';
-import { alternativeIdSchema, changeIdSchema, jobIdSchema } from '../../contract/index.js';
+import { changeIdSchema, jobIdSchema, proposableIdSchema } from '../../contract/index.js';
 
 /** The name of a job, as an argument. */
 export const jobArgument = (): Argument =>
@@ -12,7 +12,12 @@ export const changeArgument = (): Argument =>
 
 /** The name of an alternative of a front, as an argument. */
 export const alternativeArgument = (): Argument =>
-  named('<alternative>', 'alternative of its front', alternativeIdSchema, 'an id such as A07');
+  named(
+    '<alternative>',
+    'alternative of its front, or settings kept for it',
+    proposableIdSchema,
+    'an id such as A07 or U01',
+  );
 
 function named(name: string, description: string, schema: z.ZodType, allowed: string): Argument {
   return new Argument(name, description).argParser((text) => {

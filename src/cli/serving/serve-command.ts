@@ -70,7 +70,7 @@ function announcement(
 ): string {
   const where =
     place.kind === 'embedded'
-      ? `record and queue in ${place.folder}; jobs run here on ${threads} threads`
+      ? `record and queue in ${place.folder}; jobs run here on ${threads} ${threads === 1 ? 'thread' : 'threads'}`
       : `record in PostgreSQL, queue in ${place.redisUrl === null ? 'PostgreSQL' : 'Redis'}; jobs run on workers`;
   const open = ['127.0.0.1', '::1', 'localhost'].includes(host)
     ? ''

@@ -1,3 +1,5 @@
+import { once } from 'node:events';
+import { createServer } from 'node:net';
 import { buildApi } from '../../api/index.js';
 import { openServer, type Place } from '../../service/index.js';
 import { exitCode, Refusal } from '../refusal.js';
@@ -30,6 +32,8 @@ const page = new URL('../../../web/', import.meta.url);
  */
 export async function startServer(settings: ServerSettings): Promise<RunningServer> {
   const { place, host, port, threads, lockSeconds, allowedHosts } = settings;
+  // Found out before a folder is made and a database opened, which takes a while.
+  await tryOutAddress(host, port);
   const server = await openServer({
     place,
     threads,
@@ -53,6 +57,18 @@ export async function startServer(settings: ServerSettings): Promise<RunningServ
   const at = typeof address === 'object' && address !== null ? address.port : port;
   const name = host === '0.0.0.0' || host === '::' ? '127.0.0.1' : host;
   return { url: `http://${name.includes(':') ? `[${name}]` : name}:${at}`, close };
+}
+
+/** @throws {Refusal} where nothing can listen there */
+async function tryOutAddress(host: string, port: number): Promise<void> {
+  const probe = createServer();
+  try {
+    await once(probe.listen(port, host), 'listening');
+  } catch (error) {
+    throw refuseAddress(host, port, error);
+  } finally {
+    probe.close();
+  }
 }
 
 const reasons: Readonly<Record<string, string>> = {

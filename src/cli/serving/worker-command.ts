@@ -43,7 +43,9 @@ async function work({ threads, lockDuration, drain }: Options): Promise<ExitCode
         threadEntry,
       }),
     );
-    process.stderr.write(`heddle: working on ${threads} threads; Ctrl-C ends it\n`);
+    process.stderr.write(
+      `heddle: working on ${threads} ${threads === 1 ? 'thread' : 'threads'}; Ctrl-C ends it\n`,
+    );
     if (!interruption.signal.aborted) await once(interruption.signal, 'abort');
     process.stderr.write('heddle: stopping once the tasks at hand are done\n');
     await worker.close(drain * 1000);

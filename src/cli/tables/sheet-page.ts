@@ -102,24 +102,17 @@ function settingsTable(settings: readonly SheetSetting[], paper: Paper): string 
     { head: '' },
   ];
   const rows = settings.map((setting) => [
-    setting.setting,
+    setting.name,
     setting.unit,
     setting.old === null ? noFigure : inFull(setting.old),
     paper.paint.strong(inFull(setting.new)),
-    paper.paint.faint(changeInWords(setting)),
+    paper.paint.faint(setting.effect),
   ]);
   return grid(columns, rows, paper);
 }
 
 /** A number to dial with all its digits: rounded it would not be the one that was verified. */
 const inFull = (value: number): string => significant(value, 12);
-
-function changeInWords({ unit, old, new: proposed }: SheetSetting): string {
-  if (old === proposed) return 'as it is';
-  if (old === null) return 'in manual today';
-  if (old === 0 || proposed === 0) return '';
-  return unit === '% band' ? `x${fixed(old / proposed, 2)} gain` : `x${fixed(proposed / old, 2)}`;
-}
 
 /** Figures today and after, with the worst over the models where it is another. */
 function expectationsTable(

@@ -1,6 +1,6 @@
 import { z } from 'zod';
 import { proposableIdSchema } from '../front.js';
-import { keyed, text } from '../scalars.js';
+import { keyed, words } from '../scalars.js';
 import { hashSchema } from '../scored.js';
 import { jobIdSchema } from './job-record.js';
 
@@ -11,8 +11,8 @@ export const changeIdSchema = z
 
 const changeStateSchema = z.enum(['proposed', 'approved', 'rejected']);
 
-const personSchema = text(1, 120);
-const reasonSchema = text(1, 2000);
+const personSchema = words(120);
+const reasonSchema = words(2000);
 
 /** An act of a person on the record: who, and why. */
 export const actSchema = keyed({ person: personSchema, reason: reasonSchema });

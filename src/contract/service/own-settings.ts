@@ -1,12 +1,12 @@
 import { z } from 'zod';
 import { ownIdSchema, verificationSchema } from '../front.js';
-import { keyed, text } from '../scalars.js';
+import { keyed, words } from '../scalars.js';
 import { hashSchema, scoredShape } from '../scored.js';
 import { settingsSchema } from '../settings.js';
 import { jobIdSchema } from './job-record.js';
 
-const nameSchema = text(1, 80);
-const personSchema = text(1, 120);
+const nameSchema = words(80);
+const personSchema = words(120);
 
 /** Settings to be kept under a name, by loop, in each controller's own terms. */
 export const keepingSchema = keyed({

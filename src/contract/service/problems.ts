@@ -28,6 +28,7 @@ export const problemCodes = {
   FRONT_NOT_READY: { status: 409, title: 'The job has no front yet' },
   FRONT_ABSENT: { status: 409, title: 'The job ended without a front' },
   JOB_ENDED: { status: 409, title: 'The job has ended already' },
+  SAME_PERSON: { status: 409, title: 'Another person has to approve' },
   CHANGE_DECIDED: { status: 409, title: 'The change has been decided already' },
   IDEMPOTENCY_KEY_REUSED: { status: 409, title: 'The idempotency key belongs to another document' },
   CALCULATION_REFUSED: { status: 422, title: 'The job cannot be computed' },

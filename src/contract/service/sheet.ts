@@ -11,12 +11,16 @@ const figure = z.number().nullable();
 /** One setting of one loop: what stands there today, what is to be dialled, in the loop's own units. */
 const sheetSettingSchema = keyed({
   setting: z.enum(settingNames),
+  /** What it is called as it is dialled: `proportional band`, `integral time`, ... */
+  name: z.string(),
   /** What the number is, as on the faceplate: `%/%`, `rep/min`, `% band`, ... */
   unit: z.string(),
   /** Null where the loop stands in manual today. */
   old: figure,
   /** To be dialled digit by digit: it is what was verified. */
   new: z.number(),
+  /** What the move does to the action: `stronger, 1.4 x`, `switched on`, `unchanged`, ... */
+  effect: z.string(),
 });
 
 /**

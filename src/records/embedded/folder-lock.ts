@@ -27,7 +27,9 @@ export async function lockFolder(path: string): Promise<() => Promise<void>> {
   const own = await ownIdentity();
   const text = `${JSON.stringify(own)}\n`;
   const draft = `${path}.${own.nonce}`;
-  await writeFile(draft, text, { flag: 'wx' });
+  await writeFile(draft, text, { flag: 'wx' }).catch((error: unknown) => {
+    throw unwritable(path, error);
+  });
   try {
     await acquire(path, draft);
   } finally {
@@ -121,6 +123,12 @@ const bootOf = (): Promise<string | null> =>
   readFile('/proc/sys/kernel/random/boot_id', 'utf8')
     .then((id) => id.trim())
     .catch(() => null);
+
+function unwritable(path: string, cause: unknown): CodedError {
+  const reason = (cause as { code?: string }).code ?? String(cause);
+  const message = `nothing can be written to the data folder (${path}: ${reason}); name a folder that this user may write to (--data)`;
+  return new CodedError('FOLDER_UNSUITABLE', message, { cause });
+}
 
 function inUse(path: string, holder: Holder | null): CodedError {
   const who =

@@ -31,7 +31,11 @@ export async function openServed(url: string): Promise<Database> {
   // A queue's own names are unqualified, and live in a schema of their own.
   const queuePool = new pg.Pool({ ...settings, options: '-c search_path=bullmq' });
   // A connection that breaks while idle is replaced at the next use.
-  for (const each of [pool, queuePool]) each.on('error', () => undefined);
+  // One that breaks while it is in use fails what is being asked; its own word of it must be heard.
+  for (const each of [pool, queuePool]) {
+    each.on('error', () => undefined);
+    each.on('connect', (client) => client.on('error', () => undefined));
+  }
   const db = new Kysely<Tables>({ dialect: new PostgresDialect({ pool }) });
   const changes = new EventEmitter().setMaxListeners(0);
   try {

@@ -43,12 +43,12 @@ export function SheetLoop({ loop, place }: SheetLoopProps) {
           <tbody>
             {loop.settings.map((row) => (
               <tr key={row.setting}>
-                <th scope="row">{row.setting}</th>
+                <th scope="row">{row.name}</th>
                 <td>{row.unit}</td>
                 <td class="number">{dialled(row.old)}</td>
                 <td class="number new">
                   {dialled(row.new)}
-                  {row.old === row.new && <span class="under">unchanged</span>}
+                  <span class="under">{row.effect}</span>
                 </td>
                 <td class="pen" />
                 <td class="pen" />
