@@ -29,7 +29,7 @@ export async function run(built: Built): Promise<void> {
   const { readJob } = await built<Contract>('contract');
   const { toInternal } = await built<Controllers>('controllers');
   const { sampleUnit } = await built<Responses>('responses');
-  const { simulateUpsets } = await built<Scoring>('scoring');
+  const { simulateUpsets, speedOf } = await built<Scoring>('scoring');
   const { compileJob, prepareJob, Workbench } = await built<Study>('study');
   const rows = documents.map((name) => {
     const read = readJob(readFileSync(new URL(`../../../${name}.json`, import.meta.url)));
@@ -54,7 +54,9 @@ export async function run(built: Built): Promise<void> {
       const { user, system } = process.cpuUsage(before);
       return { figures, seconds: (user + system) / 1e6 };
     };
-    simulate(1);
+    const coarse = simulate(1).figures;
+    const fine = simulate(finer).figures;
+    const speedAt = (figures: Figures): number => speedOf(tuning, figures, preparation.speed);
     const costs = Array.from({ length: turns }, () => {
       const short = simulate(finer).seconds;
       return short / simulate(1).seconds;
@@ -62,16 +64,42 @@ export async function run(built: Built): Promise<void> {
     return {
       document: name.split('/').at(-1)?.replace('.job', ''),
       step: `scan / ${tuning.stepsPerScan}`,
-      ...differences(simulate(1).figures, simulate(finer).figures, tuning.scan),
+      'speed, %': percent(Math.abs(speedAt(coarse) / speedAt(fine) - 1)),
+      ...differences(coarse, fine, tuning.scan),
+      'iae where': worstError(coarse, fine, (u, i) => {
+        const { upset } = tuning.upsets[u] as (typeof tuning.upsets)[number];
+        const own = upset.kind === 'setpoint' && upset.loop === i ? 'own ' : '';
+        return `${read.job.loops[i]?.tag}, ${own}${upset.kind}`;
+      }),
       cost: Number(costs.sort((a, b) => a - b)[Math.floor(turns / 2)]?.toPrecision(3)),
       'search step': `${preparation.searchStride} scans`,
-      'speed off by, %': percent(preparation.searchError),
+      'speed there, %': percent(preparation.searchError),
     };
   });
   console.table(rows);
 }
 
 const percent = (share: number): number => Number((100 * share).toPrecision(2));
+
+/** Where the absolute error differs most. */
+function worstError(
+  coarse: Figures,
+  fine: Figures,
+  name: (u: number, i: number) => string,
+): string {
+  let largest = 0;
+  let where = '';
+  fine.forEach((loops, u) => {
+    const most = Math.max(...loops.map((f) => f.iae));
+    loops.forEach(({ iae }, i) => {
+      const off = iae < 0.01 * most ? 0 : Math.abs((coarse[u]?.[i]?.iae ?? 0) / iae - 1);
+      if (off <= largest) return;
+      largest = off;
+      where = name(u, i);
+    });
+  });
+  return where;
+}
 
 /** Largest differences, of figures that are at least a hundredth of the largest of their kind in an upset. */
 function differences(coarse: Figures, fine: Figures, scan: number) {
