@@ -35,7 +35,7 @@ function drawOwn({ random, scan }: Common): DrawnModel {
   const draw = random.uniform();
   if (draw < 0.25) return drawIntegrating(random, gain, scan);
   if (draw < 0.33) return drawUnstable(random, gain, scan);
-  return drawSettling(random, gain, scan);
+  return drawSettling(random, gain, scan, true);
 }
 
 /** A loop on measurement `Y`, with what it drives. */
@@ -115,7 +115,11 @@ export function drawDocument(seed: number): JobInput {
     };
     const inner = owns[i - 1];
     const depth = depths[i - 1] ?? 0;
-    const cascades = inner?.kind === 'settles' && depth < 2 && chance(random, 0.35);
+    const cascades =
+      inner?.kind === 'settles' &&
+      inner.model.kind !== 'step-response' &&
+      depth < 2 &&
+      chance(random, 0.35);
     measurements.push(input);
     if (cascades) {
       const outer = slower(drawSettlingOuter(common), inner);
@@ -209,5 +213,5 @@ function coupling(
     return { kind: 'transfer-function', numerator: [share * own.gain], denominator, deadTime };
   }
   const gain = own.kind === 'integrates' ? share * own.gain * 20 * scan : share * own.gain;
-  return drawSettling(random, gain, scan).model;
+  return drawSettling(random, gain, scan, !isChained).model;
 }

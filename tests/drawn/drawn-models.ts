@@ -46,7 +46,13 @@ const expand = (roots: readonly (readonly number[])[]): number[] =>
  * Any response that settles: one lag, two (far apart, close together or equal, with a lead or an inverse
  * response), a swing, a rational function of up to four lags.
  */
-export function drawSettling(random: Random, gain: number, scan: number): DrawnModel {
+export function drawSettling(
+  random: Random,
+  gain: number,
+  scan: number,
+  measured = false,
+): DrawnModel {
+  if (measured && chance(random, 0.2)) return drawMeasured(random, gain, scan, false);
   const deadTime = drawDeadTime(random, scan);
   const kind = pick(random, ['one', 'two', 'two', 'swing', 'rational'] as const);
   const lag = scan * between(random, 4, 60);
@@ -101,7 +107,34 @@ export function drawSettling(random: Random, gain: number, scan: number): DrawnM
   }
 }
 
+/** A step test as it was recorded, straight between its values; the last slope goes on, or the last value stays. */
+function drawMeasured(
+  random: Random,
+  gain: number,
+  scan: number,
+  integrating: boolean,
+): DrawnModel {
+  const deadTime = drawDeadTime(random, scan, 6);
+  const lag = scan * between(random, 4, 15);
+  const interval = lag / between(random, 1.5, 4);
+  const bend = between(random, 0.5, 3);
+  const values = Array.from({ length: Math.ceil((5 * lag) / interval) }, (_, k) => {
+    const time = (interval * (k + 1)) / lag;
+    const settled = 1 - Math.exp(-time) * (1 + time - bend * time * time * Math.exp(-time));
+    return gain * (integrating ? lag * (time - 1 + Math.exp(-time)) : settled);
+  });
+  const model: Model = { kind: 'step-response', interval, values, integrating, deadTime };
+  const delay = deadTime + lag;
+  if (!integrating) return { model, gain, lag: 1.5 * lag, delay, kind: 'settles' };
+  const [before = 0, last = 0] = values.slice(-2);
+  const rate = (last - before) / interval;
+  return { model, gain: rate, lag: Number.POSITIVE_INFINITY, delay, kind: 'integrates' };
+}
+
 export function drawIntegrating(random: Random, gain: number, scan: number): DrawnModel {
+  if (chance(random, 0.2)) {
+    return drawMeasured(random, gain / (scan * between(random, 10, 60)), scan, true);
+  }
   const deadTime = drawDeadTime(random, scan, 6);
   const rate = gain / (scan * between(random, 10, 60));
   const timeConstant = chance(random, 0.5) ? undefined : scan * between(random, 1, 10);

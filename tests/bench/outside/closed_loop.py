@@ -211,6 +211,11 @@ def simulate(unit: Unit, upsets: list[Upset], step: float, steps: int) -> Record
     sources = np.array([c.source for c in process.channels])
     delays = np.array([c.delay for c in process.channels])
     direct = [c for c in process.channels if c.direct != 0]
+    direct_sources = np.array([c.source for c in direct], int)
+    direct_delays = np.array([c.direct_delay for c in direct], int)
+    by_direct = np.zeros((len(unit.measurements), len(direct)))
+    for column, c in enumerate(direct):
+        by_direct[c.measurement, column] = c.direct
     by_now, by_before = process.now(), process.before()
     x = np.zeros((len(process.transition), runs))
     records = Records(*(np.zeros((steps + 1, loops, runs)) for _ in range(3)))
@@ -221,9 +226,7 @@ def simulate(unit: Unit, upsets: list[Upset], step: float, steps: int) -> Record
             before = inputs[at - 2 - delays, sources]
             x = process.transition @ x + by_now @ now + by_before @ before
         inputs[at] = pushed
-        measured = process.output @ x
-        for c in direct:
-            measured[c.measurement] += c.direct * inputs[at - c.direct_delay, c.source]
+        measured = process.output @ x + by_direct @ inputs[at - direct_delays, direct_sources]
         for i in unit.order:
             loop = unit.loops[i]
             setpoint = own_setpoint[i]

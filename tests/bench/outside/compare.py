@@ -57,6 +57,11 @@ class Ledger:
             row.one_sided.append(f"{where}: {got} here {wanted}, {distance:.2g} from the edge")
 
 
+def points(wanted: float | None) -> float:
+    """Of an overshoot: percent of the step, or of itself where a loop at its limits runs away."""
+    return max(1.0, (wanted or 0.0) / 100)
+
+
 def compare_unit(ledger: Ledger, job: Json, evaluation: Json) -> bool:
     unit: Unit = read_unit(job)
     name = job["unit"]["name"]
@@ -81,7 +86,7 @@ def compare_unit(ledger: Ledger, job: Json, evaluation: Json) -> bool:
                 got = listed[upset.kind, upset.tag][loop.tag][figure]
                 # Next to nothing: a millionth of what the figure is where it is largest.
                 most = max((abs(f[figure] or 0.0) for f in figures), default=0.0)
-                scale = {"overshoot": 1.0, "settlingTime": unit.scan}.get(figure, 1e-6 * most + 1e-300)
+                scale = {"overshoot": points(wanted), "settlingTime": unit.scan}.get(figure, 1e-6 * most + 1e-300)
                 ledger.compare(f"upset {figure}", got, wanted, f"{name} {upset.kind} {upset.tag} {loop.tag}", scale)
 
     by_loop, of_unit = frequency_figures(unit, whole)
@@ -89,7 +94,7 @@ def compare_unit(ledger: Ledger, job: Json, evaluation: Json) -> bool:
         tag = unit.loops[i].tag
         got = scored["loops"][tag]
         for figure, wanted in {**summary, **frequency}.items():
-            scale = {"overshoot": 1.0, "settlingTime": unit.scan, "phaseMargin": 1.0}.get(figure, 1e-9)
+            scale = {"overshoot": points(wanted), "settlingTime": unit.scan, "phaseMargin": 1.0}.get(figure, 1e-9)
             ledger.compare(f"loop {figure}", got[figure], wanted, f"{name} {tag}", scale)
         manual, distance = stable_in_manual(unit, i)
         ledger.agree("loop stableInManual", got["stableInManual"], manual, f"{name} {tag}", distance)

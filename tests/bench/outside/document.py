@@ -32,10 +32,28 @@ class Transfer:
 
 
 @dataclass(frozen=True)
+class Measured:
+    """The PV after a unit step, straight between values an interval apart, behind a dead time."""
+
+    interval: float
+    values: Array
+    slope: float
+    """That goes on after the last value."""
+    dead_time: float
+
+    def at(self, time: Array) -> Array:
+        """The PV a time after the step."""
+        since = time - self.dead_time
+        known = self.interval * np.arange(len(self.values) + 1)
+        inside = np.interp(since, known, np.concatenate([[0.0], self.values]))
+        return np.where(since <= 0, 0.0, inside + self.slope * np.maximum(0.0, since - known[-1]))
+
+
+@dataclass(frozen=True)
 class Path:
     source: int
     measurement: int
-    transfer: Transfer
+    transfer: Transfer | Measured
 
 
 @dataclass(frozen=True)
@@ -85,7 +103,7 @@ class Unit:
     upset_weights: dict[str, float]
 
 
-def transfer_of(model: Json) -> Transfer:
+def transfer_of(model: Json) -> Transfer | Measured:
     dead = model["deadTime"]
     kind = model["kind"]
     if kind == "first-order":
@@ -106,19 +124,24 @@ def transfer_of(model: Json) -> Transfer:
     if kind == "transfer-function":
         top = np.trim_zeros(np.array(model["numerator"], float), "f")
         return Transfer(top, np.array(model["denominator"], float), dead)
+    if kind == "step-response":
+        values = np.array(model["values"], float)
+        slope = (values[-1] - values[-2]) / model["interval"] if model["integrating"] else 0.0
+        return Measured(model["interval"], values, float(slope), dead)
     raise ValueError(f"no transfer function for {kind}")
 
 
 def paths_of(unit: Json, sources: list[str], measurements: list[str]) -> list[Path]:
     """Every way from a held source to a measurement; chains through other measurements multiplied out."""
 
-    def into(measurement: str) -> list[tuple[int, Transfer]]:
-        ways: list[tuple[int, Transfer]] = []
+    def into(measurement: str) -> list[tuple[int, Transfer | Measured]]:
+        ways: list[tuple[int, Transfer | Measured]] = []
         for response in unit["responses"]:
             if response["to"] != measurement:
                 continue
             own = transfer_of(response["model"])
             if response["from"] in measurements:
+                assert isinstance(own, Transfer), "chains are of transfer functions"
                 ways += [(s, own.after(before)) for s, before in into(response["from"])]
             else:
                 ways.append((sources.index(response["from"]), own))
@@ -128,7 +151,7 @@ def paths_of(unit: Json, sources: list[str], measurements: list[str]) -> list[Pa
         Path(source, m, transfer)
         for m, tag in enumerate(measurements)
         for source, transfer in into(tag)
-        if np.any(transfer.numerator)
+        if isinstance(transfer, Measured) or np.any(transfer.numerator)
     ]
 
 

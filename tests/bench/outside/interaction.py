@@ -5,12 +5,15 @@ from __future__ import annotations
 import numpy as np
 
 from closed_loop import realise, spectral_radius
-from document import Array, Transfer, Unit
+from document import Array, Measured, Transfer, Unit
 from process import growing_poles
 
 
-def long_run(transfer: Transfer) -> tuple[bool, float]:
+def long_run(transfer: Transfer | Measured) -> tuple[bool, float]:
     """Whether it integrates, and its gain or rate."""
+    if isinstance(transfer, Measured):
+        integrates = transfer.slope != 0
+        return integrates, transfer.slope if integrates else float(transfer.values[-1])
     bottom = transfer.denominator
     if bottom[-1] == 0:
         return True, float(transfer.numerator[-1] / bottom[-2])

@@ -9,7 +9,7 @@ import numpy as np
 from scipy.linalg import block_diag, expm
 from scipy.signal import tf2ss
 
-from document import Array, Path, Transfer
+from document import Array, Measured, Path, Transfer
 
 
 @dataclass(frozen=True)
@@ -65,8 +65,10 @@ def split_delay(dead_time: float, step: float) -> tuple[int, float]:
     return whole, rest if rest > 1e-9 else 0.0
 
 
-def growing_poles(transfer: Transfer) -> list[float]:
+def growing_poles(transfer: Transfer | Measured) -> list[float]:
     """Real poles at or right of zero; none of the drawn responses has complex ones there."""
+    if isinstance(transfer, Measured):
+        return [0.0] if transfer.slope != 0 else []
     poles = np.roots(transfer.denominator)
     edge = 1e-9 * max(abs(poles), default=0.0)
     return [0.0 if abs(p) <= edge else float(p.real) for p in poles if p.real >= -edge]
@@ -78,6 +80,15 @@ def without_pole(transfer: Transfer, pole: float) -> tuple[float, Transfer]:
     residue = float(np.polyval(transfer.numerator, pole) / np.polyval(rest, pole))
     other, _ = np.polydiv(np.polysub(transfer.numerator, residue * rest), [1.0, -pole])
     return residue, Transfer(np.atleast_1d(other), np.atleast_1d(rest), transfer.dead_time)
+
+
+def taps_of(measured: Measured, step: float) -> Array:
+    """What a PV gains from inputs held a number of steps ago; a slope that goes on is left out."""
+    longest = measured.dead_time + measured.interval * len(measured.values)
+    time = step * np.arange(math.ceil(longest / step) + 2)
+    bounded = measured.at(time) - measured.slope * np.maximum(0.0, time - measured.dead_time)
+    taps = np.diff(bounded, prepend=0.0)
+    return np.where(np.abs(taps) > 1e-14 * np.max(np.abs(taps), initial=0.0), taps, 0.0)
 
 
 def sample(paths: list[Path], measurements: int, step: float) -> Process:
@@ -106,16 +117,32 @@ def sample(paths: list[Path], measurements: int, step: float) -> Process:
         order += len(a)
         return slice(order - len(a), order)
 
+    def pole_state(measurement: int, pole: float) -> slice:
+        for (other, at), states in shared.items():
+            if other == measurement and math.isclose(at, pole, rel_tol=1e-9):
+                return states
+        shared[measurement, pole] = room(np.array([[pole]]), np.ones(1), measurement)
+        return shared[measurement, pole]
+
     for path in paths:
         transfer = path.transfer
+        if isinstance(transfer, Measured):
+            taps = taps_of(transfer, step)
+            if transfer.slope != 0:
+                a, b = np.zeros((1, 1)), np.array([[transfer.slope]])
+                add(path, a, b, np.ones(1), 0.0, pole_state(path.measurement, 0.0))
+            nothing = np.zeros(0)
+            for delay in np.flatnonzero(taps):
+                empty = slice(0, 0)
+                channels.append(
+                    Channel(path.source, path.measurement, empty, nothing, nothing, taps[delay], 0, int(delay))
+                )
+            continue
         for pole in growing_poles(transfer):
             residue, transfer = without_pole(transfer, pole)
-            key = next((k for k in shared if k[0] == path.measurement and math.isclose(k[1], pole, rel_tol=1e-9)), None)
             a = np.array([[pole]])
-            if key is None:
-                key = (path.measurement, pole)
-                shared[key] = room(a, np.ones(1), path.measurement)
-            add(path, a, np.array([[residue]]), np.ones(1), 0.0, shared[key])
+            states = pole_state(path.measurement, pole)
+            add(path, a, np.array([[residue]]), np.ones(1), 0.0, states)
         if len(transfer.denominator) > 1 and np.any(transfer.numerator):
             a, b, c, d = tf2ss(transfer.numerator, transfer.denominator)
             add(path, a, b, c[0], float(d[0, 0]), room(a, c[0], path.measurement))
@@ -136,9 +163,17 @@ def respond(process: Process, measurements: int, sources: int, angles: Array) ->
     out = np.zeros((len(angles), measurements, sources), complex)
     for channel in process.channels:
         n = channel.states
+        if n.stop == n.start:
+            continue
         a, c = process.transition[n, n], process.output[channel.measurement, n]
         drive = channel.now[None, :] + channel.before[None, :] / z[:, None]
         resolvent = np.linalg.solve(z[:, None, None] * np.eye(len(a)) - a, drive[:, :, None])[:, :, 0]
         out[:, channel.measurement, channel.source] += (resolvent @ c) * z**-channel.delay
-        out[:, channel.measurement, channel.source] += channel.direct * z**-channel.direct_delay
+    direct: dict[tuple[int, int], list[Channel]] = {}
+    for channel in process.channels:
+        if channel.direct != 0:
+            direct.setdefault((channel.measurement, channel.source), []).append(channel)
+    for (measurement, source), taps in direct.items():
+        turns = np.exp(-1j * np.outer(angles, [c.direct_delay for c in taps]))
+        out[:, measurement, source] += turns @ np.array([c.direct for c in taps])
     return out
