@@ -4,7 +4,6 @@ import {
   type EvaluationDocument,
   evaluationSchema,
   type JobDocument,
-  type JobInput,
   readJob,
 } from '../../src/contract/index.js';
 import {
@@ -50,11 +49,4 @@ export function expectFigures(text: string): void {
   if ('refusal' in result) expect(result.refusal).toMatch(locatedRefusal);
   // The schema takes no NaN and no infinity.
   else expect(evaluationSchema.safeParse(result.answer).error).toBeUndefined();
-}
-
-/** The evaluation of a document that must be accepted, and whose dynamics must be held by its loops. */
-export function evaluationOf(document: JobInput): EvaluationDocument {
-  const result = evaluated(acceptedText(JSON.stringify(document)));
-  if ('answer' in result) return result.answer;
-  throw new Error(`refused: ${result.refusal}`);
 }
