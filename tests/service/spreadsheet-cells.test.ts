@@ -1,4 +1,3 @@
-import { readFileSync } from 'node:fs';
 import { beforeAll, describe, expect, it } from 'vitest';
 import type { Grid, GridCell } from '../../src/contract/index.js';
 import { readGrid } from '../../src/spreadsheet/index.js';
@@ -31,12 +30,10 @@ function* mutations(grid: Grid, wrong: (cell: GridCell) => GridCell | undefined)
   }
 }
 
-const grids: Record<string, Grid> = {};
+let grid: Grid;
 
 beforeAll(async () => {
-  grids['example'] = await gridOfJob(exampleJob());
-  const column = readFileSync('src/demo/solvent-recovery-column.json', 'utf8');
-  grids['column'] = await gridOfJob(JSON.parse(column));
+  grid = await gridOfJob(exampleJob());
 });
 
 describe('a fault of a document is shown at its cell', () => {
@@ -60,47 +57,41 @@ describe('a fault of a document is shown at its cell', () => {
     '$what',
     ({ wrong }) => {
       let tried = 0;
-      for (const grid of Object.values(grids)) {
-        for (const mutation of mutations(grid, wrong)) {
-          const { faults, document } = readGrid(mutation.grid);
-          const places = faults.map(({ sheet, cell }) => `${sheet}!${cell}`);
-          expect(document).toBeNull();
-          expect(places, JSON.stringify(faults)).toContain(`${mutation.sheet}!${mutation.cell}`);
-          tried += 1;
-        }
+      for (const mutation of mutations(grid, wrong)) {
+        const { faults, document } = readGrid(mutation.grid);
+        const places = faults.map(({ sheet, cell }) => `${sheet}!${cell}`);
+        expect(document).toBeNull();
+        expect(places, JSON.stringify(faults)).toContain(`${mutation.sheet}!${mutation.cell}`);
+        tried += 1;
       }
-      expect(tried).toBeGreaterThan(100);
+      expect(tried).toBeGreaterThan(80);
     },
     60_000,
   );
 
   it('a cell emptied that must be filled is named itself', () => {
     let empty = 0;
-    for (const grid of Object.values(grids)) {
-      for (const { grid: mutated, sheet, cell, was } of mutations(grid, (one) =>
-        one === null ? undefined : null,
-      )) {
-        const { faults } = readGrid(mutated);
-        const own = faults.find(({ code }) => code === 'CELL_EMPTY');
-        // Of two headings of which one is filled, the first is named.
-        const isOther = own?.heading === 'from' || own?.heading === 'drives';
-        if (own === undefined || isOther) continue;
-        expect(`${own.sheet}!${own.cell}`, String(was)).toBe(`${sheet}!${cell}`);
-        expect(own.value).toBe('nothing');
-        empty += 1;
-      }
+    for (const { grid: mutated, sheet, cell, was } of mutations(grid, (one) =>
+      one === null ? undefined : null,
+    )) {
+      const { faults } = readGrid(mutated);
+      const own = faults.find(({ code }) => code === 'CELL_EMPTY');
+      // Of two headings of which one is filled, the first is named.
+      const isOther = own?.heading === 'from' || own?.heading === 'drives';
+      if (own === undefined || isOther) continue;
+      expect(`${own.sheet}!${own.cell}`, String(was)).toBe(`${sheet}!${cell}`);
+      expect(own.value).toBe('nothing');
+      empty += 1;
     }
-    expect(empty).toBeGreaterThan(60);
+    expect(empty).toBeGreaterThan(30);
   }, 60_000);
 
   it('whatever is wrong, every fault has a sheet, and all but missing headings a cell', () => {
-    for (const grid of Object.values(grids)) {
-      for (const { grid: mutated } of mutations(grid, (cell) => (cell === null ? 3 : 'X'))) {
-        for (const fault of readGrid(mutated).faults) {
-          expect(fault.sheet, JSON.stringify(fault)).not.toBeNull();
-          if (fault.cell === null) {
-            expect(['SHEET_MISSING', 'HEADING_MISSING', 'NOTHING_TO_RETUNE']).toContain(fault.code);
-          }
+    for (const { grid: mutated } of mutations(grid, (cell) => (cell === null ? 3 : 'X'))) {
+      for (const fault of readGrid(mutated).faults) {
+        expect(fault.sheet, JSON.stringify(fault)).not.toBeNull();
+        if (fault.cell === null) {
+          expect(['SHEET_MISSING', 'HEADING_MISSING', 'NOTHING_TO_RETUNE']).toContain(fault.code);
         }
       }
     }
