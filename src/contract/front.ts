@@ -72,6 +72,13 @@ const bindingSchema = keyed({
   alternatives: count,
 });
 
+/** A limit that the document does not state and that holds all the same; of one loop. */
+const assumedLimitSchema = keyed({
+  loop: tagSchema,
+  limit: z.enum(['outputNoise', 'peakSensitivity']),
+  bound: z.number(),
+});
+
 /** What stands in the way where the limits cannot be met together. */
 const infeasibleSchema = keyed({
   nearest: z.array(scoredSettingsSchema),
@@ -105,6 +112,8 @@ export const frontSchema = keyed({
   reference: z.string(),
   /** What was taken because the document does not state it. */
   assumed: z.array(z.string()),
+  /** The limits among what was taken, in figures; absent where there are none. */
+  assumedLimits: z.array(assumedLimitSchema).exactOptional(),
   present: presentSchema.nullable(),
   baselines: z.array(baselineSchema),
   alternatives: z.array(alternativeSchema),
@@ -125,6 +134,7 @@ export type FrontDocument = z.output<typeof frontSchema>;
 export type Baseline = z.output<typeof baselineSchema>;
 export type Verification = z.output<typeof verificationSchema>;
 export type Alternative = z.output<typeof alternativeSchema>;
+export type AssumedLimit = z.output<typeof assumedLimitSchema>;
 export type BindingLimit = z.output<typeof bindingSchema>;
 export type Infeasibility = z.output<typeof infeasibleSchema>;
 export type AlternativeDetail = z.output<typeof alternativeDetailSchema>;

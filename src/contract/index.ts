@@ -5,6 +5,7 @@ export { describeFault, type Fault, type FaultCode, faultCodes, type Warning } f
 export {
   type Alternative,
   type AlternativeDetail,
+  type AssumedLimit,
   alternativeDetailSchema,
   alternativeFormat,
   alternativeIdSchema,

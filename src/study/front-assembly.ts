@@ -1,11 +1,13 @@
 import {
   type Alternative,
   type AlternativeDetail,
+  type AssumedLimit,
   alternativeFormat,
   type Baseline,
   type FrontDocument,
   frontFormat,
   type Infeasibility,
+  type JobDocument,
   secondsPer,
   type Verification,
 } from '../contract/index.js';
@@ -63,6 +65,7 @@ export function assembleFront(
     seed: job.search.seed,
     reference: preparation.reference.method,
     assumed: [...preparation.assumed],
+    ...assumedFigures(job, preparation),
     present:
       present === undefined
         ? null
@@ -85,6 +88,20 @@ export const verificationOf = (v: Verified, isExact: boolean): Verification => (
   confidence: isExact ? Number(v.failures === 0) : passingShare(v.failures, v.models),
   mended: v.mended,
 });
+
+/** The limits that the document does not state; they are of loops, and of these two figures. */
+function assumedFigures(
+  job: JobDocument,
+  { limits }: Preparation,
+): Pick<FrontDocument, 'assumedLimits'> {
+  const taken = limits.flatMap(({ loop, quantity, bound }): AssumedLimit[] => {
+    const own = loop === null ? undefined : job.loops[loop];
+    if (quantity !== 'outputNoise' && quantity !== 'peakSensitivity') return [];
+    if (own === undefined || own.limits[quantity] !== undefined) return [];
+    return [{ loop: own.tag, limit: quantity, bound }];
+  });
+  return taken.length === 0 ? {} : { assumedLimits: taken };
+}
 
 /** Twelve digits: a step is a scan divided, not a measurement. */
 const tidy = (value: number): number => Number(value.toPrecision(12));

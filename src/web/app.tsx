@@ -72,7 +72,7 @@ function View({ route }: { readonly route: Route }) {
     case 'hand-in':
       return <HandIn />;
     case 'job':
-      return <JobPage key={route.job} id={route.job} alternative={route.alternative} />;
+      return <JobPage key={route.job} id={route.job} look={route.look} />;
     case 'sheet':
       return <SheetPage key={route.change} job={route.job} change={route.change} />;
     case 'unknown':
@@ -106,7 +106,7 @@ function titleOf(route: Route): string {
     case 'hand-in':
       return 'Hand in a job - Heddle';
     case 'job':
-      return `${[route.job, route.alternative].filter((part) => part !== null).join(' ')} - Heddle`;
+      return `${[route.job, route.look.chosen].filter((part) => part !== null).join(' ')} - Heddle`;
     case 'sheet':
       return `Change sheet ${route.change} - Heddle`;
     case 'unknown':

@@ -3,6 +3,7 @@ import { EventEmitter, on } from 'node:events';
 import {
   type AcceptedJob,
   type Act,
+  type Alternative,
   type Cancellation,
   type ChangeList,
   type ChangeRecord,
@@ -11,6 +12,9 @@ import {
   type JobList,
   type JobQuery,
   type JobRecord,
+  type Keeping,
+  type OwnSettings,
+  type OwnSettingsList,
   type Proposal,
   readJob,
   type SheetDocument,
@@ -24,6 +28,7 @@ import {
 } from '../../src/service/index.js';
 import type { StudyOutcome } from '../../src/study/index.js';
 import { spreadsheetAnswer, spreadsheetFile } from '../spreadsheet-answers.js';
+import { FixtureJudge } from './fixture-judge.js';
 
 interface HeldJob {
   record: JobRecord;
@@ -45,6 +50,8 @@ const moment = (minute: number): string => new Date(Date.UTC(2026, 2, 2, 8, minu
 export class FixtureService implements Service {
   private readonly held = new Map<string, HeldJob>();
   private readonly proposed = new Map<string, ChangeRecord>();
+  /** Scores settings that somebody tries, and keeps them. */
+  readonly judge = new FixtureJudge();
   private readonly news = new EventEmitter().setMaxListeners(0);
   /** The keys of all jobs handed in, in their order. */
   readonly keys: (string | undefined)[] = [];
@@ -168,14 +175,16 @@ export class FixtureService implements Service {
   }
 
   async alternative(id: string, alternative: string): Promise<Uint8Array> {
-    const detail = this.outcome(id).details.find((one) => one.id === alternative);
+    const detail =
+      this.outcome(id).details.find((one) => one.id === alternative) ??
+      this.judge.documentOf(id, alternative);
     if (detail === undefined) throw new ServiceProblem('ALTERNATIVE_UNKNOWN', alternative);
     return bytesOf(detail);
   }
 
   async propose(job: string, { alternative, person, reason }: Proposal): Promise<ChangeRecord> {
     const { front } = this.outcome(job);
-    const chosen = front.alternatives.find((one) => one.id === alternative);
+    const chosen = this.proposable(job, alternative);
     if (chosen === undefined) throw new ServiceProblem('ALTERNATIVE_UNKNOWN', alternative);
     const change: ChangeRecord = {
       id: `C${String(this.proposed.size).padStart(12, '0')}`,
@@ -215,7 +224,8 @@ export class FixtureService implements Service {
   async sheet(id: string): Promise<SheetDocument> {
     const change = await this.change(id);
     const { job } = this.find(change.job);
-    return changeSheet({ job, front: this.outcome(change.job).front, change });
+    const { front } = this.outcome(change.job);
+    return changeSheet({ job, front, change, own: this.judge.keptFor(change.job) });
   }
 
   async readiness(): Promise<Readiness> {
@@ -230,16 +240,25 @@ export class FixtureService implements Service {
     return this.refuse();
   }
 
-  keep(): Promise<never> {
-    return this.refuse();
+  async evaluateSettings(
+    id: string,
+    settings: Uint8Array,
+    models: 'search' | 'all',
+  ): Promise<Uint8Array> {
+    return this.judge.evaluate(this.find(id).bytes, settings, models);
   }
 
-  ownSettings(): Promise<never> {
-    return this.refuse();
+  async keep(id: string, keeping: Keeping): Promise<OwnSettings> {
+    return this.judge.keep(id, this.find(id).bytes, keeping);
   }
 
-  evaluateSettings(): Promise<never> {
-    return this.refuse();
+  async ownSettings(id: string): Promise<OwnSettingsList> {
+    return { own: this.judge.keptFor(this.find(id).record.id) };
+  }
+
+  private proposable(job: string, id: string): Alternative | OwnSettings | undefined {
+    const all = [...this.outcome(job).front.alternatives, ...this.judge.keptFor(job)];
+    return all.find((one) => one.id === id);
   }
 
   private async refuse(): Promise<never> {

@@ -2,7 +2,9 @@ import { describe, expect, it } from 'vitest';
 import type { LoopMetrics, Metrics } from '../../src/contract/index.js';
 import { loopFigures } from '../../src/web/alternative/loop-figures.js';
 import { quietFrom } from '../../src/web/alternative/trend-span.js';
-import { frontPoints, frontWindow } from '../../src/web/front/front-points.js';
+import { frontPoints } from '../../src/web/front/front-points.js';
+import { frontWindow } from '../../src/web/front/front-window.js';
+import { robustnessAxis, speedAxis } from '../../src/web/front/plane-axis.js';
 import { roundWithin, scaleFor } from '../../src/web/parts/axis-range.js';
 import { atLeastPercent, dialled, figure, percent } from '../../src/web/text/figures.js';
 import { viewUnit } from '../../src/web/text/unit-view.js';
@@ -23,8 +25,11 @@ function rowsOf(change: Partial<LoopMetrics>, limits: object, goal?: 'averaging'
   };
   const view = { ...loop, averaging: goal === 'averaging' };
   const time = { timeUnit: 'min', horizon: 60 };
-  const rows = loopFigures(view, scored(ordinary), scored({ ...ordinary, ...change }), time);
-  return (words: string) => rows.find((row) => row.words === words);
+  const rows = loopFigures(view, scored(ordinary), [scored({ ...ordinary, ...change })], time);
+  return (words: string) => {
+    const row = rows.find((one) => one.words === words);
+    return row === undefined ? undefined : { ...row, ...row.sets[0] };
+  };
 }
 
 describe('the figures of a loop', () => {
@@ -43,17 +48,17 @@ describe('the figures of a loop', () => {
     expect(margin(null)('Gain margin')?.isBroken).toBe(false);
     expect(margin(0.4)('Gain margin')?.isBroken).toBe(false);
     expect(margin(0.6)('Gain margin')?.isBroken).toBe(true);
-    expect(margin(0.6)('Gain reduction')?.chosen[1]).toBe('0.600');
+    expect(margin(0.6)('Gain reduction')?.shown?.[1]).toBe('0.600');
     expect(margin(null)('Gain reduction')).toBeUndefined();
   });
 
   it('say what has not settled in the time simulated, and that it breaks its limit', () => {
     const row = rowsOf({ settlingTime: null }, { settlingTime: 30 })('Settling time');
-    expect(row?.chosen).toEqual(['> 60.0', '> 60.0']);
+    expect(row?.shown).toEqual(['> 60.0', '> 60.0']);
     expect(row?.isBroken).toBe(true);
     // Without a setpoint step of its own nothing could settle.
     const still = rowsOf({ settlingTime: null, overshoot: null }, { settlingTime: 30 });
-    expect(still('Settling time')).toMatchObject({ chosen: ['\u2013', '\u2013'], isBroken: false });
+    expect(still('Settling time')).toMatchObject({ shown: ['\u2013', '\u2013'], isBroken: false });
   });
 
   it('call a figure better or worse by its own sense, and a swinging level neither', () => {
@@ -68,7 +73,7 @@ describe('the figures of a loop', () => {
   });
 
   it('show a margin without end as such', () => {
-    expect(rowsOf({ gainMargin: null }, {})('Gain margin')?.chosen).toEqual(['\u221e', '\u221e']);
+    expect(rowsOf({ gainMargin: null }, {})('Gain margin')?.shown).toEqual(['\u221e', '\u221e']);
   });
 });
 
@@ -111,16 +116,19 @@ describe('the plane of the front', () => {
   it('holds every alternative and today, and tells of what lies beyond', () => {
     const document = front();
     const points = frontPoints(document);
-    const plane = frontWindow(points);
-    const drawn = plane.inside.map(({ key }) => key);
+    const plane = frontWindow(points, { x: robustnessAxis, y: speedAxis('today') });
+    const drawn = plane.inside.map(({ point }) => point.key);
     for (const { id } of document.alternatives) expect(drawn).toContain(id);
-    const told = [...plane.inside, ...plane.beyond, ...plane.unstable].map(({ key }) => key);
+    const told = [
+      ...[...plane.inside, ...plane.beyond].map(({ point }) => point.key),
+      ...[...plane.unstable, ...plane.without].map(({ key }) => key),
+    ];
     expect(told.toSorted()).toEqual(points.map(({ key }) => key).toSorted());
-    for (const { speed, worstSpeed, robustness } of plane.inside) {
-      expect(robustness).toBeGreaterThanOrEqual(plane.robustness.low);
-      expect(robustness).toBeLessThanOrEqual(plane.robustness.high);
-      expect(speed).toBeGreaterThanOrEqual(plane.speed.low);
-      expect(Math.max(speed, worstSpeed ?? 0)).toBeLessThanOrEqual(plane.speed.high);
+    for (const { x, y, worstY } of plane.inside) {
+      expect(x).toBeGreaterThanOrEqual(plane.x.low);
+      expect(x).toBeLessThanOrEqual(plane.x.high);
+      expect(y).toBeGreaterThanOrEqual(plane.y.low);
+      expect(Math.max(y, worstY ?? 0)).toBeLessThanOrEqual(plane.y.high);
     }
   });
 

@@ -71,6 +71,19 @@ const alternative: View = {
 
 const views: readonly View[] = [
   alternative,
+  {
+    name: 'alternatives side by side',
+    address: () => `jobs/${held.done}/A03?beside=A01,B01`,
+    shows: '.upset-table',
+    use: filter,
+  },
+  {
+    name: 'settings of one’s own',
+    address: () => `jobs/${held.done}/A02`,
+    shows: '.front canvas',
+    use: tryOwn,
+  },
+  { name: 'job run again', address: () => `jobs/${held.done}`, shows: '.change', use: runAgain },
   { name: 'list of jobs', address: () => '', shows: 'table.jobs' },
   { name: 'refused document', address: () => 'hand-in', shows: 'form', use: refuse },
   { name: 'waiting job', address: () => `jobs/${held.waiting}`, shows: '[role=status]' },
@@ -96,6 +109,26 @@ async function refuse(page: Page): Promise<void> {
     .fill('{ "format": "heddle-job/1", "colour": 1 }');
   await page.getByRole('button', { name: 'Hand in' }).click();
   await page.locator('table.faults').waitFor();
+}
+
+async function filter(page: Page): Promise<void> {
+  await page.getByLabel('Filter by').selectOption('robustness');
+  await page.getByRole('slider', { name: 'Ms, worst' }).press('Home');
+  await page.locator('.front-table tr.dimmed').first().waitFor();
+}
+
+async function tryOwn(page: Page): Promise<void> {
+  const start = page.getByRole('button', { name: /^(Try settings|Start anew)$/ });
+  await start.click();
+  await page.getByRole('spinbutton', { name: 'TC-1 gain' }).fill('3');
+  await page.getByText(/limits? broken:/).waitFor();
+  await page.getByRole('spinbutton', { name: 'TC-2 integral' }).fill('-1');
+  await page.locator('.fault').waitFor();
+}
+
+async function runAgain(page: Page): Promise<void> {
+  await page.getByRole('button', { name: 'Run again with changes' }).click();
+  await page.locator('.again').waitFor();
 }
 
 async function openCancel(page: Page): Promise<void> {

@@ -1,33 +1,41 @@
-import type { Alternative, FrontDocument, JobRecord } from '../../contract/index.js';
+import type { FrontDocument, JobRecord } from '../../contract/index.js';
+import type { FrontPoint } from '../front/front-points.js';
+import { LimitsSection } from '../limits/limits-section.js';
 import { Section } from '../parts/section.js';
-import { figure } from '../text/figures.js';
 import type { UnitView } from '../text/unit-view.js';
 import { FiguresTable } from './figures-table.js';
 import { loopFigures } from './loop-figures.js';
 import { ResponsesSection } from './responses-section.js';
 import { SettingsTable } from './settings-table.js';
+import type { TuningSet } from './tuning-set.js';
 
 interface AlternativeViewProps {
   readonly job: JobRecord;
   readonly front: FrontDocument;
   readonly unit: UnitView;
-  readonly alternative: Alternative;
-  readonly onChoose: (id: string) => void;
+  readonly chosen: FrontPoint;
+  /** The set chosen and those beside it. */
+  readonly sets: readonly TuningSet[];
+  readonly upset: string | null;
+  readonly onUpset: (upset: string) => void;
 }
 
-/** One alternative against today's settings: what changes, what it does, how it answers upsets. */
-export function AlternativeView({ job, front, unit, alternative, onChoose }: AlternativeViewProps) {
-  const { id } = alternative;
-  const shown = unit.loops.filter(({ tag }) => alternative.nominal.loops[tag] !== undefined);
+/** Tuning sets against today's settings: what changes, what it does, how it answers upsets. */
+export function AlternativeView(props: AlternativeViewProps) {
+  const { job, front, unit, chosen, sets, upset, onUpset } = props;
+  const shown = unit.loops.filter(({ tag }) => chosen.scored.nominal.loops[tag] !== undefined);
   return (
     <>
-      <Travel front={front} alternative={alternative} onChoose={onChoose} />
       <Section
         title="Settings"
         note={<p>In each controller's own form and units, as they would be dialled.</p>}
       >
-        <SettingsTable unit={unit} proposed={alternative.settings} name={id} />
+        <SettingsTable
+          unit={unit}
+          sets={sets.map(({ name, role, scored }) => ({ name, role, settings: scored.settings }))}
+        />
       </Section>
+      <LimitsSection unit={unit} point={chosen} horizon={front.horizon} />
       <Section
         title="Figures"
         note={
@@ -37,68 +45,30 @@ export function AlternativeView({ job, front, unit, alternative, onChoose }: Alt
           </p>
         }
       >
-        <div class="figures-grid">
+        <div class={sets.length > 1 ? 'figures-grid figures-wide' : 'figures-grid'}>
           {shown.map((loop) => (
             <FiguresTable
               key={loop.tag}
               loop={loop}
-              rows={loopFigures(loop, front.present, alternative, front)}
-              name={id}
+              rows={loopFigures(
+                loop,
+                front.present,
+                sets.map(({ scored }) => scored),
+                front,
+              )}
+              sets={sets}
             />
           ))}
         </div>
       </Section>
-      <ResponsesSection job={job} front={front} unit={unit} id={id} />
+      <ResponsesSection
+        job={job}
+        unit={unit}
+        sets={sets}
+        hasPresent={front.present !== null}
+        upset={upset}
+        onUpset={onUpset}
+      />
     </>
-  );
-}
-
-interface TravelProps {
-  readonly front: FrontDocument;
-  readonly alternative: Alternative;
-  readonly onChoose: (id: string) => void;
-}
-
-/** Which alternative is shown, and the way to its neighbours while looking at it. */
-function Travel({ front, alternative, onChoose }: TravelProps) {
-  const { alternatives, present } = front;
-  const at = alternatives.findIndex(({ id }) => id === alternative.id);
-  const neighbour = (step: number, words: string) => {
-    const other = alternatives[at + step];
-    return (
-      <button
-        type="button"
-        class="plain"
-        disabled={other === undefined}
-        onClick={() => other !== undefined && onChoose(other.id)}
-      >
-        {words}
-        {other !== undefined && ` ${other.id}`}
-      </button>
-    );
-  };
-  const today = present?.objectives;
-  return (
-    <div class="travel">
-      <p class="travel-name">
-        <strong>{alternative.id}</strong> against today
-      </p>
-      <p>
-        speed {figure(alternative.objectives.speed)}
-        <span class="quiet"> today {figure(today?.speed)}</span>
-      </p>
-      <p>
-        Ms {figure(alternative.objectives.robustness)}
-        <span class="quiet"> today {figure(today?.robustness)}</span>
-      </p>
-      <p>
-        {alternative.verified.models - alternative.verified.failures} of{' '}
-        {alternative.verified.models} models within limits
-      </p>
-      <p class="buttons">
-        {neighbour(-1, 'More robust')}
-        {neighbour(1, 'Faster')}
-      </p>
-    </div>
   );
 }

@@ -1,16 +1,16 @@
 import { ScrollBox } from '../parts/scroll-box.js';
 import type { LoopView } from '../text/unit-view.js';
 import type { FigureRow } from './loop-figures.js';
+import type { TuningSet } from './tuning-set.js';
 
 interface FiguresTableProps {
   readonly loop: LoopView;
   readonly rows: readonly FigureRow[];
-  /** Name of the chosen tuning. */
-  readonly name: string;
+  readonly sets: readonly TuningSet[];
 }
 
-/** What one loop does today and would do, nominal and on the worst model. */
-export function FiguresTable({ loop, rows, name }: FiguresTableProps) {
+/** What one loop does today and would do with each set, nominal and on the worst model. */
+export function FiguresTable({ loop, rows, sets }: FiguresTableProps) {
   return (
     <div class="loop-figures">
       <h3>
@@ -28,23 +28,21 @@ export function FiguresTable({ loop, rows, name }: FiguresTableProps) {
               <th scope="colgroup" colSpan={2}>
                 Today
               </th>
-              <th scope="colgroup" colSpan={2}>
-                {name}
-              </th>
-              <th scope="col" rowSpan={2}>
-                Worst is
-              </th>
+              {sets.map(({ key, name, role }) => (
+                <th key={key} scope="colgroup" colSpan={3} class={`of-${role}`}>
+                  {name}
+                </th>
+              ))}
               <th scope="col" rowSpan={2} class="number">
                 Limit
               </th>
             </tr>
             <tr>
-              {['today', 'chosen'].flatMap((whose) => [
-                <th key={`${whose} nominal`} scope="col" class="number">
-                  nominal
-                </th>,
-                <th key={`${whose} worst`} scope="col" class="number">
-                  worst
+              <NominalAndWorst />
+              {sets.map(({ key }) => [
+                <NominalAndWorst key={key} />,
+                <th key={`${key} verdict`} scope="col">
+                  worst is
                 </th>,
               ])}
             </tr>
@@ -58,18 +56,37 @@ export function FiguresTable({ loop, rows, name }: FiguresTableProps) {
                 </th>
                 <td class="number">{row.today[0]}</td>
                 <td class="number">{row.today[1]}</td>
-                <td class="number new">{row.chosen[0]}</td>
-                <td class="number new">{row.chosen[1]}</td>
-                <td class={`verdict verdict-${row.verdict ?? 'none'}`}>{row.verdict}</td>
-                <td class="number">
-                  {row.limit}
-                  {row.isBroken && <span class="broken"> exceeded</span>}
-                </td>
+                {row.sets.map(({ shown, verdict, isBroken }, k) => [
+                  <td key={`${k} nominal`} class={`number new of-${sets[k]?.role}`}>
+                    {shown[0]}
+                  </td>,
+                  <td key={`${k} worst`} class={`number new of-${sets[k]?.role}`}>
+                    {shown[1]}
+                  </td>,
+                  <td key={`${k} verdict`} class={`verdict verdict-${verdict ?? 'none'}`}>
+                    {verdict}
+                    {isBroken && <span class="broken"> over limit</span>}
+                  </td>,
+                ])}
+                <td class="number">{row.limit}</td>
               </tr>
             ))}
           </tbody>
         </table>
       </ScrollBox>
     </div>
+  );
+}
+
+function NominalAndWorst() {
+  return (
+    <>
+      <th scope="col" class="number">
+        nominal
+      </th>
+      <th scope="col" class="number">
+        worst
+      </th>
+    </>
   );
 }

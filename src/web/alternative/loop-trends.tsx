@@ -4,13 +4,14 @@ import type { Ink } from '../parts/ink.js';
 import { Plot } from '../parts/plot.js';
 import type { LoopView } from '../text/unit-view.js';
 import { type TrendLine, trendOption } from './trend-option.js';
+import type { TuningSet } from './tuning-set.js';
 
 interface LoopTrendsProps {
   readonly loop: LoopView;
-  readonly chosen: Trend;
+  /** The upset with each set, the chosen first. */
+  readonly trends: readonly Trend[];
+  readonly sets: readonly TuningSet[];
   readonly today: Trend | null;
-  /** Name of the chosen tuning. */
-  readonly name: string;
   readonly span: number;
   readonly timeUnit: string;
   readonly ink: Ink;
@@ -18,14 +19,17 @@ interface LoopTrendsProps {
 
 /** One loop's measurement with its setpoint, and its output, in one upset. */
 export function LoopTrends(props: LoopTrendsProps) {
-  const { loop, chosen, today, name, span, timeUnit, ink } = props;
+  const { loop, trends, sets, today, span, timeUnit, ink } = props;
   const [pv, op] = useMemo(() => {
     const common = { span, timeUnit, ink };
     const lines = (of: 'pv' | 'op'): TrendLine[] => [
       ...lineOf(today, loop.tag, of, 'today', 'today'),
-      ...lineOf(chosen, loop.tag, of, 'chosen', name),
+      // The chosen is drawn last and lies on top.
+      ...sets
+        .flatMap(({ role, name }, k) => lineOf(trends[k] ?? null, loop.tag, of, role, name))
+        .reverse(),
     ];
-    const setpoint = lineOf(chosen, loop.tag, 'sp', 'setpoint', 'setpoint');
+    const setpoint = lineOf(trends[0] ?? null, loop.tag, 'sp', 'setpoint', 'setpoint');
     return [
       trendOption({
         ...common,
@@ -40,7 +44,7 @@ export function LoopTrends(props: LoopTrendsProps) {
         unit: loop.outputUnit,
       }),
     ];
-  }, [loop, chosen, today, name, span, timeUnit, ink]);
+  }, [loop, trends, sets, today, span, timeUnit, ink]);
   return (
     <div class="loop-trends">
       <h3>{loop.tag}</h3>

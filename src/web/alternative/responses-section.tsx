@@ -1,72 +1,74 @@
-import { useId, useState } from 'preact/hooks';
-import type { AlternativeDetail, FrontDocument, JobRecord, Trend } from '../../contract/index.js';
+import { useId, useMemo, useState } from 'preact/hooks';
+import type { AlternativeDetail, JobRecord, Trend } from '../../contract/index.js';
 import { useInk } from '../parts/ink.js';
 import { Loading, TroubleNotice } from '../parts/notices.js';
 import { Section } from '../parts/section.js';
-import { fetchAlternative } from '../server/heddle.js';
-import { useResource } from '../server/resource.js';
 import { figure } from '../text/figures.js';
 import type { UnitView } from '../text/unit-view.js';
 import { upsetInWords } from '../text/words.js';
+import { useDetails } from './details.js';
 import { LoopTrends } from './loop-trends.js';
 import { quietFrom, spans } from './trend-span.js';
+import type { TuningSet } from './tuning-set.js';
 import { UpsetTable } from './upset-table.js';
 
 interface ResponsesProps {
   readonly job: JobRecord;
-  readonly front: FrontDocument;
   readonly unit: UnitView;
-  /** The chosen alternative. */
-  readonly id: string;
+  readonly sets: readonly TuningSet[];
+  readonly hasPresent: boolean;
+  /** The upset that is asked for, as the address has it. */
+  readonly upset: string | null;
+  readonly onUpset: (upset: string) => void;
 }
 
-/** How the unit answers an upset, today and with the chosen alternative. */
-export function ResponsesSection({ job, front, unit, id }: ResponsesProps) {
-  const hasPresent = front.present !== null;
-  const chosen = useResource(`alternative ${job.id} ${id}`, (signal) =>
-    fetchAlternative(job.id, id, signal),
-  );
-  const present = useResource(hasPresent ? `alternative ${job.id} present` : null, (signal) =>
-    fetchAlternative(job.id, 'present', signal),
-  );
+/** How the unit answers an upset, today and with each set. */
+export function ResponsesSection(props: ResponsesProps) {
+  const { job, sets, hasPresent } = props;
+  const keys = [...sets.map(({ key }) => key), ...(hasPresent ? ['present'] : [])];
+  const { value, trouble, reload } = useDetails(job.id, keys);
   const note = <p>Changes from the operating point, on the nominal unit. The upset comes at 0.</p>;
-  const isWaiting = chosen.value === undefined || (hasPresent && present.value === undefined);
+  const present = hasPresent ? value?.at(-1) : undefined;
   return (
     <Section title="Responses" note={note}>
-      {[chosen, present].map(
-        ({ trouble, reload }, index) =>
-          trouble !== null && (
-            <TroubleNotice key={String(index)} trouble={trouble} onRetry={reload} />
-          ),
+      {trouble !== null && <TroubleNotice trouble={trouble} onRetry={reload} />}
+      {value === undefined && trouble === null && (
+        <Loading
+          what={`responses of ${[...sets.map(({ name }) => name), "today's settings"].join(', ')}`}
+        />
       )}
-      {isWaiting && chosen.trouble === null && present.trouble === null && (
-        <Loading what={`responses of ${id} and of today's settings`} />
-      )}
-      {chosen.value !== undefined && !isWaiting && (
-        <Responses chosen={chosen.value} present={present.value ?? null} unit={unit} />
+      {value !== undefined && (
+        <Responses details={value.slice(0, sets.length)} present={present ?? null} {...props} />
       )}
     </Section>
   );
 }
 
-interface DetailsProps {
-  readonly chosen: AlternativeDetail;
+interface DetailsProps extends ResponsesProps {
+  /** Of each set, in their order. */
+  readonly details: readonly AlternativeDetail[];
   readonly present: AlternativeDetail | null;
-  readonly unit: UnitView;
 }
 
 const keyOf = ({ kind, tag }: Pick<Trend, 'kind' | 'tag'>): string => `${kind} ${tag}`;
 
-function Responses({ chosen, present, unit }: DetailsProps) {
+function Responses({ details, present, unit, sets, upset, onUpset }: DetailsProps) {
   const id = useId();
   const ink = useInk();
-  const [wanted, want] = useState('');
   const [share, setShare] = useState<number | null>(null);
-  const trend = chosen.responses.find((one) => keyOf(one) === wanted) ?? firstOf(chosen.responses);
+  const offered = details[0]?.responses ?? [];
+  const trend = offered.find((one) => keyOf(one) === upset) ?? firstOf(offered);
+  const trends = useMemo(
+    () =>
+      details.flatMap(({ responses }) =>
+        responses.filter((one) => trend !== undefined && keyOf(one) === keyOf(trend)),
+      ),
+    [details, trend],
+  );
   if (trend === undefined) return <p>This job simulates no upset.</p>;
   const today = present?.responses.find((one) => keyOf(one) === keyOf(trend)) ?? null;
   const horizon = trend.time.at(-1) ?? 1;
-  const span = horizon * (share ?? quietFrom(today === null ? [trend] : [trend, today]));
+  const span = horizon * (share ?? quietFrom(today === null ? trends : [...trends, today]));
   const groups = ['disturbance', 'load', 'setpoint'] as const;
   return (
     <>
@@ -76,10 +78,10 @@ function Responses({ chosen, present, unit }: DetailsProps) {
           <select
             id={`${id}-upset`}
             value={keyOf(trend)}
-            onChange={(event) => want(event.currentTarget.value)}
+            onChange={(event) => onUpset(event.currentTarget.value)}
           >
             {groups.map((group) => {
-              const members = chosen.responses.filter(({ kind }) => kind === group);
+              const members = offered.filter(({ kind }) => kind === group);
               return (
                 members.length > 0 && (
                   <optgroup key={group} label={`${group} steps`}>
@@ -114,26 +116,11 @@ function Responses({ chosen, present, unit }: DetailsProps) {
         <p class="upset-size">{upsetSize(trend, unit)}</p>
       </div>
       <ul class="key">
-        <li>
-          <svg class="stroke stroke-chosen" viewBox="0 0 32 8" aria-hidden="true">
-            <path d="M0 4H32" />
-          </svg>
-          {chosen.id}
-        </li>
-        {today !== null && (
-          <li>
-            <svg class="stroke stroke-today" viewBox="0 0 32 8" aria-hidden="true">
-              <path d="M0 4H32" />
-            </svg>
-            today
-          </li>
-        )}
-        <li>
-          <svg class="stroke stroke-setpoint" viewBox="0 0 32 8" aria-hidden="true">
-            <path d="M0 4H32" />
-          </svg>
-          setpoint, with {chosen.id}
-        </li>
+        {sets.map(({ key, name, role }) => (
+          <Stroke key={key} of={role} words={name} />
+        ))}
+        {today !== null && <Stroke of="today" words="today" />}
+        <Stroke of="setpoint" words={`setpoint, with ${sets[0]?.name}`} />
       </ul>
       <div class="trends">
         {unit.loops
@@ -142,17 +129,35 @@ function Responses({ chosen, present, unit }: DetailsProps) {
             <LoopTrends
               key={loop.tag}
               loop={loop}
-              chosen={trend}
+              trends={trends}
+              sets={sets}
               today={today}
-              name={chosen.id}
               span={span}
               timeUnit={unit.timeUnit}
               ink={ink}
             />
           ))}
       </div>
-      <UpsetTable chosen={chosen} present={present} upset={trend} horizon={horizon} unit={unit} />
+      <UpsetTable
+        details={details}
+        sets={sets}
+        present={present}
+        upset={trend}
+        horizon={horizon}
+        unit={unit}
+      />
     </>
+  );
+}
+
+function Stroke({ of, words }: { readonly of: string; readonly words: string }) {
+  return (
+    <li>
+      <svg class={`stroke stroke-${of}`} viewBox="0 0 32 8" aria-hidden="true">
+        <path d="M0 4H32" />
+      </svg>
+      {words}
+    </li>
   );
 }
 

@@ -2,18 +2,24 @@ import { type SettingName, type SettingsDocument, settingNames } from '../../con
 import { ScrollBox } from '../parts/scroll-box.js';
 import { dialled, figure, noFigure } from '../text/figures.js';
 import type { LoopView, UnitView } from '../text/unit-view.js';
+import type { SetRole } from './tuning-set.js';
 
 interface SettingsTableProps {
   readonly unit: UnitView;
-  readonly proposed: SettingsDocument;
-  /** Whose settings the proposed ones are. */
-  readonly name: string;
+  readonly sets: readonly Proposed[];
 }
 
-/** Settings of every loop as its own controller has them: today's, the proposed, and their ratio. */
-export function SettingsTable({ unit, proposed, name }: SettingsTableProps) {
+/** Settings of a set, with whose they are. */
+interface Proposed {
+  readonly name: string;
+  readonly role: SetRole;
+  readonly settings: SettingsDocument;
+}
+
+/** Settings of every loop as its own controller has them: today's, those of each set, their ratio. */
+export function SettingsTable({ unit, sets }: SettingsTableProps) {
   return (
-    <ScrollBox label={`Settings of ${name} and of today`}>
+    <ScrollBox label={`Settings of ${sets.map(({ name }) => name).join(', ')} and of today`}>
       <table class="settings">
         <thead>
           <tr>
@@ -23,14 +29,18 @@ export function SettingsTable({ unit, proposed, name }: SettingsTableProps) {
             <th scope="col" class="number">
               Today
             </th>
-            <th scope="col" class="number">
-              {name}
-            </th>
-            <th scope="col">Change</th>
+            {sets.map(({ name, role }) => [
+              <th key={name} scope="col" class={`number of-${role}`}>
+                {name}
+              </th>,
+              <th key={`${name} change`} scope="col">
+                Change
+              </th>,
+            ])}
           </tr>
         </thead>
         {unit.loops.map((loop) => (
-          <LoopRows key={loop.tag} loop={loop} proposed={proposed[loop.tag]} />
+          <LoopRows key={loop.tag} loop={loop} sets={sets} />
         ))}
       </table>
     </ScrollBox>
@@ -39,24 +49,19 @@ export function SettingsTable({ unit, proposed, name }: SettingsTableProps) {
 
 interface LoopRowsProps {
   readonly loop: LoopView;
-  readonly proposed: SettingsDocument[string] | undefined;
+  readonly sets: readonly Proposed[];
 }
 
-function LoopRows({ loop, proposed }: LoopRowsProps) {
-  const shown = settingNames.filter(
-    (setting) => (loop.present?.[setting] ?? 0) !== 0 || (proposed?.[setting] ?? 0) !== 0,
+function LoopRows({ loop, sets }: LoopRowsProps) {
+  const { tag, present } = loop;
+  const shown = settingNames.filter((setting) =>
+    [present, ...sets.map(({ settings }) => settings[tag])].some(
+      (one) => (one?.[setting] ?? 0) !== 0,
+    ),
   );
   const head = (
     <th scope="rowgroup" rowSpan={Math.max(1, shown.length)} class="loop-name">
-      {loop.tag}
-      <span class="under">
-        {loop.measurement} to {loop.drives}
-        <br />
-        {loop.controller}
-        {loop.averaging && ', averaging'}
-        {loop.task === 'keep' && ', kept as it is'}
-        {loop.task === 'manual' && ', in manual'}
-      </span>
+      <LoopName loop={loop} />
     </th>
   );
   if (shown.length === 0 || loop.task === 'manual') {
@@ -64,7 +69,7 @@ function LoopRows({ loop, proposed }: LoopRowsProps) {
       <tbody>
         <tr>
           {head}
-          <td colSpan={5} class="quiet">
+          <td colSpan={3 + 2 * sets.length} class="quiet">
             no settings
           </td>
         </tr>
@@ -78,21 +83,48 @@ function LoopRows({ loop, proposed }: LoopRowsProps) {
           {index === 0 && head}
           <td>{setting}</td>
           <td>{loop.settingUnits[setting]}</td>
-          <td class="number">{dialled(loop.present?.[setting])}</td>
-          <td class="number new">{dialled(proposed?.[setting])}</td>
-          <td>{changeInWords(loop, setting, proposed?.[setting])}</td>
+          <td class="number">{dialled(present?.[setting])}</td>
+          {sets.map(({ name, role, settings }) => [
+            <td key={name} class={`number new of-${role}`}>
+              {dialled(settings[tag]?.[setting])}
+            </td>,
+            <td key={`${name} change`}>
+              {changeInWords(loop, setting, settings[tag]?.[setting])}
+            </td>,
+          ])}
         </tr>
       ))}
     </tbody>
   );
 }
 
+/** A loop with what it measures and moves, and how its controller writes its settings. */
+function LoopName({ loop }: { readonly loop: LoopView }) {
+  return (
+    <>
+      {loop.tag}
+      <span class="under">
+        {loop.measurement} to {loop.drives}
+        <br />
+        {loop.controller}
+        {loop.averaging && ', averaging'}
+        {loop.task === 'keep' && ', kept as it is'}
+        {loop.task === 'manual' && ', in manual'}
+      </span>
+    </>
+  );
+}
+
 /** The new number over today's; of a proportional band the ratio of the gain that it stands for. */
-function changeInWords(loop: LoopView, setting: SettingName, after: number | undefined): string {
+export function changeInWords(
+  loop: LoopView,
+  setting: SettingName,
+  after: number | undefined,
+): string {
   const before = loop.present?.[setting];
   if (after === undefined) return noFigure;
   if (before === after) return 'unchanged';
-  if (before === undefined) return 'new';
+  if (before === undefined) return after === 0 ? 'off' : 'new';
   if (before === 0) return 'was off';
   if (after === 0) return 'off';
   if (setting === 'gain' && loop.gainIsBand) return `\u00d7${figure(before / after)} in gain`;

@@ -3,11 +3,12 @@ import type { Ink } from '../parts/ink.js';
 import type { PlotOption } from '../parts/plot.js';
 import { axisStyle, tooltipStyle } from '../parts/plot-style.js';
 import { figure } from '../text/figures.js';
+import type { SetRole } from './tuning-set.js';
 
 /** One line of a trend: equally long lists of times and values. */
 export interface TrendLine {
   readonly name: string;
-  readonly role: 'chosen' | 'today' | 'setpoint';
+  readonly role: SetRole | 'today' | 'setpoint';
   readonly time: readonly number[];
   readonly values: readonly number[];
 }
@@ -30,6 +31,8 @@ export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDr
   const marked = roundWithin(height, 4);
   const strokes = {
     chosen: { color: ink.chosen, width: 2, type: 'solid' as const },
+    second: { color: ink.weft, width: 2, type: [10, 3] },
+    third: { color: ink.rule, width: 2, type: [8, 3, 2, 3] },
     today: { color: ink.ink, width: 1.5, type: [5, 4] },
     setpoint: { color: ink.quiet, width: 1.5, type: [1, 3] },
   };
@@ -68,7 +71,7 @@ export function trendOption({ lines, span, least, unit, timeUnit, ink }: TrendDr
       symbol: 'none',
       silent: true,
       // The setpoint is below, then today's; the chosen lies on top.
-      z: line.role === 'chosen' ? 4 : line.role === 'today' ? 3 : 2,
+      z: line.role === 'setpoint' ? 2 : line.role === 'chosen' ? 4 : 3,
       ...(line.role === 'setpoint' ? { step: 'end' as const } : {}),
       lineStyle: strokes[line.role],
       itemStyle: { color: strokes[line.role].color },

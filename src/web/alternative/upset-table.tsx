@@ -3,9 +3,12 @@ import { ScrollBox } from '../parts/scroll-box.js';
 import { figure } from '../text/figures.js';
 import type { LoopView, UnitView } from '../text/unit-view.js';
 import { upsetInWords } from '../text/words.js';
+import type { TuningSet } from './tuning-set.js';
 
 interface UpsetTableProps {
-  readonly chosen: AlternativeDetail;
+  /** The documents of the sets, the chosen first. */
+  readonly details: readonly AlternativeDetail[];
+  readonly sets: readonly TuningSet[];
   readonly present: AlternativeDetail | null;
   readonly upset: Pick<Trend, 'kind' | 'tag'>;
   /** How long the upset is simulated. */
@@ -30,11 +33,13 @@ const columns: readonly Column[] = [
   { name: 'travel', words: 'Output travel', unit: ({ outputUnit }) => outputUnit },
 ];
 
-/** The responses in figures: what the upset does to each loop, today and with the alternative. */
-export function UpsetTable({ chosen, present, upset, horizon, unit }: UpsetTableProps) {
-  const after = lookUp(chosen, upset);
+/** The responses in figures: what the upset does to each loop, today and with each set. */
+export function UpsetTable(props: UpsetTableProps) {
+  const { details, sets, present, upset, horizon, unit } = props;
+  const after = details.map((detail) => lookUp(detail, upset));
+  const chosen = after[0];
   const before = present === null ? undefined : lookUp(present, upset);
-  if (after === undefined) return null;
+  if (chosen === undefined) return null;
   return (
     <ScrollBox label="The responses in figures">
       <table class="upset-table">
@@ -45,7 +50,7 @@ export function UpsetTable({ chosen, present, upset, horizon, unit }: UpsetTable
               Loop
             </th>
             {columns.map(({ name, words }) => (
-              <th key={name} scope="colgroup" colSpan={3}>
+              <th key={name} scope="colgroup" colSpan={2 + sets.length}>
                 {words}
               </th>
             ))}
@@ -55,9 +60,11 @@ export function UpsetTable({ chosen, present, upset, horizon, unit }: UpsetTable
               <th key={`${name} today`} scope="col" class="number">
                 today
               </th>,
-              <th key={`${name} chosen`} scope="col" class="number">
-                {chosen.id}
-              </th>,
+              ...sets.map((set) => (
+                <th key={`${name} ${set.key}`} scope="col" class={`number of-${set.role}`}>
+                  {set.name}
+                </th>
+              )),
               <th key={`${name} unit`} scope="col">
                 unit
               </th>,
@@ -67,16 +74,18 @@ export function UpsetTable({ chosen, present, upset, horizon, unit }: UpsetTable
         <tbody>
           {unit.loops.map(
             (loop) =>
-              after[loop.tag] !== undefined && (
+              chosen[loop.tag] !== undefined && (
                 <tr key={loop.tag}>
                   <th scope="row">{loop.tag}</th>
                   {columns.flatMap(({ name, unit: unitOf }) => [
                     <td key={`${name} today`} class="number">
                       {shownFigure(before?.[loop.tag], name, horizon)}
                     </td>,
-                    <td key={`${name} chosen`} class="number new">
-                      {shownFigure(after[loop.tag], name, horizon)}
-                    </td>,
+                    ...sets.map((set, k) => (
+                      <td key={`${name} ${set.key}`} class={`number new of-${set.role}`}>
+                        {shownFigure(after[k]?.[loop.tag], name, horizon)}
+                      </td>
+                    )),
                     <td key={`${name} unit`} class="unit">
                       {unitOf(loop, unit.timeUnit)}
                     </td>,

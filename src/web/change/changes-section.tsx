@@ -1,5 +1,6 @@
 import { useEffect, useRef, useState } from 'preact/hooks';
 import type { Act, ChangeRecord, JobRecord } from '../../contract/index.js';
+import type { FrontPoint } from '../front/front-points.js';
 import { Moment } from '../parts/moment.js';
 import { TroubleNotice } from '../parts/notices.js';
 import { Section } from '../parts/section.js';
@@ -13,12 +14,14 @@ import { SigningForm } from './signing-form.js';
 
 interface ChangesProps {
   readonly job: JobRecord;
-  /** The alternative chosen, which can be proposed. */
-  readonly alternative: string | null;
+  /** The tuning set chosen: an alternative and settings that were kept can be proposed. */
+  readonly chosen: FrontPoint | null;
 }
 
 /** What people decided about this job's alternatives, and the way to decide. */
-export function ChangesSection({ job, alternative }: ChangesProps) {
+export function ChangesSection({ job, chosen }: ChangesProps) {
+  const mayPropose = chosen !== null && (chosen.kind === 'alternative' || chosen.kind === 'own');
+  const alternative = mayPropose && chosen.scored.stable ? chosen.key : null;
   const { value, trouble, reload } = useResource(`changes ${job.id}`, (signal) =>
     fetchChanges(job.id, signal),
   );
@@ -69,6 +72,12 @@ export function ChangesSection({ job, alternative }: ChangesProps) {
             A proposal changes nothing in the plant. Another person approves or rejects it; once
             approved, its change sheet can be printed.
           </p>
+          {chosen?.isAccepted === false && (
+            <p class="broken">
+              {alternative} breaks limits on some of its models: as an alternative of the search it
+              would not stand.
+            </p>
+          )}
           <SigningForm
             key={alternative}
             label={`Propose ${alternative}`}

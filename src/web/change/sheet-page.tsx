@@ -29,7 +29,11 @@ export function SheetPage({ job, change }: SheetPageProps) {
           href={
             value === undefined
               ? links.job(job)
-              : links.alternative(value.change.job, value.change.alternative)
+              : links.look(value.change.job, {
+                  chosen: value.change.alternative,
+                  beside: [],
+                  upset: null,
+                })
           }
         >
           {value === undefined ? 'Job' : `${value.unitName}, ${value.change.alternative}`}

@@ -3,13 +3,16 @@ import { useInk } from '../parts/ink.js';
 import { Plot } from '../parts/plot.js';
 import { figure } from '../text/figures.js';
 import { frontOption } from './front-option.js';
-import { type FrontPoint, frontWindow } from './front-points.js';
-import { MarkKey } from './mark-key.js';
+import type { FrontPoint } from './front-points.js';
+import { frontWindow, type PlacedPoint, type PlaneAxes } from './front-window.js';
+import { MarkKey, type MarkKind } from './mark-key.js';
 
 interface FrontChartProps {
   readonly points: readonly FrontPoint[];
+  readonly axes: PlaneAxes;
   readonly chosen: string | null;
-  readonly reference: string;
+  readonly beside: readonly string[];
+  readonly dimmed: ReadonlySet<string>;
   readonly onChoose: (id: string) => void;
 }
 
@@ -29,14 +32,18 @@ const steps: Readonly<Record<string, number>> = {
 };
 
 /** The front in the plane: a click chooses, and so do the arrow keys, along the front. */
-export function FrontChart({ points, chosen, reference, onChoose }: FrontChartProps) {
+export function FrontChart(props: FrontChartProps) {
+  const { points, axes, chosen, beside, dimmed, onChoose } = props;
   const ink = useInk();
-  const window = useMemo(() => frontWindow(points), [points]);
+  const window = useMemo(() => frontWindow(points, axes), [points, axes]);
   const option = useMemo(
-    () => frontOption({ window, chosen, reference, ink }),
-    [window, chosen, reference, ink],
+    () => frontOption({ window, axes, chosen, beside, dimmed, ink }),
+    [window, axes, chosen, beside, dimmed, ink],
   );
-  const alternatives = points.filter(({ kind }) => kind === 'alternative');
+  // Who travels by keys passes over what a filter leaves out.
+  const alternatives = points.filter(
+    ({ kind, key }) => kind === 'alternative' && (!dimmed.has(key) || key === chosen),
+  );
   const at = alternatives.findIndex(({ key }) => key === chosen);
   const point = alternatives[at];
 
@@ -75,10 +82,10 @@ export function FrontChart({ points, chosen, reference, onChoose }: FrontChartPr
           size="plot-front"
           onClick={(click, toPixels) => {
             const near = window.inside
-              .filter(({ kind }) => kind === 'alternative')
-              .map(({ key, robustness, speed }) => {
-                const { x, y } = toPixels([robustness, speed]);
-                return { key, distance: Math.hypot(x - click.x, y - click.y) };
+              .filter(({ point: { kind } }) => kind !== 'present' && kind !== 'draft')
+              .map(({ point: { key }, x, y }) => {
+                const place = toPixels([x, y]);
+                return { key, distance: Math.hypot(place.x - click.x, place.y - click.y) };
               })
               .sort((a, b) => a.distance - b.distance)[0];
             if (near !== undefined && near.distance <= grasp) onChoose(near.key);
@@ -86,36 +93,53 @@ export function FrontChart({ points, chosen, reference, onChoose }: FrontChartPr
         />
       </div>
       <figcaption>
-        <MarkKey />
+        <MarkKey kinds={kindsOf(points)} />
         {alternatives.length > 0 && (
           <p>
-            Click a shuttle, or take the arrow keys along the front. The thread above a shuttle ends
-            at its speed on the worst model.
+            Click a mark, or take the arrow keys along the front.
+            {axes.y.worst !== undefined &&
+              ' The thread above a shuttle ends at its speed on the worst model.'}
           </p>
         )}
-        <Beyond points={window.beyond} words="outside the drawing" />
-        {window.unstable.length > 0 && (
-          <p>Not drawn, for unstable: {window.unstable.map(({ name }) => name).join(', ')}.</p>
-        )}
+        <Beyond points={window.beyond} axes={axes} />
+        <Undrawn points={window.unstable} why="for unstable" />
+        <Undrawn points={window.without} why="for without such a figure" />
       </figcaption>
     </figure>
   );
 }
 
+const kindsOf = (points: readonly FrontPoint[]): MarkKind[] => {
+  const kinds = new Set<MarkKind>(points.map(({ kind }) => kind));
+  return kinds.has('alternative') ? [...kinds, 'chosen'] : [...kinds];
+};
+
 function Beyond({
   points,
-  words,
+  axes,
 }: {
-  readonly points: readonly FrontPoint[];
-  readonly words: string;
+  readonly points: readonly PlacedPoint[];
+  readonly axes: PlaneAxes;
 }) {
   if (points.length === 0) return null;
   const list = points.map(
-    ({ name, speed, robustness }) => `${name} (speed ${figure(speed)}, Ms ${figure(robustness)})`,
+    ({ point: { name }, x, y }) =>
+      `${name} (${axes.y.words} ${figure(y)}, ${axes.x.words} ${figure(x)})`,
   );
+  return <p>Far outside the drawing: {list.join(', ')}.</p>;
+}
+
+function Undrawn({
+  points,
+  why,
+}: {
+  readonly points: readonly FrontPoint[];
+  readonly why: string;
+}) {
+  if (points.length === 0) return null;
   return (
     <p>
-      Far {words}: {list.join(', ')}.
+      Not drawn, {why}: {points.map(({ name }) => name).join(', ')}.
     </p>
   );
 }

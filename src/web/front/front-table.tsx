@@ -1,4 +1,5 @@
 import { ScrollBox } from '../parts/scroll-box.js';
+import { mostBeside } from '../route.js';
 import { figure, noFigure } from '../text/figures.js';
 import type { FrontPoint } from './front-points.js';
 import { Mark } from './mark-key.js';
@@ -6,13 +7,18 @@ import { Mark } from './mark-key.js';
 interface FrontTableProps {
   readonly points: readonly FrontPoint[];
   readonly chosen: string | null;
+  readonly beside: readonly string[];
+  /** Those that a filter leaves out. */
+  readonly dimmed: ReadonlySet<string>;
   readonly onChoose: (id: string) => void;
+  readonly onBeside: (id: string) => void;
 }
 
-/** The front in figures: every alternative to be chosen, today's settings and the published rules. */
-export function FrontTable({ points, chosen, onChoose }: FrontTableProps) {
-  const ofKind = (kind: FrontPoint['kind']): FrontPoint[] =>
-    points.filter((point) => point.kind === kind);
+/** The front in figures, to choose from: alternatives, settings kept, published rules; and today's. */
+export function FrontTable(props: FrontTableProps) {
+  const ofKind = (...kinds: FrontPoint['kind'][]): FrontPoint[] =>
+    props.points.filter((point) => kinds.includes(point.kind));
+  const groups = [ofKind('alternative'), ofKind('own'), ofKind('present', 'rule')];
   return (
     <ScrollBox label="Alternatives, today's settings and published rules in figures">
       <table class="front-table">
@@ -31,48 +37,79 @@ export function FrontTable({ points, chosen, onChoose }: FrontTableProps) {
             <th scope="col" class="number">
               Models within limits
             </th>
+            <th scope="col" class="beside">
+              Set beside
+            </th>
           </tr>
         </thead>
-        <tbody>
-          {ofKind('alternative').map((point) => {
-            const isChosen = point.key === chosen;
-            return (
-              <tr
-                key={point.key}
-                class={isChosen ? 'choice chosen' : 'choice'}
-                onClick={() => onChoose(point.key)}
-              >
-                <th scope="row">
-                  <label>
-                    <input
-                      type="radio"
-                      name="alternative"
-                      value={point.key}
-                      checked={isChosen}
-                      onChange={() => onChoose(point.key)}
-                    />
-                    <Mark kind={isChosen ? 'chosen' : 'alternative'} />
-                    {point.name}
-                  </label>
-                </th>
-                <Figures point={point} />
-              </tr>
-            );
-          })}
-        </tbody>
-        <tbody>
-          {[...ofKind('present'), ...ofKind('rule')].map((point) => (
-            <tr key={point.key}>
-              <th scope="row" title={point.source ?? undefined}>
-                <Mark kind={point.kind} />
-                {point.name}
-              </th>
-              <Figures point={point} />
-            </tr>
+        {groups
+          .filter((group) => group.length > 0)
+          .map((group) => (
+            <tbody key={group[0]?.kind}>
+              {group.map((point) => (
+                <Row key={point.key} point={point} {...props} />
+              ))}
+            </tbody>
           ))}
-        </tbody>
       </table>
     </ScrollBox>
+  );
+}
+
+interface RowProps extends FrontTableProps {
+  readonly point: FrontPoint;
+}
+
+function Row({ point, chosen, beside, dimmed, onChoose, onBeside }: RowProps) {
+  const { key, kind, name, source } = point;
+  const isChosen = key === chosen;
+  if (kind === 'present') {
+    return (
+      <tr>
+        <th scope="row">
+          <Mark kind={kind} />
+          {name}
+        </th>
+        <Figures point={point} />
+        <td class="quiet beside">always</td>
+      </tr>
+    );
+  }
+  const isBeside = beside.includes(key);
+  const classes = ['choice', isChosen ? 'chosen' : '', dimmed.has(key) ? 'dimmed' : ''];
+  return (
+    <tr
+      class={classes.filter((one) => one !== '').join(' ')}
+      onClick={({ target }) => {
+        // The box at the end of the row is no part of choosing it.
+        if (!(target instanceof Element) || target.closest('.beside') === null) onChoose(key);
+      }}
+    >
+      <th scope="row" title={source ?? undefined}>
+        <label>
+          <input
+            type="radio"
+            name="alternative"
+            value={key}
+            checked={isChosen}
+            onChange={() => onChoose(key)}
+          />
+          <Mark kind={kind} isChosen={isChosen} />
+          {name}
+        </label>
+        {kind === 'own' && <span class="under">{source}</span>}
+      </th>
+      <Figures point={point} />
+      <td class="beside">
+        <input
+          type="checkbox"
+          aria-label={`Set ${name} beside`}
+          checked={isBeside}
+          disabled={chosen === null || isChosen || (!isBeside && beside.length >= mostBeside)}
+          onChange={() => onBeside(key)}
+        />
+      </td>
+    </tr>
   );
 }
 
@@ -84,7 +121,9 @@ function Figures({ point }: { readonly point: FrontPoint }) {
       <td class="number">{figure(worstSpeed)}</td>
       <td class="number">{figure(robustness)}</td>
       <td class="number">
-        {verified === null ? noFigure : `${verified.held} of ${verified.models}`}
+        {verified === null
+          ? noFigure
+          : `${verified.models - verified.failures} of ${verified.models}`}
       </td>
     </>
   );

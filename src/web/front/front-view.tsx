@@ -1,166 +1,135 @@
-import { useMemo } from 'preact/hooks';
-import type { FrontDocument, JobRecord } from '../../contract/index.js';
+import { useMemo, useState } from 'preact/hooks';
+import type { JobRecord } from '../../contract/index.js';
 import { AlternativeView } from '../alternative/alternative-view.js';
+import { Travel } from '../alternative/travel.js';
+import { inRoles } from '../alternative/tuning-set.js';
 import { ChangesSection } from '../change/changes-section.js';
+import { OwnSection } from '../own/own-section.js';
 import { Empty, Loading, TroubleNotice } from '../parts/notices.js';
-import { Section } from '../parts/section.js';
-import { links, replaceAddress } from '../route.js';
-import { fetchDocument, fetchFront } from '../server/heddle.js';
+import { type Look, links, replaceAddress } from '../route.js';
+import { fetchDocument, fetchFront, fetchOwnSettings } from '../server/heddle.js';
 import { useResource } from '../server/resource.js';
-import { atLeastPercent, counted } from '../text/figures.js';
 import { viewUnit } from '../text/unit-view.js';
-import { limitInWords, referenceInWords } from '../text/words.js';
-import { FrontChart } from './front-chart.js';
 import { type FrontPoint, frontPoints } from './front-points.js';
-import { FrontTable } from './front-table.js';
+import { FrontSection } from './front-section.js';
 import { InfeasibleView } from './infeasible-view.js';
 
 interface FrontViewProps {
   readonly job: JobRecord;
-  readonly chosen: string | null;
+  readonly look: Look;
 }
 
-/** What a job that is done has found: the front, and one of its alternatives in full. */
-export function FrontView({ job, chosen }: FrontViewProps) {
+/** What a job that is done has found: the front, and some of its tuning sets in full. */
+export function FrontView({ job, look }: FrontViewProps) {
   const front = useResource(`front ${job.id}`, (signal) => fetchFront(job.id, signal));
   const document = useResource(`document ${job.id}`, (signal) => fetchDocument(job.id, signal));
+  const own = useResource(`own ${job.id}`, (signal) => fetchOwnSettings(job.id, signal));
+  const [draft, setDraft] = useState<FrontPoint | null>(null);
   const points = useMemo(
-    () => (front.value === undefined ? [] : frontPoints(front.value)),
-    [front.value],
+    () => (front.value === undefined ? [] : frontPoints(front.value, own.value?.own)),
+    [front.value, own.value],
   );
+  const drawn = useMemo(() => (draft === null ? points : [...points, draft]), [points, draft]);
   const unit = useMemo(
-    () => (document.value === undefined ? undefined : viewUnit(document.value)),
-    [document.value],
+    () =>
+      document.value === undefined || front.value === undefined
+        ? undefined
+        : viewUnit(document.value, front.value.assumedLimits),
+    [document.value, front.value],
   );
-  const choose = (id: string): void => replaceAddress(links.alternative(job.id, id));
 
   for (const part of [front, document]) {
     if (part.trouble !== null && part.value === undefined) {
       return <TroubleNotice trouble={part.trouble} onRetry={part.reload} />;
     }
   }
-  if (front.value === undefined || unit === undefined) return <Loading what="the front" />;
+  if (front.value === undefined || document.value === undefined || unit === undefined) {
+    return <Loading what="the front" />;
+  }
 
-  const alternative = front.value.alternatives.find(({ id }) => id === chosen);
+  const see = (change: Partial<Look>): void =>
+    replaceAddress(links.look(job.id, { ...look, ...change }));
+  const choose = (id: string): void =>
+    see({ chosen: id, beside: look.beside.filter((other) => other !== id) });
+  const setBeside = (id: string): void =>
+    see({
+      beside: look.beside.includes(id)
+        ? look.beside.filter((other) => other !== id)
+        : [...look.beside, id],
+    });
+
+  const choosable = points.filter(({ kind }) => kind !== 'present');
+  const chosen = choosable.find(({ key }) => key === look.chosen);
+  const beside = look.beside.flatMap((id) => choosable.filter(({ key }) => key === id));
+  const isComing = own.value === undefined && own.isLoading;
   return (
     <>
       {front.value.infeasible !== null && (
         <InfeasibleView infeasible={front.value.infeasible} unit={unit} />
       )}
-      <FrontSection front={front.value} points={points} chosen={chosen} onChoose={choose} />
-      {chosen !== null && alternative === undefined && (
+      <FrontSection
+        front={front.value}
+        unit={unit}
+        points={drawn}
+        chosen={look.chosen}
+        beside={look.beside}
+        onChoose={choose}
+        onBeside={setBeside}
+      />
+      {own.trouble !== null && <TroubleNotice trouble={own.trouble} onRetry={own.reload} />}
+      <OwnSection
+        job={job.id}
+        document={document.value}
+        front={front.value}
+        unit={unit}
+        points={points}
+        chosen={look.chosen}
+        onPoint={setDraft}
+        onKept={({ id }) => {
+          own.reload();
+          choose(id);
+        }}
+      />
+      {look.chosen !== null && chosen === undefined && !isComing && (
         <div class="notice notice-bad" role="alert">
-          <p class="notice-title">There is no alternative {chosen} in this front</p>
-          <p>{alternativesInWords(points)}</p>
+          <p class="notice-title">There is no tuning {look.chosen} in this job</p>
+          <p>{namesInWords(choosable)}</p>
         </div>
       )}
-      {chosen === null && front.value.alternatives.length > 0 && (
+      {look.chosen === null && choosable.length > 0 && (
         <Empty>
           <p>
             Choose an alternative in the drawing or in the table: its settings, figures and
-            responses are then set against today's here.
+            responses are then set against today's here. Up to two more can be set beside it.
           </p>
         </Empty>
       )}
-      {alternative !== undefined && (
-        <AlternativeView
-          job={job}
-          front={front.value}
-          unit={unit}
-          alternative={alternative}
-          onChoose={choose}
-        />
+      {chosen !== undefined && (
+        <>
+          <Travel
+            points={points}
+            chosen={chosen}
+            beside={beside}
+            onChoose={choose}
+            onBeside={setBeside}
+          />
+          <AlternativeView
+            job={job}
+            front={front.value}
+            unit={unit}
+            chosen={chosen}
+            sets={inRoles([chosen, ...beside])}
+            upset={look.upset}
+            onUpset={(upset) => see({ upset })}
+          />
+        </>
       )}
-      <ChangesSection job={job} alternative={alternative?.id ?? null} />
+      <ChangesSection job={job} chosen={chosen ?? null} />
     </>
   );
 }
 
-function alternativesInWords(points: readonly FrontPoint[]): string {
-  const names = points.filter(({ kind }) => kind === 'alternative').map(({ name }) => name);
-  if (names.length === 0) return 'It has none: no tuning met the limits.';
-  return `It has ${names[0]} to ${names.at(-1)}.`;
-}
-
-interface FrontSectionProps {
-  readonly front: FrontDocument;
-  readonly points: readonly FrontPoint[];
-  readonly chosen: string | null;
-  readonly onChoose: (id: string) => void;
-}
-
-function FrontSection({ front, points, chosen, onChoose }: FrontSectionProps) {
-  const reference = referenceInWords(front.reference);
-  return (
-    <Section title="Front" note={<FrontNote front={front} reference={reference} />}>
-      <div class="front">
-        <div>
-          <FrontChart points={points} chosen={chosen} reference={reference} onChoose={onChoose} />
-          <Background front={front} />
-        </div>
-        <FrontTable points={points} chosen={chosen} onChoose={onChoose} />
-      </div>
-    </Section>
-  );
-}
-
-function FrontNote({
-  front,
-  reference,
-}: {
-  readonly front: FrontDocument;
-  readonly reference: string;
-}) {
-  const found = front.alternatives.length;
-  return (
-    <>
-      <p>
-        {found === 0
-          ? 'No alternative: today and the published rules by the same yardstick.'
-          : `${counted(found, 'alternative')}; none is better than another in both.`}
-      </p>
-      <p>A speed of 1.00 is as fast as {reference}.</p>
-    </>
-  );
-}
-
-/** What the figures rest on. */
-function Background({ front }: { readonly front: FrontDocument }) {
-  const verified = front.alternatives.map((alternative) => alternative.verified);
-  const least = Math.min(...verified.map(({ confidence }) => confidence));
-  const models = Math.min(...verified.map((one) => one.models));
-  return (
-    <details class="background">
-      <summary>What these figures rest on</summary>
-      <ul>
-        {verified.length > 0 && models > 1 && (
-          <li>
-            Each alternative was judged on models that the search never saw; with 95 % confidence at
-            least {atLeastPercent(least)} of all models like these are within every limit.
-          </li>
-        )}
-        <li>
-          Every upset was simulated for {front.horizon} {front.timeUnit} in steps of {front.step}{' '}
-          {front.timeUnit}.
-        </li>
-        {front.binding.map(({ limit, loop, alternatives }) => (
-          <li key={`${loop ?? ''} ${limit}`}>
-            {alternatives} of {counted(front.alternatives.length, 'alternative')} lie on a limit:{' '}
-            {limitInWords(limit)} of {loop ?? 'the unit'}.
-          </li>
-        ))}
-        {front.assumed.map((words) => (
-          <li key={words}>Assumed: {words}</li>
-        ))}
-        {front.baselines.map(({ method, source }) => (
-          <li key={method}>
-            {method}: {source}.
-          </li>
-        ))}
-        <li>
-          Calculation <code>{front.compute.slice(0, 12)}</code>, seed {front.seed}.
-        </li>
-      </ul>
-    </details>
-  );
+function namesInWords(points: readonly FrontPoint[]): string {
+  if (points.length === 0) return 'It has none: no tuning met the limits.';
+  return `It has ${points.map(({ key, name }) => (key === name ? key : `${key} (${name})`)).join(', ')}.`;
 }

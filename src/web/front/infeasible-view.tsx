@@ -52,7 +52,10 @@ export function InfeasibleView({ infeasible, unit }: InfeasibleProps) {
       {nearest !== undefined && (
         <>
           <h3>The nearest tuning, which breaks a limit</h3>
-          <SettingsTable unit={unit} proposed={nearest.settings} name="nearest" />
+          <SettingsTable
+            unit={unit}
+            sets={[{ name: 'nearest', role: 'chosen', settings: nearest.settings }]}
+          />
         </>
       )}
     </Section>

@@ -1,9 +1,10 @@
 import type { JobRecord } from '../../contract/index.js';
+import { RunAgain } from '../again/run-again.js';
 import { FrontView } from '../front/front-view.js';
 import { Moment } from '../parts/moment.js';
 import { Loading, TroubleNotice } from '../parts/notices.js';
 import { StateMark } from '../parts/state-mark.js';
-import { links } from '../route.js';
+import { type Look, links } from '../route.js';
 import { addresses } from '../server/heddle.js';
 import { count } from '../text/figures.js';
 import { duration, secondsBetween } from '../text/moments.js';
@@ -12,12 +13,12 @@ import { JobProgressView } from './job-progress.js';
 
 interface JobPageProps {
   readonly id: string;
-  /** The alternative chosen, as the address says. */
-  readonly alternative: string | null;
+  /** What of it is looked at, as the address says. */
+  readonly look: Look;
 }
 
 /** One job: how it stands, and what it found once it is done. */
-export function JobPage({ id, alternative }: JobPageProps) {
+export function JobPage({ id, look }: JobPageProps) {
   const { job, trouble, isConnected, reload, take } = useFollowedJob(id);
   return (
     <>
@@ -40,7 +41,7 @@ export function JobPage({ id, alternative }: JobPageProps) {
               old; the job goes on without this page.
             </p>
           )}
-          <JobBody job={job} alternative={alternative} onChange={take} />
+          <JobBody job={job} look={look} onChange={take} />
         </>
       )}
     </>
@@ -56,6 +57,14 @@ function JobHead({ job }: { readonly job: JobRecord }) {
           <dt>Job</dt>
           <dd>{job.id}</dd>
         </div>
+        {job.parent !== null && (
+          <div>
+            <dt>Made from</dt>
+            <dd>
+              <a href={links.job(job.parent)}>{job.parent}</a>
+            </dd>
+          </div>
+        )}
         <div>
           <dt>State</dt>
           <dd>
@@ -111,11 +120,11 @@ function spent({ cost, startedAt, endedAt }: JobRecord): string {
 
 interface JobBodyProps {
   readonly job: JobRecord;
-  readonly alternative: string | null;
+  readonly look: Look;
   readonly onChange: (job: JobRecord) => void;
 }
 
-function JobBody({ job, alternative, onChange }: JobBodyProps) {
+function JobBody({ job, look, onChange }: JobBodyProps) {
   switch (job.state) {
     case 'accepted':
     case 'running':
@@ -151,7 +160,12 @@ function JobBody({ job, alternative, onChange }: JobBodyProps) {
         </div>
       );
     case 'done':
-      return <FrontView job={job} chosen={alternative} />;
+      return (
+        <>
+          <FrontView job={job} look={look} />
+          <RunAgain job={job.id} />
+        </>
+      );
   }
 }
 

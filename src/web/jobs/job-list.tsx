@@ -101,7 +101,14 @@ function JobRow({ job }: { readonly job: JobRecord }) {
     <tr>
       <th scope="row">
         <a href={links.job(job.id)}>{job.unitName}</a>
-        <span class="under">{job.id}</span>
+        <span class="under">
+          {job.id}
+          {job.parent !== null && (
+            <>
+              , made from <a href={links.job(job.parent)}>{job.parent}</a>
+            </>
+          )}
+        </span>
       </th>
       <td>
         <StateMark state={job.state} />

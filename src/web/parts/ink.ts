@@ -1,6 +1,6 @@
 import { useEffect, useState } from 'preact/hooks';
 
-const names = ['ink', 'quiet', 'line', 'grid', 'paper', 'weft', 'chosen', 'rule'] as const;
+const names = ['ink', 'quiet', 'line', 'grid', 'paper', 'weft', 'chosen', 'rule', 'own'] as const;
 
 /** Colours that charts are drawn in: those of the style sheet, light or dark as the reader has it. */
 export type Ink = Readonly<Record<(typeof names)[number], string>> & {

@@ -5,10 +5,15 @@ import {
   type Cancellation,
   type ChangeList,
   type ChangeRecord,
+  type EvaluationDocument,
   type FrontDocument,
   type JobDocument,
+  type JobInput,
   type JobList,
   type JobRecord,
+  type Keeping,
+  type OwnSettings,
+  type OwnSettingsList,
   type Proposal,
   readJob,
   type SheetDocument,
@@ -35,10 +40,18 @@ export async function fetchDocument(id: string, signal: AbortSignal): Promise<An
   return read.ok ? answered(read.job) : refused(unreadDocument(read));
 }
 
+/** The job document as it was written, to make another of. */
+export async function fetchWritten(id: string, signal: AbortSignal): Promise<Answer<JobInput>> {
+  const answer = await ask<JobInput>(place('jobs', id, 'document'), { signal });
+  if (!answer.ok) return answer;
+  const read = readJob(JSON.stringify(answer.value));
+  return read.ok ? answer : refused(unreadDocument(read));
+}
+
 export const fetchFront = async (id: string, signal: AbortSignal): Promise<Answer<FrontDocument>> =>
   inFormat<FrontDocument>('heddle-front/1', await ask(place('jobs', id, 'front'), { signal }));
 
-/** @param alternative  an id of the front, or `present` for today's settings */
+/** @param alternative  an id of the front, of kept settings, or `present` for today's settings */
 export const fetchAlternative = async (
   id: string,
   alternative: string,
@@ -50,11 +63,42 @@ export const fetchAlternative = async (
   );
 
 /**
+ * Scores settings for a job on the models that the search used: quick, for trying.
+ * @param settings  by loop tag, as JSON
+ */
+export const trySettings = async (
+  job: string,
+  settings: string,
+): Promise<Answer<EvaluationDocument>> =>
+  inFormat<EvaluationDocument>(
+    'heddle-evaluation/1',
+    await ask(`${place('jobs', job, 'evaluate')}?models=search`, {
+      method: 'POST',
+      body: settings,
+      headers: { 'content-type': 'application/json' },
+    }),
+  );
+
+/** Judges settings on all models, as an alternative is, and keeps them under a name. */
+export const keepSettings = (job: string, keeping: Keeping): Promise<Answer<OwnSettings>> =>
+  send(place('jobs', job, 'own'), keeping);
+
+export const fetchOwnSettings = (
+  job: string,
+  signal: AbortSignal,
+): Promise<Answer<OwnSettingsList>> => ask(place('jobs', job, 'own'), { signal });
+
+/**
  * Hands in a job document, its bytes as they are.
  * @param key  the same for every attempt at handing in the same document once
+ * @param parent  the job that this one was made from, with changes
  */
-export const handIn = (document: string | Blob, key: string): Promise<Answer<AcceptedJob>> =>
-  ask('jobs', {
+export const handIn = (
+  document: string | Blob,
+  key: string,
+  parent: string | null = null,
+): Promise<Answer<AcceptedJob>> =>
+  ask(parent === null ? 'jobs' : `jobs?parent=${encodeURIComponent(parent)}`, {
     method: 'POST',
     body: document,
     headers: { 'content-type': 'application/json', 'idempotency-key': key },

@@ -1,4 +1,5 @@
 import {
+  type AssumedLimit,
   controllerInWords,
   type JobDocument,
   type LoopDocument,
@@ -6,12 +7,19 @@ import {
   limitBound,
   loopUnits,
   type SettingName,
+  settingNames,
   settingUnits,
   type TimeUnit,
+  type UnitLimitsDocument,
 } from '../../contract/index.js';
 
 /** What the page says of a limit: its bound, and whether it concerns the nominal unit alone. */
-type LimitView = ReturnType<typeof limitBound>;
+export interface LimitView {
+  readonly bound: number;
+  readonly nominal: boolean;
+  /** The job states it; one that it does not was assumed. */
+  readonly isStated: boolean;
+}
 
 /** One loop of a job in the words and units of its own controller. */
 export interface LoopView {
@@ -20,6 +28,11 @@ export interface LoopView {
   readonly drives: string;
   readonly task: LoopDocument['task'];
   readonly averaging: boolean;
+  /** Settings that its controller has, and the smallest step that each can be dialled in. */
+  readonly dials: readonly {
+    readonly setting: SettingName;
+    readonly step: number | null;
+  }[];
   /** Form, terms and units of the controller in words. */
   readonly controller: string;
   readonly pvUnit: string;
@@ -42,16 +55,23 @@ export interface LoopView {
 export interface UnitView {
   readonly timeUnit: TimeUnit;
   readonly loops: readonly LoopView[];
+  readonly unitLimits: UnitLimitsDocument;
   readonly disturbances: ReadonlyMap<string, { readonly unit: string; readonly step: number }>;
 }
 
-export const viewUnit = (job: JobDocument): UnitView => ({
+/** @param assumed  limits that hold although the job does not state them, as the front says */
+export const viewUnit = (job: JobDocument, assumed: readonly AssumedLimit[] = []): UnitView => ({
   timeUnit: job.unit.timeUnit,
-  loops: job.loops.map((loop) => viewLoop(job, loop)),
+  loops: job.loops.map((loop) => viewLoop(job, loop, assumed)),
+  unitLimits: job.unitLimits,
   disturbances: new Map(job.unit.disturbances.map(({ tag, ...rest }) => [tag, rest])),
 });
 
-function viewLoop(job: JobDocument, loop: LoopDocument): LoopView {
+function viewLoop(
+  job: JobDocument,
+  loop: LoopDocument,
+  assumed: readonly AssumedLimit[],
+): LoopView {
   const { drives, controller, action } = loop;
   const units = loopUnits(job, loop);
   const outputSpan = span(outputOf(job, loop));
@@ -62,6 +82,7 @@ function viewLoop(job: JobDocument, loop: LoopDocument): LoopView {
     drives: typeof drives === 'string' ? drives : `setpoint of ${drives.loop}`,
     task: loop.task,
     averaging: loop.goal === 'averaging',
+    dials: dialsOf(loop),
     controller: `${controllerInWords(controller)}${acting}`,
     pvUnit: units.pv,
     outputUnit: units.output,
@@ -71,7 +92,7 @@ function viewLoop(job: JobDocument, loop: LoopDocument): LoopView {
     tolerance: loop.tolerance ?? 0.01 * span(measurementOf(job, loop.measurement)),
     outputSpan,
     loadStep: loop.loadStep ?? 0.05 * outputSpan,
-    limits: viewLimits(loop),
+    limits: viewLimits(loop, assumed),
   };
 }
 
@@ -93,10 +114,31 @@ function outputOf(job: JobDocument, { drives }: LoopDocument): Ranged | undefine
 const span = (ranged: Ranged | undefined): number =>
   ranged === undefined ? 1 : ranged.high - ranged.low;
 
-function viewLimits({ limits }: LoopDocument): LoopView['limits'] {
+/** Every controller has a gain and can filter its PV. */
+function dialsOf({ controller: { terms }, settingStep }: LoopDocument): LoopView['dials'] {
+  const has: Readonly<Record<SettingName, boolean>> = {
+    gain: true,
+    integral: terms.includes('I'),
+    derivative: terms.includes('D'),
+    filter: true,
+  };
+  return settingNames
+    .filter((setting) => has[setting])
+    .map((setting) => ({ setting, step: settingStep[setting] ?? null }));
+}
+
+function viewLimits(
+  { tag, limits }: LoopDocument,
+  assumed: readonly AssumedLimit[],
+): LoopView['limits'] {
   const views: Partial<Record<LoopLimitName, LimitView>> = {};
+  for (const { loop, limit, bound } of assumed) {
+    if (loop === tag) views[limit] = { bound, nominal: false, isStated: false };
+  }
   for (const [name, limit] of Object.entries(limits)) {
-    if (limit !== undefined) views[name as LoopLimitName] = limitBound(limit);
+    if (limit !== undefined) {
+      views[name as LoopLimitName] = { ...limitBound(limit), isStated: true };
+    }
   }
   return views;
 }
