@@ -121,7 +121,8 @@ export function changeInWords(
   setting: SettingName,
   after: number | undefined,
 ): string {
-  const before = loop.present?.[setting];
+  // A derivative or a filter that a controller does not state is off.
+  const before = loop.present === null ? undefined : (loop.present[setting] ?? 0);
   if (after === undefined) return noFigure;
   if (before === after) return 'unchanged';
   if (before === undefined) return after === 0 ? 'off' : 'new';

@@ -1,7 +1,7 @@
 import { pathText, type SettingsDocument } from '../../contract/index.js';
 import { changeInWords } from '../alternative/settings-table.js';
 import { ScrollBox } from '../parts/scroll-box.js';
-import { dialled } from '../text/figures.js';
+import { dialled, noFigure } from '../text/figures.js';
 import type { LoopView, UnitView } from '../text/unit-view.js';
 import { type Draft, type FieldName, numberIn, tried } from './draft.js';
 import { NumberField } from './number-field.js';
@@ -69,6 +69,7 @@ function LoopFields({ loop, place, draft, base, faults, onText }: LoopFieldsProp
         const before = base.settings[tag]?.[setting] ?? 0;
         const value = numberIn(text);
         const unit = settingUnits[setting];
+        const fault = faults.get(pathText([tag, setting])) ?? null;
         return (
           <tr key={setting}>
             {index === 0 && (
@@ -91,11 +92,13 @@ function LoopFields({ loop, place, draft, base, faults, onText }: LoopFieldsProp
                 unit={unit}
                 dialStep={step}
                 mayBeZero={setting === 'derivative' || setting === 'filter'}
-                fault={faults.get(pathText([tag, setting])) ?? null}
+                fault={fault}
                 onText={(next) => onText({ loop: tag, setting }, next)}
               />
             </td>
-            <td>{changeInWords(loop, setting, value ?? undefined)}</td>
+            <td>
+              {fault === null ? changeInWords(loop, setting, value ?? undefined) : noFigure}
+            </td>
           </tr>
         );
       })}

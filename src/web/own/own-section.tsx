@@ -171,8 +171,10 @@ function stateInWords(
   isTouched: boolean,
   base: string,
 ): string {
-  if (faults > 0)
-    return 'Not scored: see the marked field. What stands above is of what stood before.';
+  if (faults > 0) {
+    const old = point === null ? '' : ' What stands above is of the numbers before.';
+    return `Not scored: see the marked field.${old}`;
+  }
   if (!isCurrent) return 'Scoring ...';
   if (point === null) return '';
   const untouched = isTouched ? '' : ` These are the settings of ${base}, unchanged.`;
