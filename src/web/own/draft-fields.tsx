@@ -96,9 +96,7 @@ function LoopFields({ loop, place, draft, base, faults, onText }: LoopFieldsProp
                 onText={(next) => onText({ loop: tag, setting }, next)}
               />
             </td>
-            <td>
-              {fault === null ? changeInWords(loop, setting, value ?? undefined) : noFigure}
-            </td>
+            <td>{fault === null ? changeInWords(loop, setting, value ?? undefined) : noFigure}</td>
           </tr>
         );
       })}
