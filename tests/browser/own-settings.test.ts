@@ -45,7 +45,7 @@ describe('settings of one’s own', () => {
     await scored(page);
     await page.getByText('These are the settings of A02, unchanged.').waitFor();
     await field(page, 'TC-1 gain').fill('0.9');
-    await page.getByText('unchanged').waitFor({ state: 'detached' });
+    await page.getByText('These are the settings of A02').waitFor({ state: 'detached' });
     await scored(page);
     expect(trials().at(-1)).toMatchObject({ 'TC-1': { gain: 0.9 } });
     // Its mark, in the colour of no other, is on both planes.
