@@ -91,7 +91,9 @@ export function drawUnequal(random: Random, scans: readonly number[], brisk = 1)
     // In a cascade the slow loop, the second, drives the first.
     const kinds: Kind[] = cascade && m === 0 ? ['lag'] : ['lag', 'lag', 'integrator', 'unstable'];
     const own = drawLag(random, pick(random, kinds), scan);
-    const deadTime = pick(random, [0, 0, scan, 3 * scan * random.uniform()]);
+    // A long dead time in many steps makes more states than eigenvalues are to be had of.
+    const most = scan > 12 ? 0.5 : 3;
+    const deadTime = pick(random, [0, 0, Math.min(1, most) * scan, most * scan * random.uniform()]);
     const source = cascade ? 0 : m;
     lags.push({ source, measurement: m, ...own, deadTime });
     const wait = deadTime + scan;
