@@ -23,6 +23,8 @@ const ofService: readonly ProblemCode[] = [
   'FRONT_ABSENT',
   'JOB_ENDED',
   'CHANGE_DECIDED',
+  'NOT_PROPOSABLE',
+  'SAME_PERSON',
   'IDEMPOTENCY_KEY_REUSED',
   'CALCULATION_REFUSED',
   'BUSY',

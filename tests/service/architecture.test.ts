@@ -65,7 +65,8 @@ describe('the check of the layers', () => {
     const { answer } = await run(
       process.execPath,
       [cruise, '.', '--config', '.dependency-cruiser.cjs', '--output-type', 'json'],
-      { folder: scratch.folder },
+      // The configuration asks for the parser, which lies with the other packages of the checkout.
+      { folder: scratch.folder, environment: { NODE_PATH: join(checkout, 'node_modules') } },
     );
     const { summary } = JSON.parse(answer) as { summary: { violations: readonly Violation[] } };
     found = summary.violations.map(({ rule, from, to }) => `${rule.name}: ${from} -> ${to}`);
