@@ -67,7 +67,7 @@ export function moveInWords(
   old: number | null,
   proposed: number,
 ): string {
-  if (old === null) return 'not set today';
+  if (old === null) return 'in manual today';
   if (old === proposed) return 'unchanged';
   if (setting === 'filter' || setting === 'derivative' || controller.integralIn !== 'time') {
     if (old === 0) return 'switched on';
@@ -79,7 +79,7 @@ export function moveInWords(
   const ratio = Math.abs(inverse ? old / proposed : proposed / old);
   if (!Number.isFinite(ratio)) return 'switched';
   const words = setting === 'filter' ? ['longer', 'shorter'] : ['stronger', 'weaker'];
-  return `${words[ratio > 1 ? 0 : 1]}, ${Number(ratio.toPrecision(2))} x`;
+  return `${words[ratio > 1 ? 0 : 1]}, ${Number(ratio.toPrecision(3))} x`;
 }
 
 const gainWords = {

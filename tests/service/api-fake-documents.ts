@@ -196,7 +196,7 @@ export function sheetOf(change: ChangeRecord, words: Partial<SheetDocument> = {}
             unit: 'min',
             old: null,
             new: 1e-7,
-            effect: 'not set today',
+            effect: 'in manual today',
           },
         ],
         changes: true,

@@ -52,8 +52,18 @@ describe('a sheet in rows', () => {
   it('has each setting digit by digit, negative numbers as numbers, and nothing where there is none', () => {
     const settings = rowsOf().filter(([kind]) => kind === 'setting');
     expect(settings).toEqual([
-      ['setting', 'TC-101', 'gain', 'engineering', '-1.2', '-1.4000000000000001', '', '', ''],
-      ['setting', 'TC-101', 'integral', 'min', '', '1e-7', '', '', ''],
+      [
+        'setting',
+        'TC-101',
+        'gain',
+        'engineering',
+        '-1.2',
+        '-1.4000000000000001',
+        '',
+        '',
+        'stronger, 1.2 x',
+      ],
+      ['setting', 'TC-101', 'integral time', 'min', '', '1e-7', '', '', 'in manual today'],
     ]);
     for (const [, , , , , next] of settings) expect(String(Number(next))).toBe(next);
   });

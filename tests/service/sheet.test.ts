@@ -90,6 +90,16 @@ describe('the settings on a change sheet', () => {
     });
   });
 
+  it('are called as they are dialled, with what a move does to the action', () => {
+    const wider = varied(front(), (loose) => {
+      loose.alternatives[1].settings['PC-130'] = { gain: -240, integral: 2 };
+    });
+    const band = settingOf(sheetOf({ front: wider }), 'PC-130', 'gain');
+    expect(band).toMatchObject({ name: 'proportional band', effect: 'weaker, 0.5 x' });
+    const integral = settingOf(sheetOf(), 'LC-120', 'integral');
+    expect(integral).toMatchObject({ name: 'integral rate', effect: 'unchanged' });
+  });
+
   it('come in an order that changes an inner loop before the loop that drives it', () => {
     expect(sheetOf().loops.map(({ tag }) => tag)).toEqual(['FC-111', 'TC-110', 'LC-120', 'PC-130']);
     expect(loopOf(sheetOf(), 'TC-110').drives).toBe('setpoint of FC-111');
@@ -127,7 +137,9 @@ describe('the settings on a change sheet', () => {
     const fine = varied(front(), (loose) => {
       loose.alternatives[1].settings['TC-110'].integral = 712.345;
     });
-    expect(sheetPage(sheetOf({ front: fine }), plainPaper)).toMatch(/720 +712\.345 +x0\.99/);
+    expect(sheetPage(sheetOf({ front: fine }), plainPaper)).toMatch(
+      /720 +712\.345 +stronger, 1\.01 x/,
+    );
   });
 
   it('name no setting of a loop that stays in manual', () => {

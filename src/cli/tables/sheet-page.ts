@@ -81,10 +81,9 @@ function faintProse(text: string, paper: Paper): string {
 
 function loopPart(loop: SheetLoop, place: number, sheet: SheetDocument, paper: Paper): string {
   const { paint } = paper;
-  const action = loop.action === null ? '' : `, ${loop.action} action`;
   const parts = [
     `  ${paint.strong(`${place}  ${loop.tag}`)}  ${loop.measurement} to ${loop.drives}`,
-    faintProse(`${loop.controller}${action}`, paper),
+    faintProse(loop.controller, paper),
     settingsTable(loop.settings, paper),
     expectationsTable(loop.expectations, sheet, paper),
     loop.notes.length === 0 ? '' : remarks(loop.notes, paper),
