@@ -32,6 +32,7 @@ export function SheetLoop({ loop, place }: SheetLoopProps) {
               <th scope="col" class="number">
                 Dial
               </th>
+              <th scope="col">Effect</th>
               <th scope="col" class="pen">
                 Found as stated
               </th>
@@ -46,10 +47,8 @@ export function SheetLoop({ loop, place }: SheetLoopProps) {
                 <th scope="row">{row.name}</th>
                 <td>{row.unit}</td>
                 <td class="number">{dialled(row.old)}</td>
-                <td class="number new">
-                  {dialled(row.new)}
-                  <span class="under">{row.effect}</span>
-                </td>
+                <td class="number new">{dialled(row.new)}</td>
+                <td>{row.effect}</td>
                 <td class="pen" />
                 <td class="pen" />
               </tr>
