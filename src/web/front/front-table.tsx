@@ -25,6 +25,9 @@ export function FrontTable(props: FrontTableProps) {
         <thead>
           <tr>
             <th scope="col">Tuning</th>
+            <th scope="col" class="beside">
+              Beside
+            </th>
             <th scope="col" class="number">
               Speed
             </th>
@@ -36,9 +39,6 @@ export function FrontTable(props: FrontTableProps) {
             </th>
             <th scope="col" class="number">
               Models within limits
-            </th>
-            <th scope="col" class="beside">
-              Set beside
             </th>
           </tr>
         </thead>
@@ -70,8 +70,8 @@ function Row({ point, chosen, beside, dimmed, onChoose, onBeside }: RowProps) {
           <Mark kind={kind} />
           {name}
         </th>
-        <Figures point={point} />
         <td class="quiet beside">always</td>
+        <Figures point={point} />
       </tr>
     );
   }
@@ -81,7 +81,7 @@ function Row({ point, chosen, beside, dimmed, onChoose, onBeside }: RowProps) {
     <tr
       class={classes.filter((one) => one !== '').join(' ')}
       onClick={({ target }) => {
-        // The box at the end of the row is no part of choosing it.
+        // The box beside the name is no part of choosing it.
         if (!(target instanceof Element) || target.closest('.beside') === null) onChoose(key);
       }}
     >
@@ -99,7 +99,6 @@ function Row({ point, chosen, beside, dimmed, onChoose, onBeside }: RowProps) {
         </label>
         {kind === 'own' && <span class="under">{source}</span>}
       </th>
-      <Figures point={point} />
       <td class="beside">
         <input
           type="checkbox"
@@ -109,6 +108,7 @@ function Row({ point, chosen, beside, dimmed, onChoose, onBeside }: RowProps) {
           onChange={() => onBeside(key)}
         />
       </td>
+      <Figures point={point} />
     </tr>
   );
 }
