@@ -18,7 +18,6 @@ export function SheetLoop({ loop, place }: SheetLoopProps) {
       </h3>
       <p>
         {loop.measurement} to {loop.drives}; {loop.controller}
-        {loop.action !== null && `, ${loop.action} acting`}
       </p>
       <ScrollBox label={`What to dial at ${loop.tag}`}>
         <table class="dial">
