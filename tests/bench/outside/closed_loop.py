@@ -50,6 +50,8 @@ class Scans:
         self.out = np.zeros((len(unit.loops), runs))
         self.stuck = np.zeros((len(unit.loops), runs))
         """The direction in which more output is of no use."""
+        self.delivered = np.zeros((len(unit.loops), runs))
+        """The PV of the last scan."""
 
     def scan(self, i: int, setpoint: Array, measured: Array, active: Array) -> None:
         c, loop, memory = self.controllers[i], self.unit.loops[i], self.memory[i]
@@ -64,7 +66,11 @@ class Scans:
         blocked = np.zeros_like(measured)
         if loop.inner >= 0:
             blocked = self.stuck[loop.inner] * np.sign(self.controllers[loop.inner].proportional)
-            increment = np.where(increment * blocked > 0, 0.0, increment)
+            # External reset: what is too much falls back, in the integral time, to where the output at
+            # no error is what the inner loop delivers.
+            excess = self.delivered[loop.inner] - c.proportional * (s.weight - 1) * setpoint - memory[4]
+            back = min(1.0, c.integral / c.proportional) * np.where(excess * blocked < 0, excess, 0.0)
+            increment = np.where(increment * blocked > 0, back, increment)
         integral = memory[4] + increment
         out = proportional + integral + derivative
         if self.limited:
@@ -77,6 +83,7 @@ class Scans:
                 integral = np.where(out != wanted, out - proportional - derivative, integral)
         self.memory[i] = np.where(active, np.stack([first, second, derivative, into, integral]), memory)
         self.out[i] = np.where(active, out, self.out[i])
+        self.delivered[i] = np.where(active, measured, self.delivered[i])
 
 
 def driven_paths(unit: Unit, automatic: list[bool]) -> list:
