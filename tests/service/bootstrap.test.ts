@@ -173,7 +173,7 @@ describe('preparing a checkout', () => {
   it('names the commands there are', async () => {
     const ending = await prepare(['dance']);
     expect(ending.output).toBe(
-      "heddle: no command 'dance'; there are build, lint, start, demo, test, test:long, bench:serving, bench:outside, bench:kernel, bench:step\n",
+      "heddle: no command 'dance'; there are build, lint, start, demo, test, test:long, bench:serving, bench:recovery, bench:outside, bench:kernel, bench:step\n",
     );
     expect(ending.code).toBe(2);
   });
