@@ -29,17 +29,14 @@ export async function run(): Promise<void> {
     return Installation.start(size, { lock, databaseUrl });
   };
   try {
-    const killed: Row[] = [];
-    const cancelled: Row[] = [];
     for (const size of sizes) {
+      console.table([await cancel(await start(size, 10), size)]);
       for (const lock of [1, 10]) {
-        killed.push(await killServer(await start(size, lock), size, lock));
-        if (size !== 'embedded') killed.push(await killWorker(await start(size, lock), size, lock));
+        console.table([await killServer(await start(size, lock), size, lock)]);
+        if (size === 'embedded') break;
+        console.table([await killWorker(await start(size, lock), size, lock)]);
       }
-      cancelled.push(await cancel(await start(size, 10), size));
     }
-    console.table(killed);
-    console.table(cancelled);
   } finally {
     await postgres.stop();
   }
