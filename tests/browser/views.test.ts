@@ -1,6 +1,7 @@
 import { AxeBuilder } from '@axe-core/playwright';
 import type { Browser, Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import { untilTrue } from '../servers/waiting.js';
 import { openBrowser, openPage, packedPageBytes, type WatchedPage } from './browser.js';
 import { type FixtureServer, startFixtureServer } from './fixture-server.js';
 import { impossibleHeater, outcomeOf, twinHeater } from './twin-heater.js';
@@ -186,11 +187,15 @@ describe('every view of the page', () => {
   it('stands again after a reload, at the address it had', async () => {
     const { page } = watched;
     await visit(page, alternative);
+    // Documents come one after the other; what is compared is what they add up to.
+    await page.waitForLoadState('networkidle');
     const before = await page.locator('table.settings').textContent();
     await page.reload();
     await page.locator(alternative.shows).waitFor();
-    expect(await page.locator('table.settings').textContent()).toBe(before);
-    expect(await page.getByRole('radio', { name: 'A03' }).isChecked()).toBe(true);
+    const settings = page.locator('table.settings');
+    await untilTrue(async () => (await settings.textContent()) === before, 'the same settings');
+    const chosen = page.getByRole('radio', { name: 'A03' });
+    await untilTrue(() => chosen.isChecked(), 'the same choice');
   });
 });
 
