@@ -21,6 +21,7 @@ export {
 } from './front.js';
 export type { ActuatorDocument, DisturbanceDocument, MeasurementDocument } from './instruments.js';
 export { type JobDocument, type JobInput, jobFormat, jobSchema, scanSeconds } from './job.js';
+export { limitInWords } from './limit-words.js';
 export {
   type LoopLimitName,
   type LoopLimitsDocument,

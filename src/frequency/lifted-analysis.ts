@@ -1,5 +1,4 @@
 import { type DiscreteController, openedBy } from '../controllers/index.js';
-import { largestSingularValue } from '../numerics/index.js';
 import type {
   AnalysisRequest,
   FrequencyFigures,
@@ -14,6 +13,7 @@ import { LoopTraces } from './loop-traces.js';
 import { anglesBelow, nearlyZero } from './low-angles.js';
 import { readMargins } from './margins.js';
 import { findBandPeaks, findPeak } from './peaks.js';
+import { peaksOf } from './singular-values.js';
 import type { PoleCount } from './winding.js';
 
 /** Crests lower than this share of the highest are not closed in on: the aliases lie densely. */
@@ -345,10 +345,5 @@ function singularValuesAt(
       im[a * m + b] = (sr * ci + si * cr) * scale;
     }
   }
-  const complementary = largestSingularValue(re, im, m, m);
-  for (let i = 0; i < m * m; i += 1) {
-    re[i] = (i % (m + 1) === 0 ? 1 : 0) - (re[i] as number);
-    im[i] = -(im[i] as number);
-  }
-  return { sensitivity: largestSingularValue(re, im, m, m), complementary };
+  return peaksOf(re, im, m);
 }

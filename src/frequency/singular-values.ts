@@ -41,6 +41,18 @@ export function singularValuesAt(
       im[a * m + b] = (sr * ci + si * cr) * scale;
     }
   }
+  return peaksOf(re, im, m);
+}
+
+/**
+ * Largest singular values of T and of S = I - T.
+ * @param re, im  T, m x m, row by row; S takes its place
+ */
+export function peaksOf(
+  re: Float64Array,
+  im: Float64Array,
+  m: number,
+): { readonly sensitivity: number; readonly complementary: number } {
   const complementary = largestSingularValue(re, im, m, m);
   for (let i = 0; i < m * m; i += 1) {
     re[i] = (i % (m + 1) === 0 ? 1 : 0) - (re[i] as number);

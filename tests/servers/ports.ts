@@ -1,3 +1,4 @@
+import { randomInt } from 'node:crypto';
 import { once } from 'node:events';
 import { createServer } from 'node:net';
 
@@ -9,7 +10,7 @@ const attempts = 100;
 /** A port of the loopback interface on which nothing listens. */
 export async function freePort(): Promise<number> {
   for (let attempt = 0; attempt < attempts; attempt++) {
-    const port = first + Math.floor(Math.random() * count);
+    const port = first + randomInt(count);
     if (await canListen(port)) return port;
   }
   throw new Error(`no free port among ${attempts} tried from ${first} on`);

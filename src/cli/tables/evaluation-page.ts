@@ -1,4 +1,5 @@
 import type { EvaluationDocument } from '../../contract/index.js';
+import { limitInWords } from '../../contract/index.js';
 import {
   acts,
   type EvaluationView,
@@ -9,7 +10,6 @@ import {
 import { counted, fixed, significant } from './figures.js';
 import { grid } from './grid.js';
 import { interactionTable } from './interaction-table.js';
-import { limitInWords } from './limit-words.js';
 import type { Paper } from './paper.js';
 import { facts, page, remarks, section, wrapped } from './prose.js';
 import { upsetMatrixTable } from './upset-matrix-table.js';

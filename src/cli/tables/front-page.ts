@@ -5,12 +5,12 @@ import type {
   JobDocument,
   SettingsDocument,
 } from '../../contract/index.js';
+import { limitInWords } from '../../contract/index.js';
 import { changesTable, changingLoops } from './changes-table.js';
 import { isExact } from './evaluation-loops.js';
 import { counted, duration, noFigure, significant } from './figures.js';
 import { frontTable } from './front-table.js';
 import { grid } from './grid.js';
-import { limitInWords } from './limit-words.js';
 import type { Paper } from './paper.js';
 import { page, remarks, section, wrapped } from './prose.js';
 

@@ -1,10 +1,10 @@
 import { useId, useState } from 'preact/hooks';
 import type { LoopLimitName } from '../../contract/index.js';
+import { limitInWords } from '../../contract/index.js';
 import { figureKinds } from '../alternative/figure-kinds.js';
 import { ScrollBox } from '../parts/scroll-box.js';
 import { dialled } from '../text/figures.js';
 import type { LoopView, UnitView } from '../text/unit-view.js';
-import { limitInWords } from '../text/words.js';
 import type { LimitField } from './changed-job.js';
 
 interface LimitFieldsProps {

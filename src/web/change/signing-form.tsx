@@ -2,6 +2,7 @@ import type { ComponentChildren } from 'preact';
 import { useId, useState } from 'preact/hooks';
 import type { Act } from '../../contract/index.js';
 import { TroubleNotice } from '../parts/notices.js';
+import { PersonField } from '../parts/person-field.js';
 import type { Trouble } from '../server/answer.js';
 
 interface SigningFormProps {
@@ -61,23 +62,15 @@ export function SigningForm({ label, acts, remarkOn, children }: SigningFormProp
       }}
     >
       {children}
-      <div class="field">
-        <label for={`${id}-person`}>Your name</label>
-        <input
-          id={`${id}-person`}
-          type="text"
-          maxLength={120}
-          autocomplete="name"
-          required
-          value={person}
-          aria-invalid={isLacking && lacks.person}
-          aria-describedby={`${id}-person-note`}
-          onInput={(event) => setPerson(event.currentTarget.value)}
-        />
-        <p id={`${id}-person-note`} class="field-note">
-          {isLacking && lacks.person ? 'A name is needed: it goes on the record.' : remark}
-        </p>
-      </div>
+      <PersonField
+        id={`${id}-person`}
+        label="Your name"
+        value={person}
+        isLacking={isLacking && lacks.person}
+        lackInWords="A name is needed: it goes on the record."
+        remark={remark}
+        onChange={setPerson}
+      />
       <div class="field">
         <label for={`${id}-reason`}>Reason</label>
         <textarea

@@ -1,6 +1,6 @@
 import type { FrontDocument } from '../../contract/index.js';
+import { limitInWords } from '../../contract/index.js';
 import { atLeastPercent, counted } from '../text/figures.js';
-import { limitInWords } from '../text/words.js';
 
 /** What the figures rest on. */
 export function Background({ front }: { readonly front: FrontDocument }) {

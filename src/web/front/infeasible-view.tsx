@@ -1,10 +1,10 @@
 import type { Infeasibility } from '../../contract/index.js';
+import { limitInWords } from '../../contract/index.js';
 import { SettingsTable } from '../alternative/settings-table.js';
 import { ScrollBox } from '../parts/scroll-box.js';
 import { Section } from '../parts/section.js';
 import { figure } from '../text/figures.js';
 import type { UnitView } from '../text/unit-view.js';
-import { limitInWords } from '../text/words.js';
 
 interface InfeasibleProps {
   readonly infeasible: Infeasibility;

@@ -1,4 +1,9 @@
-import { limitBound, type Metrics, type ScoredSettings } from '../../contract/index.js';
+import {
+  limitBound,
+  limitInWords,
+  type Metrics,
+  type ScoredSettings,
+} from '../../contract/index.js';
 import {
   breaksLimit,
   type FigureKind,
@@ -8,7 +13,6 @@ import {
 } from '../alternative/figure-kinds.js';
 import { figure, noFigure } from '../text/figures.js';
 import type { LimitView, LoopView, UnitView } from '../text/unit-view.js';
-import { limitInWords } from '../text/words.js';
 
 /** One limit of a job and what a tuning set leaves of it. */
 export interface LimitRoom {

@@ -1,6 +1,7 @@
 import { useId, useState } from 'preact/hooks';
 import type { OwnSettings, SettingsDocument } from '../../contract/index.js';
 import { TroubleNotice } from '../parts/notices.js';
+import { PersonField } from '../parts/person-field.js';
 import type { Trouble } from '../server/answer.js';
 import { keepSettings } from '../server/heddle.js';
 
@@ -69,23 +70,15 @@ export function KeepingForm({ job, settings, onKept }: KeepingFormProps) {
           {isLacking && lacks.name ? 'A name is needed to find them again.' : null}
         </p>
       </div>
-      <div class="field">
-        <label for={`${id}-person`}>Who keeps them</label>
-        <input
-          id={`${id}-person`}
-          type="text"
-          maxLength={120}
-          autocomplete="name"
-          required
-          value={person}
-          aria-invalid={isLacking && lacks.person}
-          aria-describedby={`${id}-person-note`}
-          onInput={(event) => setPerson(event.currentTarget.value)}
-        />
-        <p id={`${id}-person-note`} class="field-note">
-          {isLacking && lacks.person ? 'Your name is needed: it goes on the record.' : null}
-        </p>
-      </div>
+      <PersonField
+        id={`${id}-person`}
+        label="Who keeps them"
+        value={person}
+        isLacking={isLacking && lacks.person}
+        lackInWords="Your name is needed: it goes on the record."
+        remark={null}
+        onChange={setPerson}
+      />
       <p class="buttons">
         <button type="submit" class="action" disabled={isSending || settings === null}>
           {isSending ? 'Judging on all models ...' : 'Keep'}

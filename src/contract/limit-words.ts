@@ -1,4 +1,4 @@
-import type { LoopLimitName, UnitLimitName } from '../../contract/index.js';
+import type { LoopLimitName, UnitLimitName } from './limits.js';
 
 const words: Readonly<Record<LoopLimitName | UnitLimitName, string>> = {
   overshoot: 'overshoot',
@@ -19,6 +19,5 @@ const words: Readonly<Record<LoopLimitName | UnitLimitName, string>> = {
 };
 
 /** A limit's name in a document, as people say it. */
-export function limitInWords(name: string): string {
-  return Object.hasOwn(words, name) ? words[name as LoopLimitName] : name;
-}
+export const limitInWords = (name: string): string =>
+  Object.hasOwn(words, name) ? words[name as LoopLimitName] : name;
