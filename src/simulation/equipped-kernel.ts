@@ -10,18 +10,24 @@ import type { Upset } from './upset.js';
 export function kernelAtScan(setup: KernelSetup): SimulationKernel {
   const { loops } = setup.network;
   const equipped = loops.some(
-    (loop) => (loop.feedforward ?? []).length > 0 || (setup.elements && loop.element !== undefined),
+    (loop) =>
+      everyOf(loop) > 1 ||
+      (loop.feedforward ?? []).length > 0 ||
+      (setup.elements && loop.element !== undefined),
   );
   return equipped ? new EquippedKernel(setup) : new ScalarKernel(setup);
 }
 
 /**
- * The scalar kernel for units with feedforward terms, or final elements with dead band or resolution.
+ * The scalar kernel for units with feedforward terms, final elements with dead band or resolution, or
+ * loops that scan at different intervals.
  *
  * A class of its own, so that a unit without them runs code that does not ask.
  */
 class EquippedKernel extends ScalarKernel {
   private readonly feedforward: FeedforwardBank;
+  /** By loop: common scans between its scans. */
+  private readonly every: Int32Array;
   /** By loop: half the backlash, the smallest step, and where the element stands. */
   private readonly halfGap: Float64Array;
   private readonly resolution: Float64Array;
@@ -32,6 +38,7 @@ class EquippedKernel extends ScalarKernel {
     const { network, units, stepsPerScan, steps, elements } = setup;
     const scan = ((units[0] as { step: number }).step ?? 1) * stepsPerScan;
     const scans = Math.floor(steps / stepsPerScan);
+    this.every = Int32Array.from(network.loops, everyOf);
     this.feedforward = new FeedforwardBank(network.loops, {
       scan,
       step: scan,

@@ -21,7 +21,7 @@ import {
 } from './loop-bank.js';
 import type { Upset } from './upset.js';
 
-/** The kernel in plain TypeScript: one candidate, one model, one upset at a time. */
+/** The kernel in plain TypeScript: one candidate, one model, one upset at a time; all loops scan together. */
 export class ScalarKernel implements SimulationKernel {
   protected readonly flat: readonly FlatUnit[];
   protected readonly loopCount: number;
@@ -41,9 +41,6 @@ export class ScalarKernel implements SimulationKernel {
   protected readonly setpointSourceOf: Int32Array;
   protected readonly outerOf: Int32Array;
   protected readonly innerOf: Int32Array;
-  /** Common scans between scans of each loop, and whether all loops scan at every one. */
-  protected readonly every: Int32Array;
-  protected readonly together: boolean;
   protected readonly automatic: Uint8Array;
   protected readonly moves: Uint8Array;
   protected readonly active: Int32Array;
@@ -73,8 +70,6 @@ export class ScalarKernel implements SimulationKernel {
     this.setpointSourceOf = Int32Array.from(loops, (l) => l.setpointSource);
     this.innerOf = Int32Array.from(loops, (l) => ('loop' in l.drives ? l.drives.loop : -1));
     this.outerOf = Int32Array.from(network.outerOf);
-    this.every = Int32Array.from(loops, everyOf);
-    this.together = this.every.every((n) => n === 1);
     this.automatic = new Uint8Array(loops.length);
     this.moves = new Uint8Array(sources);
     const mostGroups = Math.max(1, ...this.flat.map((f) => f.groups.source.length));
@@ -146,7 +141,7 @@ export class ScalarKernel implements SimulationKernel {
   protected run(flat: FlatUnit, count: number, upset: Upset): void {
     const { bank, history, values, states, stride, lead, automatic, order } = this;
     const { active, bases } = this;
-    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf, every, together } = this;
+    const { measurementOf, sourceOf, setpointSourceOf, outerOf, innerOf } = this;
     const { groups, taps, wide, direct } = flat;
     const tapped = taps.source.length > 0;
     const { steps, stepsPerScan } = this.setup;
@@ -154,7 +149,6 @@ export class ScalarKernel implements SimulationKernel {
     const pushed = upset.kind === 'setpoint' ? -1 : upset.source;
     const push = upset.size;
     let untilScan = 0;
-    let scans = -1;
 
     for (let k = 0; k <= steps; k += 1) {
       for (let m = 0; m < values.length; m += 1) values[m] = 0;
@@ -171,7 +165,6 @@ export class ScalarKernel implements SimulationKernel {
       }
       const scanning = untilScan === 0;
       untilScan = scanning ? stepsPerScan - 1 : untilScan - 1;
-      if (scanning) scans += 1;
       for (let o = 0; o < loops; o += 1) {
         const i = order[o] as number;
         const at = i * SLOTS;
@@ -181,8 +174,7 @@ export class ScalarKernel implements SimulationKernel {
             ? (bank[outer * SLOTS + OUTPUT] as number)
             : (bank[at + OWN_SETPOINT] as number);
         const measured = values[measurementOf[i] as number] as number;
-        const due = scanning && (together || scans % (every[i] as number) === 0);
-        if (due && automatic[i] === 1) {
+        if (scanning && automatic[i] === 1) {
           const inner = innerOf[i] as number;
           scanLoop(bank, at, inner < 0 ? -1 : inner * SLOTS, setpoint, measured);
         }
