@@ -6,7 +6,7 @@ import { twinHeater } from '../service/twin-heater.js';
 
 /** Long enough to be killed in the middle of. */
 const document: JobInput = twinHeater((job) => {
-  job.search = { ...job.search, alternatives: 8, models: 6 };
+  job.search = { ...job.search, alternatives: 6, models: 4 };
 });
 
 /** How often in a row something is killed: `npm run test:long` does it three times. */

@@ -3,12 +3,13 @@ import { rmSync } from 'node:fs';
 import { createServer, type RequestListener } from 'node:http';
 import type { AddressInfo } from 'node:net';
 import type { TestProject } from 'vitest/node';
+import { makeEmbeddedTemplate } from './embedded.js';
 import { removeStaleFolders } from './folders.js';
 import { makePostgresTemplate, type PostgresServer, startPostgresFrom } from './postgres.js';
 
 /**
  * What all test files of a run share, made when the first of them asks: the files of a new
- * PostgreSQL server, and one such server. They ask over HTTP, for each file has a process of its own;
+ * PostgreSQL server and of a new embedded database, and one such server. They ask over HTTP, for each file has a process of its own;
  * a run that touches neither starts neither.
  */
 
@@ -23,7 +24,12 @@ export async function setup(project: TestProject): Promise<() => Promise<void>> 
   removeStaleFolders();
   let template: Promise<string> | undefined;
   let postgres: Promise<PostgresServer> | undefined;
+  let embedded: Promise<string> | undefined;
   const shared: Readonly<Record<string, () => Promise<string>>> = {
+    '/embedded-template': () => {
+      embedded ??= makeEmbeddedTemplate();
+      return embedded;
+    },
     '/postgres-template': () => {
       template ??= makePostgresTemplate();
       return template;
@@ -52,7 +58,9 @@ export async function setup(project: TestProject): Promise<() => Promise<void>> 
     server.closeAllConnections();
     server.close();
     await (await postgres?.catch(() => undefined))?.stop();
-    const folder = await template?.catch(() => undefined);
-    if (folder !== undefined) rmSync(folder, { recursive: true, force: true });
+    for (const made of [template, embedded]) {
+      const folder = await made?.catch(() => undefined);
+      if (folder !== undefined) rmSync(folder, { recursive: true, force: true });
+    }
   };
 }

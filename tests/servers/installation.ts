@@ -49,6 +49,9 @@ export class Installation {
     const scratch = new Scratch();
     const folder = options.folder ?? join(scratch.folder, 'data');
     const settings = { lock, environment };
+    if (size === 'embedded' && options.folder === undefined && options.databaseUrl === undefined) {
+      await layOutDatabase(folder);
+    }
     const installation = new Installation(size, settings, folder, scratch, addresses, redis);
     try {
       await installation.startServer();
@@ -115,6 +118,11 @@ export class Installation {
   private environment(): NodeJS.ProcessEnv {
     return { ...this.addresses, ...this.options.environment };
   }
+}
+
+async function layOutDatabase(folder: string): Promise<void> {
+  const shared = await import('./shared.js');
+  await shared.layOutDatabase(folder);
 }
 
 /** A database on the server of a test run; there is none outside of one. */
